@@ -1,0 +1,104 @@
+"""What a circuit is: roles, a branch table, one gain element, a bias check, a closed form, a range.
+
+A circuit is a *value* built by a family for chosen options and present roles; a user's own branch table
+builds the same value. Nothing here knows how it is solved.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+Array = NDArray[np.float64]
+Values = Mapping[str, Array]
+BranchKind = Literal["R", "C", "L", "crystal", "coupled", "transconductance", "conductance", "opamp", "gain"]
+
+
+@dataclass(frozen=True, slots=True)
+class Role:
+    """One value that a circuit needs.
+
+    kind: what sort of part it may be ("resistor", "capacitor", "inductor", "crystal", "transistor", "ic", "any");
+    default: the value where the user gives none (None: required unless `optional`); builtin_law: the text of the
+    temperature law that the stage applies itself, which a law of the user's own replaces.
+    condition: an operating condition (CL of a crystal) that needs no tolerance.
+    """
+
+    name: str
+    trait: str
+    unit: str
+    kind: str
+    meaning: str
+    default: float | None = None
+    optional: bool = False
+    builtin_law: str | None = None
+    condition: bool = False
+    main: bool = True  # the value that a BOM line carries (R, C, L, FL); False for traits such as ESR or hFE
+
+    @property
+    def required(self) -> bool:
+        return self.default is None and not self.optional
+
+
+@dataclass(frozen=True, slots=True)
+class Option:
+    """A choice that changes the circuit; the first of `choices` is the default."""
+
+    name: str
+    choices: tuple[str, ...]
+    meaning: str
+
+
+@dataclass(frozen=True, slots=True)
+class Branch:
+    """A row of the branch table.
+
+    nodes: (from, to) for R, C, L, conductance, crystal; (1+, 1−, 2+, 2−) for a coupled coil pair, windings aiding;
+    (from, to, control+, control−) for transconductance, current flowing from → to inside the element;
+    (out, control+, control−) for opamp and gain. symbols: R (r,), C (c,), L (l,) or (l, series r),
+    crystal (Lm, Cm, Rm), coupled (L1, L2, k) or (L1, L2, k, r1, r2), transconductance (gm,), conductance (g,),
+    opamp (tau = 1/(2π GBW),) or () for an ideal one, gain (K,) or (K, tau).
+    """
+
+    name: str
+    kind: BranchKind
+    nodes: tuple[str, ...]
+    symbols: tuple[str, ...]
+    gain_element: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Derived:
+    """Symbol values of n units at one temperature, and which of them have no bias."""
+
+    symbols: dict[str, Array]
+    no_bias: NDArray[np.bool_] | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
+class Circuit:
+    """A built circuit. `derive(values, temperature_c, own_law)` turns role values (n,) into branch symbols (n,);
+    roles in `own_law` arrive with the user's temperature law applied and must not get the built-in one."""
+
+    name: str
+    title: str
+    options: Mapping[str, str]
+    roles: tuple[Role, ...]
+    branches: tuple[Branch, ...]
+    gain_symbol: str
+    derive: Callable[[Values, float, frozenset[str]], Derived]
+    design_frequency: Callable[[Values], Array]  # the closed form at the unit's own values [Hz]
+    closed_form: str
+    band: Callable[[Values], Array] | None = None  # half-width in |ln f| around the design frequency; None: ln 2
+    margin_of: Callable[[Mapping[str, Array], Array, Array], Array] | None = None  # (symbols, g, g_c) → g/g_c by default
+    not_assessable: Callable[[Values, Array], NDArray[np.bool_]] | None = None  # (values, frequency_hz) → outside range
+    range_text: str = ""
+    schematic: str = ""
+    assumptions: tuple[str, ...] = ()
+    supply_role: str | None = None
+    conditions: tuple[str, ...] = ()
+    groups: Mapping[str, str] = field(default_factory=dict)

@@ -1,0 +1,52 @@
+"""What the solver says of n units at one corner."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import IntEnum
+
+import numpy as np
+from numpy.typing import NDArray
+
+Array = NDArray[np.float64]
+
+
+class Status(IntEnum):
+    """Outcome of one unit at one corner, in the order in which a unit is counted."""
+
+    STARTS = 0
+    NO_BIAS = 1
+    UNDEFINED = 2
+    NOT_ASSESSABLE = 3
+    NO_START = 4
+    WRONG_MODE = 5
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Solution:
+    """Arrays of length n. Frequencies are finite wherever a gain exists, margins too; see circuits and population.
+
+    upper_ratio is g_h/g (inf without an upper gain limit); other_mode_hz the fastest other growing mode
+    (nan without one, 0 for a latching real pole); growth_per_s is nan unless asked for.
+    """
+
+    frequency_hz: Array
+    startup_margin: Array  # nan for circuits without a start-up question
+    status: NDArray[np.int8]
+    settled_hz: Array | None = None
+    growth_per_s: Array | None = None
+    critical_gain: Array | None = None
+    upper_ratio: Array | None = None
+    other_mode_hz: Array | None = None
+    distortion: Array | None = None
+    drive_w: Array | None = None
+    resistance_ratio: Array | None = None  # −R/ESR at a crystal's terminals
+    overdriven: NDArray[np.bool_] | None = None
+    audited: int = 0
+    disagreeing: int = 0
+    exact: int = 0  # units solved by the exact path because the count of growing poles differed
+
+    @property
+    def limit_frequency_hz(self) -> Array:
+        """The frequency that limits apply to: settled where a limiter is declared, else the crossing."""
+        return self.frequency_hz if self.settled_hz is None else self.settled_hz

@@ -1,0 +1,142 @@
+"""A study: what is to be analysed, fully understood and validated, with no trace of a spreadsheet in it.
+
+Everything below this line trusts it; every doubt was a finding before it was made.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field, fields
+from typing import TYPE_CHECKING, Literal
+
+from yieldosc.errors import Finding
+from yieldosc.parts.parameter import Given, Parameter
+
+if TYPE_CHECKING:
+    from yieldosc.circuits.circuit import Circuit
+
+Rule = Literal["every corner"]
+Bucket = Literal["low_margin", "slow_start", "out_of_limits", "distorted", "over_drive"]
+
+
+@dataclass(frozen=True, slots=True)
+class Requirement:
+    """One limit on one attribute of a solved unit, and the outcome of a unit that misses it."""
+
+    attribute: str  # "frequency_hz" (judged on settled_hz where a limiter is declared), "startup_margin", "startup_s", …
+    low: float | None
+    high: float | None
+    outcome: Bucket
+    unit: str
+    rule: Rule = "every corner"
+    given: tuple[Given, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Corner:
+    """A condition that every unit must survive."""
+
+    temperature_c: float
+    supply_v: float | None
+    age_years: float
+
+    @property
+    def text(self) -> str:
+        """"-40 °C, 3.0 V, 10 years", for tables and findings."""
+        supply = "" if self.supply_v is None else f", {self.supply_v:.4g} V"
+        age = f", {self.age_years:g} years" if self.age_years else ""
+        return f"{self.temperature_c:g} °C{supply}{age}"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Design:
+    """The items of the Design sheet, in SI units; None where the user said nothing and no default exists."""
+
+    target_frequency_hz: float
+    frequency_low_hz: float  # the limits themselves, absolute
+    frequency_high_hz: float
+    least_margin: float = 1.0
+    longest_startup_s: float | None = None
+    startup_ratio: float = 1e6
+    most_distortion: float | None = None  # fraction
+    most_drive_w: float | None = None
+    temperature_low_c: float
+    temperature_high_c: float
+    temperature_points: int = 9
+    supply_v: float | None = None
+    supply_tolerance: tuple[float, float] = (0.0, 0.0)  # fractions
+    life_years: float | None = None
+    yield_target: float | None = None  # fraction
+    confidence: float = 0.95
+    default_shape: str = "uniform"
+    reel_share: float = 0.0
+    bench_frequency_hz: float | None = None
+    build_quantity: float | None = None
+    failed_unit_cost: float | None = None
+    test_temperature_c: float | None = None
+    measurement_sd_hz: float | None = None
+    escape_limit: float | None = None  # fraction
+    trim_role: str | None = None
+    trim_low: float | None = None
+    trim_high: float | None = None
+    trim_step: float | None = None
+    pilot_column: str | None = None
+
+    @property
+    def temperatures_c(self) -> tuple[float, ...]:
+        """Equal steps, 25 °C added when the steps miss it and the range holds it; low = high is one."""
+        low, high, count = self.temperature_low_c, self.temperature_high_c, self.temperature_points
+        if low == high:
+            return (low,)
+        steps = [low + (high - low) * i / (count - 1) for i in range(count)]
+        if low < 25.0 < high and not any(abs(t - 25.0) < 1e-9 for t in steps):
+            steps.append(25.0)
+        return tuple(sorted(steps))
+
+    @property
+    def supplies_v(self) -> tuple[float | None, ...]:
+        """Low, nominal and high supply; one where the supply has no tolerance; (None,) without a supply."""
+        if self.supply_v is None:
+            return (None,)
+        low, high = self.supply_tolerance
+        levels = {self.supply_v * (1 + low), self.supply_v, self.supply_v * (1 + high)}
+        return tuple(sorted(levels))
+
+    @property
+    def ages_years(self) -> tuple[float, ...]:
+        """New, and the end of life where one is stated."""
+        return (0.0,) if not self.life_years else (0.0, self.life_years)
+
+    def corners(self) -> tuple[Corner, ...]:
+        """Every temperature × supply × age, temperature slowest."""
+        return tuple(
+            Corner(t, v, a) for t in self.temperatures_c for v in self.supplies_v for a in self.ages_years
+        )
+
+    def items(self) -> dict[str, object]:
+        """Field name → value, for digests and reports."""
+        return {f.name: getattr(self, f.name) for f in fields(self)}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Study:
+    """Circuit, parts, limits and conditions of one analysis."""
+
+    name: str
+    circuit: Circuit  # already built for its options and for the roles that are present
+    parameters: tuple[Parameter, ...]
+    conditions: Mapping[str, float]  # CL of a crystal and the like: no spread
+    design: Design
+    requirements: tuple[Requirement, ...]
+    design_given: Mapping[str, Given] = field(default_factory=dict)  # item → as written and where
+    bom: tuple[object, ...] = ()  # the importer's lines, carried for the reports' echo, never read here
+    bom_rows: tuple[tuple[str, ...], ...] = ()  # the BOM table as text, heading row first, for the result workbook
+    findings: tuple[Finding, ...] = ()
+    digest: str = ""  # SHA-256 of the canonical inputs as understood
+
+    def parameter(self, role: str) -> Parameter:
+        """The parameter of a role; KeyError when the study has none."""
+        for candidate in self.parameters:
+            if candidate.role == role:
+                return candidate
+        raise KeyError(role)
