@@ -93,8 +93,8 @@ class Circuit:
     derive: Callable[[Values, float, frozenset[str]], Derived]
     design_frequency: Callable[[Values], Array]  # the closed form at the unit's own values [Hz]
     closed_form: str
-    band: Callable[[Values], Array] | None = None  # half-width in |ln f| around the design frequency; None: ln 2
-    margin_of: Callable[[Mapping[str, Array], Array, Array], Array] | None = None  # (symbols, g, g_c) → g/g_c by default
+    band: Callable[[Values], tuple[Array, Array]] | None = None  # centre [Hz] and half-width in |ln f|; None: ln 2
+    gain_of: Callable[[Mapping[str, Array], Array], Array] | None = None  # (symbols, g) → gain whose ratio is the margin
     not_assessable: Callable[[Values, Array], NDArray[np.bool_]] | None = None  # (values, frequency_hz) → outside range
     range_text: str = ""
     schematic: str = ""
