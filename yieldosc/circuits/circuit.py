@@ -6,8 +6,8 @@ builds the same value. Nothing here knows how it is solved.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
@@ -16,6 +16,14 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 Values = Mapping[str, Array]
 BranchKind = Literal["R", "C", "L", "crystal", "coupled", "transconductance", "conductance", "opamp", "gain"]
+
+
+class CircuitError(ValueError):
+    """Options or roles that make no circuit; `problems` holds every reason, each with what to do."""
+
+    def __init__(self, problems: Iterable[str]) -> None:
+        self.problems = tuple(problems)
+        super().__init__("; ".join(self.problems))
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,7 +95,7 @@ class Circuit:
     name: str
     title: str
     options: Mapping[str, str]
-    roles: tuple[Role, ...]
+    roles: tuple[Role, ...]  # those that are present, defaults included
     branches: tuple[Branch, ...]
     gain_symbol: str
     derive: Callable[[Values, float, frozenset[str]], Derived]
@@ -95,10 +103,33 @@ class Circuit:
     closed_form: str
     band: Callable[[Values], tuple[Array, Array]] | None = None  # centre [Hz] and half-width in |ln f|; None: ln 2
     gain_of: Callable[[Mapping[str, Array], Array], Array] | None = None  # (symbols, g) → gain whose ratio is the margin
+    control_reach: Callable[[Mapping[str, Array], Values, Array], Array] | None = None  # (symbols, values, g_c) → reach
     not_assessable: Callable[[Values, Array], NDArray[np.bool_]] | None = None  # (values, frequency_hz) → outside range
     range_text: str = ""
     schematic: str = ""
     assumptions: tuple[str, ...] = ()
     supply_role: str | None = None
-    conditions: tuple[str, ...] = ()
-    groups: Mapping[str, str] = field(default_factory=dict)
+    recipe: tuple[object, ...] = ()  # (family name, options, present roles): how another process builds it again
+
+    def __reduce__(self) -> tuple[object, ...]:
+        from yieldosc.circuits.registry import rebuild  # noqa: PLC0415 -- the registry imports this module
+
+        return rebuild, self.recipe
+
+    def role(self, name: str) -> Role:
+        """The role of that name; KeyError where the circuit has none."""
+        for role in self.roles:
+            if role.name == name:
+                return role
+        raise KeyError(name)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Family:
+    """One file of `circuits`: what it may be built from. `roles(options)` lists every role that can be given."""
+
+    name: str
+    title: str
+    options: tuple[Option, ...]
+    roles: Callable[[Mapping[str, str]], tuple[Role, ...]]
+    build: Callable[[Mapping[str, str], frozenset[str]], Circuit]

@@ -1,0 +1,66 @@
+"""The circuits that can be named. A new circuit is a new file with a FAMILY, and one line here."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+
+from yieldosc.circuits import colpitts, pierce, wien_bridge
+from yieldosc.circuits.circuit import Circuit, CircuitError, Family
+
+FAMILIES: dict[str, Family] = {
+    module.FAMILY.name: module.FAMILY for module in (wien_bridge, colpitts, pierce)
+}
+
+
+def names() -> tuple[str, ...]:
+    """Every circuit name, in the order in which they are listed."""
+    return tuple(FAMILIES)
+
+
+def family(name: str) -> Family:
+    """The family of that name; CircuitError with the list where there is none."""
+    wanted = name.strip().lower().replace("-", "_").replace(" ", "_")
+    if wanted not in FAMILIES:
+        raise CircuitError([f"there is no circuit named {name!r}; the circuits are {', '.join(FAMILIES)}"])
+    return FAMILIES[wanted]
+
+
+def complete_options(name: str, options: Mapping[str, str]) -> dict[str, str]:
+    """Options with defaults filled in; CircuitError naming every unknown option or choice."""
+    known = {option.name: option for option in family(name).options}
+    problems = []
+    for key, choice in options.items():
+        if key not in known:
+            listed = ", ".join(known) or "none"
+            problems.append(f"{name} has no option {key!r}; its options are: {listed}")
+        elif choice not in known[key].choices:
+            listed = ", ".join(known[key].choices)
+            problems.append(f"option {key} of {name} is {choice!r}; choose one of {listed}")
+    if problems:
+        raise CircuitError(problems)
+    return {key: options.get(key, option.choices[0]) for key, option in known.items()}
+
+
+def build(name: str, options: Mapping[str, str] | None = None, present: Iterable[str] = ()) -> Circuit:
+    """The circuit for these options and roles; roles with a default are added, missing or unknown ones refused."""
+    chosen = complete_options(name, options or {})
+    made = family(name)
+    known = {role.name: role for role in made.roles(chosen)}
+    given = set(present)
+    problems = [f"{made.name} has no role {role!r} with these options" for role in sorted(given - set(known))]
+    problems += [
+        f"role {role.name} is missing: {role.meaning}" for role in known.values() if role.required and role.name not in given
+    ]
+    given |= {role.name for role in known.values() if role.default is not None}
+    try:
+        circuit = made.build(chosen, frozenset(given & set(known)))
+    except CircuitError as error:
+        problems += error.problems
+    if problems:
+        raise CircuitError(problems)
+    return circuit
+
+
+def rebuild(name: str, options: tuple[tuple[str, str], ...], present: tuple[str, ...]) -> Circuit:
+    """A circuit from its recipe."""
+    return build(name, dict(options), present)

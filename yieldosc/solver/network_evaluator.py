@@ -1,0 +1,358 @@
+"""Units of one network circuit at one corner: the fast path for most, the exact path for doubts and the audit.
+
+Fast path: the reference unit's crossings are followed by Newton from their first-order prediction, and the number of
+growing poles that they imply is compared with a Routh array at the actual gain. A unit that differs anywhere goes to
+the exact path.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from yieldosc.circuits.circuit import Circuit, Derived
+from yieldosc.circuits.network import Network, network
+from yieldosc.solver.crossings import Split, newton, real_crossings
+from yieldosc.solver.exact import Modes, modes
+from yieldosc.solver.growth import growth_rate
+from yieldosc.solver.polynomials import roots
+from yieldosc.solver.reference import Reference, make_reference
+from yieldosc.solver.routh import growing_poles
+from yieldosc.solver.scaled import Scale, Scaled, bias_substitute, scaled
+from yieldosc.solver.solution import Solution, Status
+
+Array = NDArray[np.float64]
+Mask = NDArray[np.bool_]
+AUDIT_TOLERANCE = 1e-6  # relative difference in margin between the two paths
+
+
+@dataclass(slots=True)
+class _Block:
+    """What is known of n units while they are being solved (scaled variables)."""
+
+    omega: Array
+    lower: Array
+    upper: Array
+    grows: Mask
+    status: NDArray[np.int8]
+    other_omega: Array
+    no_crossing: Mask
+    nearest_x: NDArray[np.complex128]
+    nearest_gain: NDArray[np.complex128]
+    growth: Array
+    overdriven: Mask
+
+
+class NetworkEvaluator:
+    """Evaluator of a circuit with a branch table. Keeps no state that changes an answer, only cached references."""
+
+    def __init__(self, circuit: Circuit, nominal: Mapping[str, float]) -> None:
+        self.circuit = circuit
+        self.nominal = {name: float(value) for name, value in nominal.items()}
+        self.network: Network = network(circuit.branches, circuit.gain_symbol)
+        self._references: dict[tuple[object, ...], Reference] = {}
+
+    def __getstate__(self) -> dict[str, object]:
+        return {"circuit": self.circuit, "nominal": self.nominal}
+
+    def __setstate__(self, state: dict[str, object]) -> None:
+        self.__init__(state["circuit"], state["nominal"])  # type: ignore[misc, arg-type]
+
+    # -- the public call -----------------------------------------------------------------------------------------
+
+    def solve(
+        self,
+        values: Mapping[str, Array],
+        temperature_c: float,
+        *,
+        own_law: frozenset[str] = frozenset(),
+        growth: bool = False,
+        audit: Mask | None = None,
+    ) -> Solution:
+        """See `Evaluator.solve`. Cost: about 100 array operations per unit on the fast path."""
+        n = max((np.size(v) for v in values.values()), default=1)
+        reference = self._reference(values, temperature_c, own_law)
+        derived = bias_substitute(
+            self.circuit, self.circuit.derive(values, temperature_c, own_law), reference.symbols, n
+        )
+        part = scaled(self.network, reference.scale, derived, n)
+        design = _full(self.circuit.design_frequency(values), n) * (2 * np.pi / reference.scale.omega)
+        block, doubt = self._fast(part, design, values, reference, n)
+        chosen = doubt if audit is None else doubt | audit
+        disagreeing = self._exact(block, part, design, values, reference, np.flatnonzero(chosen), doubt)
+        if growth:
+            self._growth(block, part)
+        audited = 0 if audit is None else int(np.count_nonzero(audit & ~doubt))
+        solution = self._solution(block, part, derived, values, reference, n)
+        return replace(solution, audited=audited, disagreeing=disagreeing, exact=int(np.count_nonzero(doubt)))
+
+    def other_modes(
+        self, values: Mapping[str, Array], temperature_c: float, *, own_law: frozenset[str] = frozenset()
+    ) -> list[tuple[float, ...]]:
+        """Frequencies [Hz] of every other growing mode of each unit, 0 for a latching real pole."""
+        n = max((np.size(v) for v in values.values()), default=1)
+        reference = self._reference(values, temperature_c, own_law)
+        derived = self.circuit.derive(values, temperature_c, own_law)
+        part = scaled(self.network, reference.scale, bias_substitute(self.circuit, derived, reference.symbols, n), n)
+        found = self._modes(part, values, reference, np.arange(n), n)
+        hz = reference.scale.omega / (2 * np.pi)
+        rows = []
+        for unit in range(n):
+            omegas = found.other_omega[unit]
+            kept = omegas[~np.isnan(omegas)]
+            rows.append(tuple(sorted(float(w) * hz if np.isfinite(w) else 0.0 for w in kept)))
+        return rows
+
+    # -- pieces --------------------------------------------------------------------------------------------------
+
+    def _reference(
+        self, values: Mapping[str, Array], temperature_c: float, own_law: frozenset[str]
+    ) -> Reference:
+        """The nominal unit at this temperature and at the block's constant values (the supply is one)."""
+        constant = {k: float(np.asarray(v)) for k, v in values.items() if np.ndim(v) == 0}
+        key = (temperature_c, own_law, tuple(sorted(constant.items())))
+        if key not in self._references:
+            unit = {k: np.array([constant.get(k, self.nominal[k])]) for k in values}
+            self._references[key] = make_reference(self.circuit, self.network, unit, temperature_c, own_law)
+        return self._references[key]
+
+    def _band(self, values: Mapping[str, Array], design: Array, scale: Scale, n: int) -> tuple[Array, Array]:
+        if self.circuit.band is None:
+            return design, np.full(n, np.log(2.0))
+        centre, half = self.circuit.band(values)
+        return _full(centre, n) * (2 * np.pi / scale.omega), _full(half, n)
+
+    def _fast(
+        self, part: Scaled, design: Array, values: Mapping[str, Array], ref: Reference, n: int
+    ) -> tuple[_Block, Mask]:
+        block = _empty(n)
+        if not ref.simple:
+            return block, np.ones(n, dtype=bool)
+        split = Split.of(part.a, part.b)
+        sign = np.sign(part.g)
+        gains: list[Array] = []
+        doubt = np.zeros(n, dtype=bool)
+        for k, tracked in enumerate(ref.tracked):
+            ratio = (design / ref.design) ** 2 if k == ref.intended else ref.prediction(k, part.symbols)
+            x, good, slope = newton(split, tracked.x * ratio)
+            gain = split.gain(x)
+            with np.errstate(invalid="ignore"):
+                doubt |= ~good | (gain * sign <= 0) | ((sign * slope < 0) != (tracked.direction > 0))
+            gains.append(np.abs(gain))
+            if k == ref.intended:
+                centre, half = self._band(values, design, ref.scale, n)
+                with np.errstate(invalid="ignore", divide="ignore"):
+                    doubt |= ~(np.abs(np.log(x / (centre * centre))) <= 2 * half)
+                block.omega = np.sqrt(x)
+        with np.errstate(invalid="ignore"):
+            for earlier, later in zip(gains, gains[1:], strict=False):
+                doubt |= ~(earlier < later)
+            doubt |= ~(self._expected(part, ref, gains) == growing_poles(_at_gain(part)))
+            block.lower = gains[ref.intended] * sign
+            if ref.leaves is not None:
+                block.upper = gains[ref.leaves] * sign
+            size = np.abs(part.g)
+            block.grows = (size > gains[ref.intended]) & (size < np.abs(block.upper))
+            doubt |= self._other_growing(size, ref, gains)
+        block.status = np.where(block.grows, Status.STARTS, Status.NO_START).astype(np.int8)
+        return block, doubt
+
+    @staticmethod
+    def _expected(part: Scaled, ref: Reference, gains: list[Array]) -> NDArray[np.int64]:
+        """Growing poles implied by the tracked crossings below the actual gain."""
+        size = np.abs(part.g)
+        count = np.zeros(len(size), dtype=np.int64)
+        for tracked, gain in zip(ref.tracked, gains, strict=True):
+            count += np.where(gain < size, 2 * tracked.direction, 0)
+        _, real_gain, direction = real_crossings(part.a, part.b, np.sign(part.g))
+        return count + np.sum(np.where(np.abs(real_gain) < size[:, None], direction, 0), axis=1)
+
+    @staticmethod
+    def _other_growing(size: Array, ref: Reference, gains: list[Array]) -> Mask:
+        """Units in which a mode other than the intended may grow: theirs is a question for the exact path."""
+        risky = np.zeros(len(size), dtype=bool)
+        for k, (tracked, gain) in enumerate(zip(ref.tracked, gains, strict=True)):
+            if k != ref.intended and tracked.direction > 0:
+                risky |= gain < size
+        return risky
+
+    def _modes(
+        self, part: Scaled, values: Mapping[str, Array], ref: Reference, rows: NDArray[np.intp], n: int
+    ) -> Modes:
+        a, b, g = part.take(rows)
+        design = _full(self.circuit.design_frequency(values), n) * (2 * np.pi / ref.scale.omega)
+        centre, half = self._band(values, design, ref.scale, n)
+        return modes(a, b, g, design[rows], centre[rows], half[rows])
+
+    def _exact(
+        self,
+        block: _Block,
+        part: Scaled,
+        design: Array,
+        values: Mapping[str, Array],
+        ref: Reference,
+        rows: NDArray[np.intp],
+        doubt: Mask,
+    ) -> int:
+        """Solve some units by all roots and write them into the block; returns audited units that differ."""
+        if rows.size == 0:
+            return 0
+        found = self._modes(part, values, ref, rows, len(design))
+        ratio = np.full(rows.size, np.nan)
+        certain = ~doubt[rows]
+        with np.errstate(invalid="ignore", divide="ignore"):
+            ratio[certain] = np.abs(found.lower[certain] / block.lower[rows[certain]] - 1)
+            differs = certain & ~(ratio <= AUDIT_TOLERANCE)
+            both = np.isfinite(found.upper) | np.isfinite(block.upper[rows])
+            differs |= certain & both & ~(np.abs(found.upper / block.upper[rows] - 1) <= AUDIT_TOLERANCE)
+        write = rows[doubt[rows] | differs]
+        keep = doubt[rows] | differs
+        status = self._exact_status(part, found, rows)
+        for name in ("omega", "lower", "upper", "grows", "nearest_x", "nearest_gain"):
+            getattr(block, name)[write] = getattr(found, name)[keep]
+        block.no_crossing[write] = ~found.found[keep]
+        block.status[write] = status[keep]
+        with np.errstate(invalid="ignore"):
+            other = np.where(np.isinf(found.other_omega), 0.0, found.other_omega)
+        block.other_omega[write] = _first_known(other, found.other_gain)[keep]
+        return int(np.count_nonzero(differs))
+
+    def _exact_status(self, part: Scaled, found: Modes, rows: NDArray[np.intp]) -> NDArray[np.int8]:
+        a, b, g = part.take(rows)
+        other = ~np.isnan(found.other_omega).all(axis=1)
+        status = np.where(found.grows, Status.STARTS, np.where(other, Status.WRONG_MODE, Status.NO_START))
+        rivals = np.flatnonzero(found.grows & other)
+        if rivals.size:
+            status[rivals] = np.where(_loses(a, b, g, found, rivals), Status.WRONG_MODE, Status.STARTS)
+        poles = roots(_sum_at_gain(a, b, g))
+        with np.errstate(invalid="ignore"):
+            right = np.count_nonzero(poles.real > 0, axis=1)
+            delicate = (np.abs(poles.real) <= 1e-9 * np.abs(poles)).any(axis=1)
+        status = np.where((right != found.growing_poles) & ~delicate, Status.UNDEFINED, status)
+        return status.astype(np.int8)
+
+    @staticmethod
+    def _growth(block: _Block, part: Scaled) -> None:
+        rows = np.flatnonzero(block.grows)
+        if rows.size:
+            a, b, g = part.take(rows)
+            block.growth[rows], block.overdriven[rows] = growth_rate(a, b, block.omega[rows], block.lower[rows], g)
+
+    def _solution(
+        self, block: _Block, part: Scaled, derived: Derived, values: Mapping[str, Array], ref: Reference, n: int
+    ) -> Solution:
+        hz = ref.scale.omega / (2 * np.pi)
+        frequency = block.omega * hz
+        margin, upper = self._margin(block, part, ref)
+        rows = np.flatnonzero(block.no_crossing)
+        if rows.size:
+            x = block.nearest_x[rows]
+            frequency[rows] = np.sqrt(np.where(x.real > 0, x.real, np.abs(x))) * hz
+        status = block.status
+        if self.circuit.not_assessable is not None:
+            outside = np.broadcast_to(self.circuit.not_assessable(values, frequency), (n,))
+            status = np.where(outside & (status != Status.UNDEFINED), Status.NOT_ASSESSABLE, status)
+        if derived.no_bias is not None:
+            no_bias = np.broadcast_to(derived.no_bias, (n,))
+            status = np.where(no_bias, Status.NO_BIAS, status)
+            frequency = np.where(no_bias, np.nan, frequency)
+            margin = np.where(no_bias, 0.0, margin)
+        gain_factor = ref.scale.factor(self.network.dimensions[self.network.gain_symbol])
+        return Solution(
+            frequency_hz=frequency,
+            startup_margin=margin,
+            status=status.astype(np.int8),
+            growth_per_s=block.growth * ref.scale.omega,
+            critical_gain=block.lower / gain_factor,
+            upper_ratio=upper,
+            other_mode_hz=block.other_omega * hz,
+            overdriven=block.overdriven,
+        )
+
+    def _margin(self, block: _Block, part: Scaled, ref: Reference) -> tuple[Array, Array]:
+        """g/g_c and g_h/g in the circuit's own gain (K of an op-amp stage), the smaller is the margin."""
+        factor = ref.scale.factor(self.network.dimensions[self.network.gain_symbol])
+
+        def gain(g: Array) -> Array:
+            return g if self.circuit.gain_of is None else self.circuit.gain_of(part.symbols, g / factor)
+
+        with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
+            actual = gain(part.g)
+            margin = actual / gain(block.lower)
+            limited = np.isfinite(block.upper)
+            upper = np.where(limited, gain(np.where(limited, block.upper, 1.0)) / actual, np.inf)
+            margin = np.minimum(margin, upper)
+            rows = np.flatnonzero(block.no_crossing)
+            if rows.size:
+                ratio = np.broadcast_to(actual, part.g.shape)[rows] / _rows(gain(block.nearest_gain), rows)
+                size = np.abs(ratio)
+                margin[rows] = np.minimum(size, 1 / size) * np.exp(-np.abs(np.angle(ratio)))
+                upper[rows] = np.inf
+        return margin, upper
+
+
+def _rows(values: NDArray[np.complex128], rows: NDArray[np.intp]) -> NDArray[np.complex128]:
+    return np.asarray(values)[rows]
+
+
+def _loses(a: list[Array], b: list[Array], g: Array, found: Modes, rows: NDArray[np.intp]) -> Mask:
+    """The intended mode grows, but another grows faster and needs less than twice its critical gain's reach."""
+    pa, pb = [c[rows] for c in a], [c[rows] for c in b]
+    own, _ = growth_rate(pa, pb, found.omega[rows], found.lower[rows], g[rows])
+    lost = np.zeros(rows.size, dtype=bool)
+    for k in range(found.other_omega.shape[1]):
+        omega, gain = found.other_omega[rows, k], found.other_gain[rows, k]
+        live = np.flatnonzero(~np.isnan(omega))
+        if live.size:
+            rate, _ = growth_rate([c[live] for c in pa], [c[live] for c in pb], omega[live], gain[live], g[rows][live])
+            close = np.abs(found.lower[rows][live]) > 0.5 * np.abs(gain[live])
+            lost[live] |= (rate > own[live]) & close
+    return lost
+
+
+def _first_known(omega: Array, gain: Array) -> Array:
+    """ω of the other growing mode with the lowest critical gain; nan where there is none."""
+    size = np.where(np.isnan(gain), np.inf, np.abs(gain))
+    column = np.argmin(size, axis=1)
+    return np.where(np.isfinite(size.min(axis=1)), omega[np.arange(len(column)), column], np.nan)
+
+
+def _sum_at_gain(a: list[Array], b: list[Array], g: Array) -> list[Array]:
+    size = max(len(a), len(b))
+    out = []
+    for k in range(size):
+        if k >= len(b):
+            out.append(a[k])
+        elif k >= len(a):
+            out.append(g * b[k])
+        else:
+            out.append(a[k] + g * b[k])
+    return out
+
+
+def _at_gain(part: Scaled) -> list[Array]:
+    return _sum_at_gain(part.a, part.b, part.g)
+
+
+def _empty(n: int) -> _Block:
+    return _Block(
+        omega=np.full(n, np.nan),
+        lower=np.full(n, np.nan),
+        upper=np.full(n, np.inf),
+        grows=np.zeros(n, dtype=bool),
+        status=np.full(n, Status.NO_START, dtype=np.int8),
+        other_omega=np.full(n, np.nan),
+        no_crossing=np.zeros(n, dtype=bool),
+        nearest_x=np.ones(n, dtype=np.complex128),
+        nearest_gain=np.ones(n, dtype=np.complex128),
+        growth=np.full(n, np.nan),
+        overdriven=np.zeros(n, dtype=bool),
+    )
+
+
+def _full(value: Array | float, n: int) -> Array:
+    array = np.asarray(value, dtype=np.float64)
+    return array if array.shape == (n,) else np.broadcast_to(array, (n,)).copy()
