@@ -23,7 +23,7 @@ Bucket = Literal["low_margin", "slow_start", "out_of_limits", "distorted", "over
 class Requirement:
     """One limit on one attribute of a solved unit, and the outcome of a unit that misses it."""
 
-    attribute: str  # "frequency_hz" (judged on settled_hz where a limiter is declared), "startup_margin", "startup_s", …
+    attribute: str  # "frequency_hz" (settled_hz where a limiter is declared), "startup_margin", "startup_s", …
     low: float | None
     high: float | None
     outcome: Bucket

@@ -102,7 +102,7 @@ class Circuit:
     design_frequency: Callable[[Values], Array]  # the closed form at the unit's own values [Hz]
     closed_form: str
     band: Callable[[Values], tuple[Array, Array]] | None = None  # centre [Hz] and half-width in |ln f|; None: ln 2
-    gain_of: Callable[[Mapping[str, Array], Array], Array] | None = None  # (symbols, g) → gain whose ratio is the margin
+    gain_of: Callable[[Mapping[str, Array], Array], Array] | None = None  # (symbols, g) → gain; its ratio is the margin
     control_reach: Callable[[Mapping[str, Array], Values, Array], Array] | None = None  # (symbols, values, g_c) → reach
     not_assessable: Callable[[Values, Array], NDArray[np.bool_]] | None = None  # (values, frequency_hz) → outside range
     range_text: str = ""

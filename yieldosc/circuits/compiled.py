@@ -56,5 +56,5 @@ def compile_terms(
         return "[" + ", ".join(parts) + "]"
 
     code = f"lambda v: ({source(terms_a)}, {source(terms_b)})"
-    made: Coefficients = eval(compile(code, "<network>", "eval"), {"__builtins__": {}})  # noqa: S307
+    made: Coefficients = eval(compile(code, "<network>", "eval"), {"__builtins__": {}})
     return made

@@ -40,4 +40,5 @@ def device(
 
 
 def supply(name: str) -> Role:
-    return Role(name, name, "V", "any", "supply voltage; its corners come from the Design sheet", condition=True, main=False)
+    meaning = "supply voltage; its corners come from the Design sheet"
+    return Role(name, name, "V", "any", meaning, condition=True, main=False)

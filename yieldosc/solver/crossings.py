@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from yieldosc.solver.polynomials import (
     ComplexArray,
+    Number,
     Poly,
     difference,
     even_odd,
@@ -47,11 +48,12 @@ class Split:
         bo, dbo = value_and_slope(self.bo, x)
         return ao * be - ae * bo, dao * be + ao * dbe - dae * bo - ae * dbo
 
-    def gain(self, x: Array) -> Array:
+    def gain(self, x: Number) -> Number:
         """g_c at x; also for complex x, where it is the gain that puts a pole at √−x."""
         ae, ao, be, bo = (value(p, x) for p in (self.ae, self.ao, self.be, self.bo))
         with np.errstate(divide="ignore", invalid="ignore"):
-            return -(ae * be + x * ao * bo) / (be * be + x * bo * bo)
+            total: Number = -(ae * be + x * ao * bo) / (be * be + x * bo * bo)
+        return total
 
     def take(self, rows: NDArray[np.intp]) -> Split:
         """The same for some of the units."""
@@ -110,8 +112,9 @@ def real_crossings(a: Poly, b: Poly, sign: Array) -> tuple[Array, Array, NDArray
             speed = -pb[0] / (pa[1] + gain * pb[1])
             direction = np.where(np.isfinite(gain), np.where(sign * speed > 0, 1, -1), 0)
         ends.append((np.full_like(gain, omega), gain, direction.astype(np.int64)))
-    omega, gain = (np.stack([e[k] for e in ends], axis=1) for k in (0, 1))
-    return omega, gain, np.stack([e[2] for e in ends], axis=1)
+    stacked_omega = np.stack([e[0] for e in ends], axis=1)
+    stacked_gain = np.stack([e[1] for e in ends], axis=1)
+    return stacked_omega, stacked_gain, np.stack([e[2] for e in ends], axis=1)
 
 
 def all_crossings(a: Poly, b: Poly, sign: Array) -> tuple[Crossings, ComplexArray]:
@@ -153,4 +156,9 @@ def _ordered(
     omega: Array, gain: Array, direction: NDArray[np.int64], poles: NDArray[np.int64]
 ) -> Crossings:
     order = np.argsort(np.where(np.isnan(gain), np.inf, np.abs(gain)), axis=1, kind="stable")
-    return Crossings(*(np.take_along_axis(table, order, axis=1) for table in (omega, gain, direction, poles)))
+    return Crossings(
+        np.take_along_axis(omega, order, axis=1),
+        np.take_along_axis(gain, order, axis=1),
+        np.take_along_axis(direction, order, axis=1),
+        np.take_along_axis(poles, order, axis=1),
+    )

@@ -89,19 +89,19 @@ def _members(a: Poly, b: Poly, cr: Crossings, intended: NDArray[np.intp], found:
     rows = np.flatnonzero(doubt)
     if rows.size:
         members[rows] = _followed(a, b, cr, intended, rows)
-    return members
+    return np.asarray(members, dtype=bool)
 
 
 def _followed(a: Poly, b: Poly, cr: Crossings, intended: NDArray[np.intp], rows: NDArray[np.intp]) -> Mask:
     """Membership by continuation of the pair from its intended crossing, up and down through every other crossing."""
     pa, pb = [p[rows] for p in a], [p[rows] for p in b]
-    omega, gain, direction, poles = (t[rows] for t in (cr.omega, cr.gain, cr.direction, cr.poles))
+    omega, gain, poles = cr.omega[rows], cr.gain[rows], cr.poles[rows]
     col = intended[rows]
     here = np.arange(len(rows))
     members = np.zeros(omega.shape, dtype=bool)
     members[here, col] = True
     for order in (range(omega.shape[1]), range(omega.shape[1] - 1, -1, -1)):
-        s = 1j * omega[here, col]
+        s = np.asarray(1j * omega[here, col], dtype=np.complex128)
         g = gain[here, col].copy()
         alive = np.ones(len(rows), dtype=bool)
         upward = order.step > 0
@@ -165,5 +165,5 @@ def _nearest(split: Split, f_roots: ComplexArray, design: Array) -> tuple[Comple
         distance = np.abs(np.log(f_roots / (design**2)[:, None]))
     distance = np.where(np.isnan(distance), np.inf, distance)
     column = np.argmin(distance, axis=1)
-    x = f_roots[np.arange(len(column)), column]
+    x: ComplexArray = f_roots[np.arange(len(column)), column]
     return x, split.gain(x)

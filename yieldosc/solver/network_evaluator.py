@@ -9,6 +9,8 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from itertools import pairwise
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -59,7 +61,7 @@ class NetworkEvaluator:
         return {"circuit": self.circuit, "nominal": self.nominal}
 
     def __setstate__(self, state: dict[str, object]) -> None:
-        self.__init__(state["circuit"], state["nominal"])  # type: ignore[misc, arg-type]
+        self.__init__(state["circuit"], state["nominal"])  # type: ignore[misc]
 
     # -- the public call -----------------------------------------------------------------------------------------
 
@@ -148,7 +150,7 @@ class NetworkEvaluator:
                     doubt |= ~(np.abs(np.log(x / (centre * centre))) <= 2 * half)
                 block.omega = np.sqrt(x)
         with np.errstate(invalid="ignore"):
-            for earlier, later in zip(gains, gains[1:], strict=False):
+            for earlier, later in pairwise(gains):
                 doubt |= ~(earlier < later)
             doubt |= ~(self._expected(part, ref, gains) == growing_poles(_at_gain(part)))
             block.lower = gains[ref.intended] * sign
@@ -168,7 +170,8 @@ class NetworkEvaluator:
         for tracked, gain in zip(ref.tracked, gains, strict=True):
             count += np.where(gain < size, 2 * tracked.direction, 0)
         _, real_gain, direction = real_crossings(part.a, part.b, np.sign(part.g))
-        return count + np.sum(np.where(np.abs(real_gain) < size[:, None], direction, 0), axis=1)
+        count += np.sum(np.where(np.abs(real_gain) < size[:, None], direction, 0), axis=1)
+        return count
 
     @staticmethod
     def _other_growing(size: Array, ref: Reference, gains: list[Array]) -> Mask:
@@ -276,7 +279,7 @@ class NetworkEvaluator:
         """g/g_c and g_h/g in the circuit's own gain (K of an op-amp stage), the smaller is the margin."""
         factor = ref.scale.factor(self.network.dimensions[self.network.gain_symbol])
 
-        def gain(g: Array) -> Array:
+        def gain(g: Any) -> Any:  # real or complex arrays alike
             return g if self.circuit.gain_of is None else self.circuit.gain_of(part.symbols, g / factor)
 
         with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
@@ -287,15 +290,11 @@ class NetworkEvaluator:
             margin = np.minimum(margin, upper)
             rows = np.flatnonzero(block.no_crossing)
             if rows.size:
-                ratio = np.broadcast_to(actual, part.g.shape)[rows] / _rows(gain(block.nearest_gain), rows)
+                ratio = np.broadcast_to(actual, part.g.shape)[rows] / gain(block.nearest_gain)[rows]
                 size = np.abs(ratio)
                 margin[rows] = np.minimum(size, 1 / size) * np.exp(-np.abs(np.angle(ratio)))
                 upper[rows] = np.inf
         return margin, upper
-
-
-def _rows(values: NDArray[np.complex128], rows: NDArray[np.intp]) -> NDArray[np.complex128]:
-    return np.asarray(values)[rows]
 
 
 def _loses(a: list[Array], b: list[Array], g: Array, found: Modes, rows: NDArray[np.intp]) -> Mask:

@@ -101,7 +101,7 @@ def _countable(direction: NDArray[np.int64], member: NDArray[np.bool_]) -> bool:
         if step < 0 and count != 1:
             return False
         count += int(step)
-    # a pair that left may not be told from another that enters later, unless the entering one is the intended pair's only
+    # a pair that left could be taken for another that enters later, unless all crossings are the intended pair's
     return bool(np.count_nonzero(direction < 0) <= 1 or member.all())
 
 

@@ -72,7 +72,7 @@ def _full(value: Array | float, n: int) -> Array:
 
 
 def bias_substitute(circuit: Circuit, derived: Derived, reference: Mapping[str, Array], n: int) -> Derived:
-    """Units without bias get the reference unit's symbols, so that arrays stay finite; their status says no_bias."""
+    """Units without bias get the reference's symbols, so that arrays stay finite; their status says no_bias."""
     if derived.no_bias is None:
         return derived
     no_bias = np.broadcast_to(derived.no_bias, (n,))
