@@ -48,6 +48,11 @@ class Role:
     main: bool = True  # the value that a BOM line carries (R, C, L, FL); False for traits such as ESR or hFE
 
     @property
+    def may_be_zero(self) -> bool:
+        """Resistances of coils, couplings and delays may be zero; a part's main value may not."""
+        return self.trait in ("dcr", "k", "td", "Rd", "vl")
+
+    @property
     def required(self) -> bool:
         return self.default is None and not self.optional
 

@@ -27,3 +27,9 @@ class Evaluator(Protocol):
     ) -> Solution:
         """values: role → (n,), laws of the user already applied for roles in own_law; audit: units to check exactly."""
         ...
+
+    def other_modes(
+        self, values: Mapping[str, Array], temperature_c: float, *, own_law: frozenset[str] = frozenset()
+    ) -> list[tuple[float, ...]]:
+        """Frequencies [Hz] of every other growing mode of each unit, 0 for a latching real pole."""
+        ...

@@ -1,0 +1,166 @@
+"""One unit, or arrays of units, of a named circuit: what `unit` and the Python interface evaluate."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from enum import StrEnum
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from yieldosc.circuits import registry
+from yieldosc.circuits.circuit import Circuit, CircuitError, Family, Option, Role
+from yieldosc.errors import Finding, InputError
+from yieldosc.solver import make_evaluator
+from yieldosc.solver.solution import Solution, Status
+
+FloatOrArray = float | NDArray[np.float64] | None
+
+
+class Outcome(StrEnum):
+    """What becomes of a unit; compares equal to its text."""
+
+    STARTS = "starts"
+    NO_BIAS = "no_bias"
+    UNDEFINED = "undefined"
+    NOT_ASSESSABLE = "not_assessable"
+    NO_START = "no_start"
+    WRONG_MODE = "wrong_mode"
+
+
+OUTCOME_OF = {Status(i): outcome for i, outcome in enumerate(Outcome)}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Unit:
+    """Result of `evaluate`: floats where every input was a float, arrays (n,) otherwise; None where it does not apply.
+
+    frequency_hz: crossing [Hz]; settled_hz: None without a declared limiter; growth_per_s: None (nan in arrays) where
+    the intended mode does not grow; other_modes_hz: per unit, the other growing modes [Hz], 0 for a latching pole.
+    """
+
+    circuit: str
+    temperature_c: float
+    frequency_hz: FloatOrArray
+    settled_hz: FloatOrArray
+    startup_margin: FloatOrArray
+    growth_per_s: FloatOrArray
+    outcome: Outcome | NDArray[np.object_]
+    other_modes_hz: tuple[float, ...] | tuple[tuple[float, ...], ...]
+    resistance_ratio: FloatOrArray = None
+    distortion: FloatOrArray = None
+    overdriven: bool | NDArray[np.bool_] = False
+
+    def to_dict(self) -> dict[str, object]:
+        """The `unit` JSON contract; for a single unit."""
+
+        def number(value: FloatOrArray) -> object:
+            return value.tolist() if isinstance(value, np.ndarray) else value
+
+        outcome = self.outcome
+        return {
+            "circuit": self.circuit,
+            "temperature_c": self.temperature_c,
+            "frequency_hz": number(self.frequency_hz),
+            "settled_hz": number(self.settled_hz),
+            "startup_margin": number(self.startup_margin),
+            "growth_per_s": number(self.growth_per_s),
+            "outcome": [str(o) for o in outcome] if isinstance(outcome, np.ndarray) else str(outcome),
+            "other_modes_hz": list(self.other_modes_hz),
+            "resistance_ratio": number(self.resistance_ratio),
+            "distortion": number(self.distortion),
+            "overdriven": self.overdriven.tolist() if isinstance(self.overdriven, np.ndarray) else self.overdriven,
+        }
+
+
+@dataclass(frozen=True, slots=True)
+class NamedCircuit:
+    """A circuit by name: its roles, options and closed form, and `evaluate`."""
+
+    family: Family
+
+    @property
+    def name(self) -> str:
+        return self.family.name
+
+    @property
+    def options(self) -> tuple[Option, ...]:
+        return self.family.options
+
+    def roles(self, options: Mapping[str, str] | None = None) -> tuple[Role, ...]:
+        """Every role that these options allow."""
+        return self.family.roles(registry.complete_options(self.name, options or {}))
+
+    def build(self, options: Mapping[str, str] | None, present: frozenset[str]) -> Circuit:
+        """The circuit for these options and roles; InputError with every reason where there is none."""
+        try:
+            return registry.build(self.name, options, present)
+        except CircuitError as error:
+            raise InputError(Finding("error", "circuit-refused", text) for text in error.problems) from None
+
+    def evaluate(
+        self,
+        values: Mapping[str, ArrayLike],
+        options: Mapping[str, str] | None = None,
+        temperature_c: float = 25.0,
+    ) -> Unit:
+        """Evaluate one unit (floats) or n units (arrays (n,), floats are shared). Values at 25 °C, SI; the stage's
+        temperature laws are applied. InputError names every missing, unknown or impossible value."""
+        circuit = self.build(options, frozenset(values))
+        arrays, scalar = _arrays(circuit, values)
+        nominal = {name: float(np.median(array)) for name, array in arrays.items()}
+        evaluator = make_evaluator(circuit, nominal)
+        solution = evaluator.solve(arrays, temperature_c, growth=True)
+        others = evaluator.other_modes(arrays, temperature_c)
+        return _unit(circuit.name, temperature_c, solution, others, scalar)
+
+
+def _arrays(circuit: Circuit, values: Mapping[str, ArrayLike]) -> tuple[dict[str, NDArray[np.float64]], bool]:
+    given = {name: np.asarray(value, dtype=np.float64) for name, value in values.items()}
+    problems = [
+        Finding("error", "value-not-positive", f"{name} must be a finite number above zero; found {values[name]!r}")
+        for name, array in given.items()
+        if not np.all(np.isfinite(array)) or (np.any(array <= 0) and not circuit.role(name).may_be_zero)
+    ]
+    sizes = {array.size for array in given.values() if array.ndim}
+    if len(sizes) > 1 or any(array.ndim > 1 for array in given.values()):
+        problems.append(
+            Finding("error", "shapes-differ", f"arrays must be one-dimensional and of equal length; found {sorted(sizes)}")
+        )
+    if problems:
+        raise InputError(problems)
+    n = sizes.pop() if sizes else 1
+    for role in circuit.roles:
+        if role.name not in given and role.default is not None:
+            given[role.name] = np.asarray(role.default)
+    return {name: np.broadcast_to(array, (n,)).copy() for name, array in given.items()}, not any(
+        np.ndim(value) for value in values.values()
+    )
+
+
+def _unit(
+    name: str, temperature_c: float, solution: Solution, others: list[tuple[float, ...]], scalar: bool
+) -> Unit:
+    def pick(array: NDArray[np.float64] | None) -> FloatOrArray:
+        if array is None:
+            return None
+        if not scalar:
+            return array
+        return float(array[0]) if np.isfinite(array[0]) else None
+
+    outcomes = np.array([OUTCOME_OF[Status(code)] for code in solution.status], dtype=object)
+    overdriven = solution.overdriven if solution.overdriven is not None else np.zeros(len(outcomes), dtype=bool)
+    return Unit(
+        circuit=name,
+        temperature_c=temperature_c,
+        frequency_hz=pick(solution.frequency_hz),
+        settled_hz=pick(solution.settled_hz),
+        startup_margin=pick(solution.startup_margin),
+        growth_per_s=pick(solution.growth_per_s),
+        outcome=outcomes[0] if scalar else outcomes,
+        other_modes_hz=others[0] if scalar else tuple(others),
+        resistance_ratio=pick(solution.resistance_ratio),
+        distortion=pick(solution.distortion),
+        overdriven=bool(overdriven[0]) if scalar else overdriven,
+    )
