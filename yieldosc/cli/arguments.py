@@ -1,0 +1,132 @@
+"""The command line's grammar. Every command's --help ends with one example."""
+
+from __future__ import annotations
+
+import argparse
+from collections.abc import Sequence
+from importlib.metadata import version
+from typing import NoReturn
+
+from yieldosc.cli import commands
+from yieldosc.errors import refusal
+
+
+class Parser(argparse.ArgumentParser):
+    """Raises instead of printing and leaving, so that errors look the same everywhere and can be JSON."""
+
+    def error(self, message: str) -> NoReturn:
+        raise refusal("command", f"{message}; see {self.prog} --help")
+
+
+def parse(words: Sequence[str]) -> argparse.Namespace:
+    """The parsed command line; `run` is the function that carries it out."""
+    parser = _parser()
+    arguments = parser.parse_args(list(words))
+    if not hasattr(arguments, "run"):
+        raise refusal("command", "a command is needed; see yieldosc --help")
+    return arguments
+
+
+def _parser() -> Parser:
+    parser = Parser(
+        prog="yieldosc",
+        description="Production yield of oscillator circuits, from the BOM's tolerances to a workbook that can be signed.",
+        epilog="example: yieldosc assess bom_examples/tide_tone_1khz.xlsx",
+    )
+    parser.add_argument("--version", action="version", version=f"yieldosc {version('yieldosc')}")
+    sub = parser.add_subparsers(title="commands", metavar="COMMAND", parser_class=Parser)
+    _circuits(sub)
+    _unit(sub)
+    _draft(sub)
+    _check(sub)
+    _assess(sub)
+    return parser
+
+
+Sub = argparse._SubParsersAction[Parser]
+
+
+def _add(sub: Sub, name: str, summary: str, example: str) -> Parser:
+    return sub.add_parser(
+        name, help=summary, description=summary[0].upper() + summary[1:] + ".", epilog=f"example: yieldosc {example}"
+    )
+
+
+def _common(parser: Parser) -> None:
+    parser.add_argument("--json", metavar="FILE", help="write JSON to FILE, or to stdout with -")
+    parser.add_argument("--quiet", action="store_true", help="no progress, no notes; errors are still shown")
+    parser.add_argument("--force", action="store_true", help="replace files of another input")
+
+
+def _circuits(sub: Sub) -> None:
+    parser = _add(
+        sub, "circuits", "list the circuits, or describe one: roles, options, branches, range", "circuits wien_bridge"
+    )
+    parser.add_argument("name", nargs="?", metavar="NAME", help="a circuit; without one, the list")
+    parser.add_argument(
+        "--option", action="append", default=[], metavar="KEY=VALUE", help="a choice that the circuit offers"
+    )
+    _common(parser)
+    parser.set_defaults(run=commands.circuits)
+
+
+def _unit(sub: Sub) -> None:
+    parser = _add(
+        sub,
+        "unit",
+        "evaluate one unit: frequency, start-up margin, outcome, growth rate, other modes",
+        "unit wien_bridge R1=10k C1=10n R2=10k C2=10n RF=20k5 RG=10k GBW=3MHz",
+    )
+    parser.add_argument("target", metavar="CIRCUIT|STUDY", help="a circuit's name, or a study whose nominal unit is meant")
+    parser.add_argument("values", nargs="*", metavar="ROLE=VALUE", help="values as people write them: R1=4k7 C1=10n")
+    parser.add_argument(
+        "--option", action="append", default=[], metavar="KEY=VALUE", help="a choice that the circuit offers"
+    )
+    parser.add_argument("--temperature", default="25", metavar="°C", help="temperature of the unit [°C] (default 25)")
+    _common(parser)
+    parser.set_defaults(run=commands.unit)
+
+
+def _draft(sub: Sub) -> None:
+    parser = _add(
+        sub,
+        "draft",
+        "make a study workbook from a bare BOM: a part proposed for each role, with what is left to fill in",
+        "draft bom_examples/buoy_clock_bom.csv --circuit pierce -o buoy_clock.xlsx",
+    )
+    parser.add_argument("bom", metavar="BOM", help="spreadsheet or delimited text")
+    parser.add_argument("--circuit", required=True, metavar="NAME", help="which circuit the board has")
+    parser.add_argument(
+        "--option", action="append", default=[], metavar="KEY=VALUE", help="a choice that the circuit offers"
+    )
+    parser.add_argument("-o", "--output", required=True, metavar="STUDY.xlsx", help="the workbook to write")
+    _common(parser)
+    parser.set_defaults(run=commands.draft)
+
+
+def _check(sub: Sub) -> None:
+    parser = _add(
+        sub,
+        "check",
+        "read a study or a bare BOM and echo every line as understood; runs nothing",
+        "check bom_examples/buoy_clock_bom.csv",
+    )
+    parser.add_argument("input", metavar="INPUT", help="a study, or a BOM")
+    _common(parser)
+    parser.set_defaults(run=commands.check)
+
+
+def _assess(sub: Sub) -> None:
+    parser = _add(
+        sub,
+        "assess",
+        "the main job: what fraction starts and stays in limits, which parts decide it, is it evidence enough",
+        "assess bom_examples/tide_tone_1khz.xlsx",
+    )
+    parser.add_argument("study", metavar="STUDY", help="a study workbook, a .toml study, or a result workbook")
+    parser.add_argument("-o", "--output", metavar="DIR", help="where results go (default output/<study>-<digest>)")
+    parser.add_argument("--units", metavar="N", help="exactly N units, one look (default: looks at fixed counts)")
+    parser.add_argument("--seed", metavar="S", default="1", help="seed of every draw (default 1)")
+    parser.add_argument("--workers", metavar="W", help="processes (default: one per processor)")
+    _common(parser)
+    parser.set_defaults(run=commands.assess)
