@@ -264,12 +264,15 @@ class NetworkEvaluator:
             frequency = np.where(no_bias, np.nan, frequency)
             margin = np.where(no_bias, 0.0, margin)
         gain_factor = ref.scale.factor(self.network.dimensions[self.network.gain_symbol])
+        critical = block.lower / gain_factor
+        reach = self.circuit.control_reach
         return Solution(
             frequency_hz=frequency,
             startup_margin=margin,
             status=status.astype(np.int8),
             growth_per_s=block.growth * ref.scale.omega,
-            critical_gain=block.lower / gain_factor,
+            critical_gain=critical,
+            control_reach=None if reach is None else reach(part.symbols, values, critical),
             upper_ratio=upper,
             other_mode_hz=block.other_omega * hz,
             overdriven=block.overdriven,
