@@ -1,0 +1,147 @@
+"""What a reader must know beside the figures: verdict, its conditions, findings and cautions, as plain data."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+
+from yieldosc.errors import Finding
+from yieldosc.population import Block
+from yieldosc.population.block import middle_draws
+from yieldosc.studies.estimates import LookPlan
+from yieldosc.studies.results import Lots, Ranking, Verdict
+from yieldosc.studies.run import AUDIT_SHARE, Setup
+from yieldosc.studies.yields import YieldRun
+from yieldosc.study import Study
+
+DOUBTFUL = ("assumed", "typical")
+ONE_BOUND = "one-bound"  # code of the reader's finding for a value with a single bound
+
+
+def verdict(
+    run: YieldRun, plan: LookPlan, target: float | None, outcomes: Mapping[str, int], unjudged: Sequence[str]
+) -> Verdict:
+    """The plan's verdict, unless units outside the circuit's range, or limits that nothing judges, decide it."""
+    if unjudged:
+        return "not assessable"
+    outside = outcomes["not_assessable"]
+    if outside and target is not None:
+        look = run.looks[-1]
+        if plan.verdict(look.failures - outside, look.units, target) != run.verdict:
+            return "not assessable"
+    return run.verdict
+
+
+def unjudged(setup: Setup) -> tuple[str, ...]:
+    """Attributes that a requirement limits and the solver does not give for this circuit."""
+    block = Block(setup.population, middle_draws(setup.population.variables, 1), 1, typical=True)
+    return setup.judge.unjudged(setup.bench.solve(block, setup.corners[0]))
+
+
+def conditions(study: Study, ratio: float | None) -> tuple[str, ...]:
+    """What the verdict hangs on."""
+    made = []
+    for pedigree in DOUBTFUL:
+        roles = [p.role for p in study.parameters if p.pedigree == pedigree]
+        if roles:
+            made.append(f"if the {pedigree} values hold: {', '.join(roles)}")
+    one_sided = [f for f in study.findings if f.code == ONE_BOUND]
+    made += [f"if the missing bound is no worse than the one given: {f.place or f.text}" for f in one_sided]
+    if ratio is not None:
+        made.append(f"if every unit runs at {ratio:.6g} times its prediction, as the reference board did")
+    return tuple(made)
+
+
+def findings(
+    study: Study,
+    run: YieldRun,
+    rankings: Mapping[str, Ranking],
+    unranked: str,
+    outside: Sequence[Finding],
+    outcomes: Mapping[str, int],
+    missing: Sequence[str],
+    ratio: float | None,
+) -> tuple[Finding, ...]:
+    """The study's own findings, then those of this run."""
+    made = [*study.findings, *_unjudged_findings(missing), *_run_findings(study, run, outcomes), *outside]
+    if unranked:
+        made.append(Finding("warning", "rank-withheld", f"No parts are ranked: {unranked}."))
+    for output, ranking in rankings.items():
+        if ranking.withheld:
+            made.append(Finding("warning", "rank-withheld", f"Parts are not ranked for {output}: {ranking.withheld}."))
+    if ratio is not None:
+        made.append(_bench_finding(study, ratio))
+    return tuple(made)
+
+
+def _unjudged_findings(missing: Sequence[str]) -> list[Finding]:
+    return [
+        Finding(
+            "warning",
+            "limit-not-judged",
+            f"A limit on {name} is given, but this circuit's analysis does not give {name}: no unit was judged by it, "
+            "so there is no verdict. Remove the limit, or declare the limiter that makes it computable.",
+        )
+        for name in missing
+    ]
+
+
+def _run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> list[Finding]:
+    gathered, made = run.gathered, []
+    if study.design.yield_target is None:
+        made.append(
+            Finding("warning", "no-target", "No yield target is given, so nothing is met or missed: add 'yield target'.")
+        )
+    if gathered.disagreeing:
+        made.append(
+            Finding(
+                "warning",
+                "audit-disagreement",
+                f"{gathered.disagreeing} of {gathered.audited} audited unit-corners differ by more than 1e-6 in margin "
+                f"between the fast and the exact path (one in {AUDIT_SHARE} is audited); the exact value was used there.",
+            )
+        )
+    if outcomes["undefined"]:
+        made.append(
+            Finding(
+                "warning",
+                "undefined-units",
+                f"{outcomes['undefined']} of {gathered.units} units could not be solved at some corner; "
+                "they are counted as failures.",
+            )
+        )
+    if outcomes["not_assessable"]:
+        made.append(
+            Finding(
+                "warning",
+                "outside-model-range",
+                f"{outcomes['not_assessable']} of {gathered.units} units lie outside the circuit's stated range "
+                f"({study.circuit.range_text}) at some corner; they are counted as failures, and no verdict rests on them.",
+            )
+        )
+    return made
+
+
+def _bench_finding(study: Study, ratio: float) -> Finding:
+    return Finding(
+        "note",
+        "bench-scaled",
+        f"The reference board ran at {study.design.bench_frequency_hz:.9g} Hz, {ratio:.9g} times its prediction: "
+        "every unit's frequency is scaled by that ratio.",
+    )
+
+
+def cautions(study: Study, shared: Lots | None) -> tuple[str, ...]:
+    """What the figures do not cover, the same for every study but for its reels."""
+    made = [
+        "A prediction from stated tolerances, not a measurement of boards.",
+        "Every rate supposes that no wrong or defective part is on the board.",
+        "The interval covers sampling only; the range over the sets tried shows what the assumptions do, and is no bound.",
+    ]
+    if shared is not None:
+        made.append(
+            "Parts of a reel are alike: the interval describes the pooled rate, a single lot can lie anywhere "
+            f"in {np.round(100 * shared.q05, 1):g} % to {np.round(100 * shared.q95, 1):g} % and beyond."
+        )
+    return tuple(made)

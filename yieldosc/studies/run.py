@@ -1,0 +1,108 @@
+"""The inner loop: draw a block, carry it through every corner, judge it, keep only what merges.
+
+Work is cut at multiples of INNER units (two quanta of 4,096, which stay in the processor's cache), so every solver
+call sees the same units whatever the number of workers; results are merged in order of the unit numbers.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from yieldosc.population import Adjustment, Bench, Block, Population, Streams, uniforms
+from yieldosc.solver.evaluator import Evaluator
+from yieldosc.solver.solution import Solution, Status
+from yieldosc.studies.judge import GOOD, Codes, Judge
+from yieldosc.study import Corner, Study
+
+Array = NDArray[np.float64]
+QUANTUM = 4096
+INNER = 2 * QUANTUM
+AUDIT_SHARE = 1024  # one unit-corner in so many is solved by both paths
+_NOT_STARTING = np.array([s in (Status.NO_BIAS, Status.UNDEFINED, Status.NO_START, Status.WRONG_MODE) for s in Status])
+
+
+@dataclass(frozen=True)
+class Setup:
+    """Everything that decides a unit's outcome; the same unit numbers give the same units in every study."""
+
+    population: Population
+    streams: Streams
+    bench: Bench
+    judge: Judge
+    corners: tuple[Corner, ...]
+    adjustment: Adjustment | None = None
+
+    @classmethod
+    def of(
+        cls,
+        study: Study,
+        evaluator: Evaluator,
+        *,
+        seed: int,
+        bench_ratio: float = 1.0,
+        adjustment: Adjustment | None = None,
+    ) -> Setup:
+        """The declared population of a study at its corners."""
+        judge = Judge.of(study)
+        return cls(
+            population=Population.of(study),
+            streams=Streams(seed),
+            bench=Bench(evaluator, bench_ratio, judge.needs_growth),
+            judge=judge,
+            corners=study.design.corners(),
+            adjustment=adjustment,
+        )
+
+    def block(self, start: int, count: int) -> Block:
+        """Units start … start + count − 1, adjusted where the study adjusts its boards."""
+        return self._adjusted(self.population.block(self.streams, start, count))
+
+    def block_at(self, numbers: NDArray[np.int64]) -> Block:
+        """The units of these numbers (m,)."""
+        return self._adjusted(self.population.block_at(self.streams, numbers))
+
+    def _adjusted(self, block: Block) -> Block:
+        if self.adjustment is not None:
+            role, factors = self.adjustment.factors(block, self.bench)
+            block.adjust(role, factors)
+        return block
+
+    def codes(self, start: int, count: int) -> Codes:
+        """Joint outcome codes (count,) over all corners."""
+        joint = np.empty(count, dtype=np.int8)
+        for first, size in inner_pieces(start, count):
+            block = self.block(first, size)
+            joint[first - start : first - start + size] = self.block_codes(block)
+        return joint
+
+    def block_codes(self, block: Block) -> Codes:
+        """Joint outcome codes of a block."""
+        joint = np.full(block.count, GOOD, dtype=np.int8)
+        for corner in self.corners:
+            np.minimum(joint, self.judge.codes(self.bench.solve(block, corner)), out=joint)
+        return joint
+
+
+def inner_pieces(start: int, count: int) -> list[tuple[int, int]]:
+    """(first, size) of the solver's blocks: cut at absolute multiples of INNER."""
+    pieces = []
+    position, end = start, start + count
+    while position < end:
+        size = min(INNER - position % INNER, end - position)
+        pieces.append((position, size))
+        position += size
+    return pieces
+
+
+def audit_mask(streams: Streams, corner_index: int, start: int, count: int) -> NDArray[np.bool_]:
+    """Units that both paths solve at this corner, drawn at random and reproducibly (count,)."""
+    turn = (uniforms(streams.seed, "audit", "corner", start, count) * AUDIT_SHARE).astype(np.int64)
+    return np.asarray(turn == corner_index % AUDIT_SHARE)
+
+
+def not_starting(solution: Solution) -> NDArray[np.bool_]:
+    """Units that do not start on the intended mode (n,)."""
+    return np.asarray(_NOT_STARTING[solution.status])

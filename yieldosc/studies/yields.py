@@ -1,0 +1,188 @@
+"""Joint yield under a plan of looks, and what each corner shows."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from yieldosc.studies.estimates import LookPlan, clopper_pearson, yield_estimate
+from yieldosc.studies.gather import BINS, Gathered, Layouts, append, gather, layouts
+from yieldosc.studies.judge import GOOD
+from yieldosc.studies.parallel import in_order
+from yieldosc.studies.results import OUTCOMES, CornerResult, Distribution, Estimate, Look, Verdict
+from yieldosc.studies.run import INNER, Setup
+from yieldosc.studies.tally import Histogram, Moments
+from yieldosc.study import Corner
+
+Progress = Callable[[int], None]  # units finished since the last call
+PIECES_PER_WORKER = 8
+MOST_PIECE = 8 * INNER  # units; bounds what one message between processes carries
+CHART_BARS = 64
+
+
+@dataclass(frozen=True)
+class YieldRun:
+    """The declared set, evaluated: tallies, looks and verdict."""
+
+    gathered: Gathered
+    estimate: Estimate
+    looks: tuple[Look, ...]
+    looks_planned: int
+    verdict: Verdict
+
+
+@dataclass(frozen=True)
+class _Job:
+    setup: Setup
+    bins: Layouts
+    start: int
+    end: int
+    size: int
+
+    def __call__(self, piece: int) -> Gathered:
+        first = self.start + piece * self.size
+        return gather(self.setup, self.bins, first, min(self.size, self.end - first))
+
+
+def run_units(
+    setup: Setup,
+    bins: Layouts,
+    start: int,
+    end: int,
+    *,
+    workers: int = 1,
+    block: int | None = None,
+    progress: Progress | None = None,
+) -> Gathered:
+    """Tallies of units start … end − 1. block: units per piece of work, rounded up to the solver's blocks."""
+    wanted = block or min(-(-(end - start) // (workers * PIECES_PER_WORKER)), MOST_PIECE)
+    size = -(-wanted // INNER) * INNER
+    # The first piece ends at a multiple of INNER even where a look did not.
+    first = start - start % INNER
+    job = _Job(setup, bins, first, end, size)
+    whole: Gathered | None = None
+    for part in in_order(_From(job, start), -(-(end - first) // size), workers):
+        if whole is None:
+            whole = part
+        else:
+            append(whole, part)
+        if progress is not None:
+            progress(part.units)
+    assert whole is not None
+    return whole
+
+
+@dataclass(frozen=True)
+class _From:
+    """A job whose first piece begins at `start`, inside its first block."""
+
+    job: _Job
+    start: int
+
+    def __call__(self, piece: int) -> Gathered:
+        if piece:
+            return self.job(piece)
+        job = self.job
+        return gather(job.setup, job.bins, self.start, min(job.start + job.size, job.end) - self.start)
+
+
+def joint_yield(
+    setup: Setup,
+    plan: LookPlan,
+    *,
+    workers: int = 1,
+    block: int | None = None,
+    progress: Progress | None = None,
+) -> YieldRun:
+    """Look at the counts of the plan until a verdict stands; only this yield carries one."""
+    bins = layouts(setup, plan.counts[0])
+    gathered: Gathered | None = None
+    looks: list[Look] = []
+    verdict: Verdict = "not proven"
+    for number, units in enumerate(plan.counts, start=1):
+        done = 0 if gathered is None else gathered.units
+        more = run_units(setup, bins, done, units, workers=workers, block=block, progress=progress)
+        if gathered is None:
+            gathered = more
+        else:
+            append(gathered, more)
+        failures = units - int(gathered.joint[GOOD])
+        interval = plan.interval(failures, units)
+        looks.append(Look(number=number, units=units, failures=failures, low=interval.low, high=interval.high))
+        verdict = plan.verdict(interval)
+        if verdict != "not proven":
+            break
+    assert gathered is not None
+    return YieldRun(gathered, interval, tuple(looks), len(plan.counts), verdict)
+
+
+def outcome_counts(gathered: Gathered) -> dict[str, int]:
+    """Outcome → units, by the first that any corner shows; they add up to the units."""
+    return {name: int(gathered.joint[GOOD if name == "good" else OUTCOMES.index(name)]) for name in OUTCOMES}
+
+
+def corner_results(
+    gathered: Gathered, bins: Layouts, corners: tuple[Corner, ...], confidence: float
+) -> tuple[CornerResult, ...]:
+    """Per corner; intervals are pointwise."""
+    made = []
+    for c, corner in enumerate(corners):
+        shown = gathered.shown[c]
+        distributions = {
+            name: _distribution(gathered.moments[c][name], gathered.histograms[c][name])
+            for name in gathered.moments[c]
+            if gathered.moments[c][name]
+        }
+        margin = distributions.get("startup_margin")
+        dead = int(gathered.dead[c])
+        # A circuit without a start-up question has no margin, and nothing that could fail to start.
+        asked = margin is not None or dead > 0
+        made.append(
+            CornerResult(
+                corner=corner,
+                frequency_hz=distributions.get("frequency_hz", _nothing()),
+                settled_hz=distributions.get("settled_hz"),
+                startup_failures=dead if asked else None,
+                startup_rate=clopper_pearson(dead, gathered.units, confidence) if asked else None,
+                margin=margin,
+                yield_=yield_estimate(gathered.units - int(shown[GOOD]), gathered.units, confidence),
+                failing={OUTCOMES[code]: int(n) for code, n in enumerate(shown[:GOOD]) if n and code},
+                first_failures=int(gathered.first[c]),
+            )
+        )
+    return tuple(made)
+
+
+def _distribution(moments: list[Moments], histogram: Histogram) -> Distribution:
+    whole = moments[0]
+    for part in moments[1:]:
+        whole = whole.merged(part)
+    low, middle, high = (
+        float(np.clip(histogram.quantile(q), whole.low, whole.high)) for q in (0.001, 0.5, 0.999)
+    )
+    edges, counts = _chart(histogram, whole.low, whole.high)
+    return Distribution(
+        mean=whole.mean, sd=whole.sd, min=whole.low, max=whole.high,
+        q001=low, q50=middle, q999=high, edges=edges, counts=counts,
+    )  # fmt: skip
+
+
+def _chart(histogram: Histogram, low: float, high: float) -> tuple[tuple[float, ...], tuple[int, ...]]:
+    """Bars over the populated range: whole bins put together, about CHART_BARS of them."""
+    counts = histogram.inside
+    first = int(np.clip((low - histogram.low) // histogram.width, 0, BINS - 1))
+    last = int(np.clip((high - histogram.low) // histogram.width, first, BINS - 1))
+    step = max(1, -(-(last - first + 1) // CHART_BARS))
+    starts = np.arange(first, last + 1, step)
+    bars = np.add.reduceat(counts[: last + 1], starts)
+    edges = histogram.low + histogram.width * np.append(starts, starts[-1] + step)
+    return tuple(float(e) for e in edges), tuple(int(n) for n in bars)
+
+
+def _nothing() -> Distribution:
+    """Of a corner at which no unit has a gain."""
+    nan = float("nan")
+    return Distribution(mean=nan, sd=nan, min=nan, max=nan, q001=nan, q50=nan, q999=nan)
