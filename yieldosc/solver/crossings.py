@@ -68,14 +68,20 @@ class Split:
 
 
 def newton(split: Split, x: Array, *, steps: int = 12) -> tuple[Array, NDArray[np.bool_], Array]:
-    """Root of F near x (n,): the root, whether it converged to rounding, and F' there."""
+    """Root of F near x (n,): the root, whether it converged to rounding, and F' there.
+
+    A settled unit stands still while others move on, so that its digits do not depend on the rest of its block.
+    """
+    settled = np.zeros(np.shape(x), dtype=bool)
+    slope = np.full(np.shape(x), np.nan)
     with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         for _ in range(steps):
-            f, slope = split.condition(x)
-            step = f / slope
+            f, steep = split.condition(x)
+            step = np.where(settled, 0.0, f / steep)
+            slope = np.where(settled, slope, steep)
             x = x - step
             # quadratic convergence: a step below 1e-9 leaves an error far below rounding
-            settled = np.abs(step) <= 1e-9 * np.abs(x)
+            settled = settled | (np.abs(step) <= 1e-9 * np.abs(x))
             if settled.all():
                 break
         good = settled & np.isfinite(x) & (x > 0)
