@@ -42,6 +42,7 @@ def table_law(points: Sequence[tuple[float, float]], text: str) -> TableLaw:
     at_room = float(np.interp(ROOM_C, temperatures, changes))
     if abs(at_room) > 1e-9:
         raise ValueError(
-            f"{text}: the change at 25 °C is {at_room * 1e6:g} ppm, but changes count from 25 °C; subtract it from every point"
+            f"{text}: the change at 25 °C is {at_room * 1e6:g} ppm, but changes count from 25 °C; "
+            "subtract it from every point"
         )
     return TableLaw(temperatures, changes, text)

@@ -73,7 +73,7 @@ class RankLine:
     total: Estimate
     mean_first_order: Estimate  # variance-weighted over corners
     mean_total: Estimate
-    per_percent: float | None = None  # change of the output [%] per +1 % of the part, nominal unit; None where undefined
+    per_percent: float | None = None  # change of the output [%] per +1 % of the part, nominal unit
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

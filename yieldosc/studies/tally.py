@@ -85,7 +85,7 @@ class Histogram:
             return float("nan")
         below = np.cumsum(self.counts)
         wanted = share * total
-        index = int(min(np.searchsorted(below, wanted, side="left"), len(self.counts) - 1))
+        index = min(int(np.searchsorted(below, wanted, side="left")), len(self.counts) - 1)
         before = int(below[index] - self.counts[index])
         inner = 0.0 if self.counts[index] == 0 else (wanted - before) / int(self.counts[index])
-        return self.low + self.width * (index - 1 + inner)
+        return float(self.low + self.width * (index - 1 + inner))
