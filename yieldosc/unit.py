@@ -12,8 +12,10 @@ from numpy.typing import ArrayLike, NDArray
 from yieldosc.circuits import registry
 from yieldosc.circuits.circuit import Circuit, CircuitError, Family, Option, Role
 from yieldosc.errors import Finding, InputError
+from yieldosc.parts.values import nominal_value
 from yieldosc.solver import make_evaluator
 from yieldosc.solver.solution import Solution, Status
+from yieldosc.study import Study
 
 FloatOrArray = float | NDArray[np.float64] | None
 
@@ -164,3 +166,16 @@ def _unit(
         distortion=pick(solution.distortion),
         overdriven=bool(overdriven[0]) if scalar else overdriven,
     )
+
+
+def evaluate_nominal(study: Study, temperature_c: float = 25.0) -> Unit:
+    """The study's nominal unit, new, at a temperature: typical values, the middle of every other cause."""
+    circuit = study.circuit
+    values = {p.role: np.array([nominal_value(p, temperature_c)]) for p in study.parameters}
+    values |= {name: np.array([value]) for name, value in study.conditions.items()}
+    if circuit.supply_role is not None and study.design.supply_v is not None:
+        values[circuit.supply_role] = np.array([study.design.supply_v])
+    own = frozenset(p.role for p in study.parameters if p.law is not None and circuit.role(p.role).builtin_law)
+    evaluator = make_evaluator(circuit, {name: float(value[0]) for name, value in values.items()})
+    solution = evaluator.solve(values, temperature_c, own_law=own, growth=True)
+    return _unit(circuit.name, temperature_c, solution, evaluator.other_modes(values, temperature_c, own_law=own), True)
