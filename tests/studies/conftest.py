@@ -59,7 +59,7 @@ def wien_study(*, gain=3.2, window=0.03, r=0.01, c=0.05, rf=0.0, share=0.0, chan
     )
     if change is not None:
         parameters = tuple(change(p) for p in parameters)
-    settings = dict(temperature_low_c=25.0, temperature_high_c=25.0, yield_target=0.8) | design
+    settings = {"temperature_low_c": 25.0, "temperature_high_c": 25.0, "yield_target": 0.8} | design
     low, high = TARGET_HZ * (1 - window), TARGET_HZ * (1 + window)
     made = Design(target_frequency_hz=TARGET_HZ, frequency_low_hz=low, frequency_high_hz=high, **settings)
     requirements = [Requirement("startup_margin", made.least_margin, None, "low_margin", "1")]

@@ -9,9 +9,6 @@ from dataclasses import dataclass
 from datetime import UTC, datetime
 from importlib import metadata
 
-import numpy as np
-from numpy.typing import NDArray
-
 from yieldosc.errors import Finding
 from yieldosc.population import Adjustment, Population
 from yieldosc.solver import make_evaluator
@@ -25,7 +22,16 @@ from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_
 from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values, per_percent, reference_corner, slopes
 from yieldosc.studies.parallel import default_workers
 from yieldosc.studies.ranking import rankings
-from yieldosc.studies.results import Assessment, Lots, Provenance, Ranking
+from yieldosc.studies.results import (
+    Assessment,
+    Band,
+    CornerResult,
+    Lots,
+    Provenance,
+    Ranking,
+    RivalResult,
+    Tighter,
+)
 from yieldosc.studies.rivals import RIVAL_UNITS, rivals
 from yieldosc.studies.run import Setup
 from yieldosc.studies.sensitivity import NotANumberError
@@ -191,7 +197,14 @@ def _assembled(
         worst_units=worst_units(setup, gathered.failing, gathered.failing_codes, gathered.units),
         wrong_modes_hz=tuple(gathered.wrong_modes_hz),
         bench_ratio=ratio,
-        findings=remarks.findings(study, run, evidence.rankings, evidence.unranked, evidence.outside, outcomes, unjudged, ratio),
+        findings=(
+            *study.findings,
+            *remarks.unjudged_findings(unjudged),
+            *remarks.run_findings(study, run, outcomes),
+            *evidence.outside,
+            *remarks.ranking_findings(evidence.rankings, evidence.unranked),
+            *remarks.bench_findings(study, ratio),
+        ),
         cautions=remarks.cautions(study, evidence.lots),
         provenance=provenance,
     )

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from yieldosc.errors import Finding
 from yieldosc.population import Bench, Block, Population, Variable
 from yieldosc.population.block import middle_draws
-from yieldosc.studies.box import box_at, search
+from yieldosc.studies.box import Outputs, box_at, search
 from yieldosc.studies.results import Band, CornerResult, Distribution
 from yieldosc.study import Corner
 
@@ -33,8 +33,10 @@ class _AtCorner:
     method: str
 
 
-def bands(population: Population, bench: Bench, corners: Sequence[CornerResult]) -> tuple[tuple[Band, ...], tuple[Finding, ...]]:
-    """One band per output and temperature, the widest over supplies and ages; findings where Monte Carlo lies outside."""
+def bands(
+    population: Population, bench: Bench, corners: Sequence[CornerResult]
+) -> tuple[tuple[Band, ...], tuple[Finding, ...]]:
+    """One band per output and temperature, over supplies and ages; findings where Monte Carlo lies outside."""
     made: list[Band] = []
     solved = {result.corner: _at_corner(population, bench, result.corner) for result in corners}
     for temperature_c in dict.fromkeys(result.corner.temperature_c for result in corners):
@@ -97,11 +99,10 @@ def _at_corner(population: Population, bench: Bench, corner: Corner) -> _AtCorne
     return _AtCorner(centre, sd, low, high, method)
 
 
-def _root_sum_square(population: Population, corner: Corner, outputs: object) -> tuple[Array, Array]:
+def _root_sum_square(population: Population, corner: Corner, outputs: Outputs) -> tuple[Array, Array]:
     """Median unit's outputs (2,) and their standard deviations (2,) to first order, reels' correlation included."""
-    assert callable(outputs)
     middle = {k: np.asarray(v) for k, v in median_values(population, corner).items()}
-    every = [v for v in population.variables]
+    every = population.variables
     sds = [cause_sd(population, v, corner) for v in every]
     roles = list(dict.fromkeys(v.role for v in every))
     spans = {role: max(sd for sd, v in zip(sds, every, strict=True) if v.role == role) for role in roles}
@@ -111,7 +112,7 @@ def _root_sum_square(population: Population, corner: Corner, outputs: object) ->
     for i, role in enumerate(roles):
         values[role][1 + 2 * i] += spans[role] / 10
         values[role][2 + 2 * i] -= spans[role] / 10
-    found = np.asarray(outputs(values))
+    found = outputs(values)
     slopes = {role: (found[:, 1 + 2 * i] - found[:, 2 + 2 * i]) / (spans[role] / 5) for i, role in enumerate(roles)}
     effects = [slopes.get(v.role, np.zeros(2)) * sd for v, sd in zip(every, sds, strict=True)]
     variance = sum((e**2 for e in effects), np.zeros(2))

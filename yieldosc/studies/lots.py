@@ -36,7 +36,9 @@ def shares_reels(setup: Setup) -> bool:
     return any(v.reel_counts for v in setup.population.variables)
 
 
-def lot_yields(setup: Setup, *, workers: int = 1, piece_done: Callable[[int], None] | None = None) -> NDArray[np.float64]:
+def lot_yields(
+    setup: Setup, *, workers: int = 1, piece_done: Callable[[int], None] | None = None
+) -> NDArray[np.float64]:
     """Yield of each of 1,024 lots of 256 units. piece_done is told the units finished since the last call."""
     streams = Streams(setup.streams.seed, "lots", UNITS_PER_LOT)
     job = _Job(replace(setup, streams=streams))

@@ -14,7 +14,7 @@ import sys
 import threading
 import traceback
 from collections.abc import Callable, Iterator
-from multiprocessing.connection import Connection, wait
+from multiprocessing.connection import wait
 from typing import Any, TypeVar
 
 from yieldosc.errors import YieldoscError
@@ -64,7 +64,7 @@ class _Pool:
 
     def __init__(self, context: Any, work: Work[Result], workers: int, *, forked: bool) -> None:
         self._processes = []
-        self._pipes: list[Connection] = []
+        self._pipes: list[Any] = []
         for _ in range(workers):
             ours, theirs = context.Pipe()
             inherited = (*self._pipes, ours) if forked else ()
@@ -80,13 +80,14 @@ class _Pool:
         for pipe in self._pipes:
             pipe.send(started)
             started += 1
+        answering: Any
         for piece in range(pieces):
             while piece not in ready:
-                for pipe in wait(self._pipes):
-                    number, result = _received(pipe)
+                for answering in wait(self._pipes):
+                    number, result = _received(answering)
                     ready[number] = result
                     if started < pieces:
-                        pipe.send(started)
+                        answering.send(started)
                         started += 1
             yield ready.pop(piece)
 

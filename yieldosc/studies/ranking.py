@@ -126,7 +126,10 @@ def rankings(
         for k, output in enumerate(OUTPUTS)
         if (table := _table(parts.results, whole, setup.corners, k, confidence)) is not None
     }
-    leading = {output: [n for n in table.names if not n.startswith("reel ")][:LEADING] for output, table in tables.items()}
+    leading = {
+        output: [name for name in table.names if not name.startswith("reel ")][:LEADING]
+        for output, table in tables.items()
+    }
     chosen = {name for names in leading.values() for name in names}
     causes = Inputs.of(setup.population.variables, lambda v: _cause_group(v, chosen))
     detail = _run(_Job(setup, causes, tuple(nominal_hz), max(base // 2, 2)), workers)

@@ -53,29 +53,19 @@ def conditions(study: Study, ratio: float | None) -> tuple[str, ...]:
     return tuple(made)
 
 
-def findings(
-    study: Study,
-    run: YieldRun,
-    rankings: Mapping[str, Ranking],
-    unranked: str,
-    outside: Sequence[Finding],
-    outcomes: Mapping[str, int],
-    missing: Sequence[str],
-    ratio: float | None,
-) -> tuple[Finding, ...]:
-    """The study's own findings, then those of this run."""
-    made = [*study.findings, *_unjudged_findings(missing), *_run_findings(study, run, outcomes), *outside]
+def ranking_findings(rankings: Mapping[str, Ranking], unranked: str) -> list[Finding]:
+    """Why parts are not ranked, where they are not."""
+    made = []
     if unranked:
         made.append(Finding("warning", "rank-withheld", f"No parts are ranked: {unranked}."))
     for output, ranking in rankings.items():
         if ranking.withheld:
             made.append(Finding("warning", "rank-withheld", f"Parts are not ranked for {output}: {ranking.withheld}."))
-    if ratio is not None:
-        made.append(_bench_finding(study, ratio))
-    return tuple(made)
+    return made
 
 
-def _unjudged_findings(missing: Sequence[str]) -> list[Finding]:
+def unjudged_findings(missing: Sequence[str]) -> list[Finding]:
+    """Limits that no unit was judged by."""
     return [
         Finding(
             "warning",
@@ -87,11 +77,14 @@ def _unjudged_findings(missing: Sequence[str]) -> list[Finding]:
     ]
 
 
-def _run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> list[Finding]:
+def run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> list[Finding]:
+    """What the solved units themselves call for."""
     gathered, made = run.gathered, []
     if study.design.yield_target is None:
         made.append(
-            Finding("warning", "no-target", "No yield target is given, so nothing is met or missed: add 'yield target'.")
+            Finding(
+                "warning", "no-target", "No yield target is given, so nothing is met or missed: add 'yield target'."
+            )
         )
     if gathered.disagreeing:
         made.append(
@@ -99,7 +92,7 @@ def _run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> l
                 "warning",
                 "audit-disagreement",
                 f"{gathered.disagreeing} of {gathered.audited} audited unit-corners differ by more than 1e-6 in margin "
-                f"between the fast and the exact path (one in {AUDIT_SHARE} is audited); the exact value was used there.",
+                f"between the fast and the exact path (one in {AUDIT_SHARE} is audited).",
             )
         )
     if outcomes["undefined"]:
@@ -117,19 +110,22 @@ def _run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> l
                 "warning",
                 "outside-model-range",
                 f"{outcomes['not_assessable']} of {gathered.units} units lie outside the circuit's stated range "
-                f"({study.circuit.range_text}) at some corner; they are counted as failures, and no verdict rests on them.",
+                f"({study.circuit.range_text}) at some corner; they are counted as failures, "
+                "and no verdict may depend on them.",
             )
         )
     return made
 
 
-def _bench_finding(study: Study, ratio: float) -> Finding:
-    return Finding(
-        "note",
-        "bench-scaled",
+def bench_findings(study: Study, ratio: float | None) -> list[Finding]:
+    """That every frequency is scaled, where it is."""
+    if ratio is None:
+        return []
+    text = (
         f"The reference board ran at {study.design.bench_frequency_hz:.9g} Hz, {ratio:.9g} times its prediction: "
-        "every unit's frequency is scaled by that ratio.",
+        "every unit's frequency is scaled by that ratio."
     )
+    return [Finding("note", "bench-scaled", text)]
 
 
 def cautions(study: Study, shared: Lots | None) -> tuple[str, ...]:
@@ -137,7 +133,7 @@ def cautions(study: Study, shared: Lots | None) -> tuple[str, ...]:
     made = [
         "A prediction from stated tolerances, not a measurement of boards.",
         "Every rate supposes that no wrong or defective part is on the board.",
-        "The interval covers sampling only; the range over the sets tried shows what the assumptions do, and is no bound.",
+        "The interval covers sampling only; the range over the sets tried shows what assumptions do, and is no bound.",
     ]
     if shared is not None:
         made.append(

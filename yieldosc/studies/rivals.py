@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from yieldosc.parts.laws import lower_ends, whole_interval
 from yieldosc.parts.parameter import Parameter
-from yieldosc.parts.shapes import Hollow, Normal, Uniform, is_min_typ_max
+from yieldosc.parts.shapes import Hollow, Measured, Normal, Uniform, is_min_typ_max
 from yieldosc.studies.estimates import tango, yield_estimate
 from yieldosc.studies.judge import GOOD
 from yieldosc.studies.parallel import in_order
@@ -24,6 +24,7 @@ from yieldosc.studies.run import QUANTUM, Setup
 
 Parameters = tuple[Parameter, ...]
 Change = Callable[[Parameter], Parameter]
+Slopes = Mapping[str, tuple[float, float]]  # role → relative slopes of frequency and margin at the nominal unit
 RIVAL_UNITS = 20_480
 MOST_REELS = 6  # sign patterns are all tried up to here
 SCREENED_ABOVE = 8  # more patterns than this are screened on one quantum first
@@ -50,23 +51,23 @@ class _Job:
         return rival, self.setups[rival].codes(first, count) == GOOD
 
 
-def rival_sets(declared: Parameters, slopes: Mapping[str, tuple[float, float]]) -> tuple[tuple[Rival, ...], tuple[Rival, ...]]:
+def rival_sets(declared: Parameters, slopes: Slopes) -> tuple[tuple[Rival, ...], tuple[Rival, ...]]:
     """Every set that differs from the declared one, and the sign patterns apart.
 
-    slopes: role → relative slopes of frequency and margin at the nominal unit, for the patterns by gradient sign.
+    slopes decide the patterns by gradient sign.
     """
     single = tuple(r for r in _single_sets(declared, slopes) if r.parameters != declared)
     return single, tuple(r for r in _patterns(declared, slopes) if r.parameters != declared)
 
 
-def _single_sets(declared: Parameters, slopes: Mapping[str, tuple[float, float]]) -> Iterator[Rival]:
+def _single_sets(declared: Parameters, slopes: Slopes) -> Iterator[Rival]:
     def changed(change: Change) -> Parameters:
         return tuple(change(p) for p in declared)
 
     yield Rival("all uniform", "every tolerance flat between its bounds", changed(_uniform))
     yield Rival("all normal", "every tolerance normal, three standard deviations, cut", changed(_normal))
     yield Rival("same reel", "parts of one reel identical (reel share 1)", changed(_one_reel(declared)))
-    yield Rival("independent", "every part on its own (reel share 0)", changed(lambda p: replace(p, reel_share=0.0)))
+    yield Rival("independent", "every part on its own (reel share 0)", changed(_apart))
     yield Rival("hollow", "better grades sorted out: the inner 40 % of every tolerance missing", changed(_hollow))
     both = tuple(_one_reel(declared)(_hollow(p)) for p in declared)
     yield Rival("hollow, same reel", "better grades sorted out, and parts of one reel identical", both)
@@ -95,13 +96,17 @@ def _hollow(p: Parameter) -> Parameter:
 def _one_reel(declared: Parameters) -> Change:
     members: dict[tuple[str | None, str], int] = {}
     for p in declared:
-        members[(p.reel, p.trait)] = members.get((p.reel, p.trait), 0) + 1
+        members[(p.reel, p.trait)] = members.get((p.reel, p.trait), 0) + p.spread
 
     def change(p: Parameter) -> Parameter:
-        shared = p.reel is not None and members[(p.reel, p.trait)] > 1
+        shared = p.spread and p.reel is not None and members[(p.reel, p.trait)] > 1
         return replace(p, reel_share=1.0) if shared else p
 
     return change
+
+
+def _apart(p: Parameter) -> Parameter:
+    return replace(p, reel_share=0.0) if p.spread and p.reel is not None else p
 
 
 def _class_2_low(p: Parameter) -> Parameter:
@@ -112,7 +117,7 @@ def _whole_angle(p: Parameter) -> Parameter:
     return p if p.law is None else replace(p, law=whole_interval(p.law))
 
 
-def _weak_half(p: Parameter, slopes: Mapping[str, tuple[float, float]]) -> Parameter:
+def _weak_half(p: Parameter, slopes: Slopes) -> Parameter:
     slope = slopes.get(p.role, (0.0, 0.0))[1]
     if not is_min_typ_max(p.shape) or not slope:
         return p
@@ -122,9 +127,10 @@ def _weak_half(p: Parameter, slopes: Mapping[str, tuple[float, float]]) -> Param
 def _half(p: Parameter, side: int) -> Parameter:
     """The whole distribution squeezed into one half of its tolerance."""
     low, high = (p.low, p.typical) if side < 0 else (p.typical, p.high)
-    if not _bounded_spread(p) or high <= low:
+    if not _bounded_spread(p) or high <= low or isinstance(p.shape, Measured):
         return p
-    return replace(p, low=low, typical=(low + high) / 2, high=high, shape=Uniform() if is_min_typ_max(p.shape) else p.shape)
+    shape = Uniform() if is_min_typ_max(p.shape) else p.shape
+    return replace(p, low=low, typical=(low + high) / 2, high=high, shape=shape)
 
 
 def _groups(declared: Parameters) -> dict[str, list[str]]:
@@ -136,7 +142,7 @@ def _groups(declared: Parameters) -> dict[str, list[str]]:
     return groups
 
 
-def _patterns(declared: Parameters, slopes: Mapping[str, tuple[float, float]]) -> Iterator[Rival]:
+def _patterns(declared: Parameters, slopes: Slopes) -> Iterator[Rival]:
     groups = _groups(declared)
     if not groups:
         return
@@ -177,7 +183,7 @@ def good_units(setup: Setup, sets: Sequence[Parameters], units: int, workers: in
 
 def rivals(
     setup: Setup,
-    slopes: Mapping[str, tuple[float, float]],
+    slopes: Slopes,
     *,
     units: int = RIVAL_UNITS,
     workers: int = 1,

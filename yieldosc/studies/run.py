@@ -6,7 +6,7 @@ call sees the same units whatever the number of workers; results are merged in o
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -97,10 +97,9 @@ def inner_pieces(start: int, count: int) -> list[tuple[int, int]]:
     return pieces
 
 
-def audit_mask(streams: Streams, corner_index: int, start: int, count: int) -> NDArray[np.bool_]:
-    """Units that both paths solve at this corner, drawn at random and reproducibly (count,)."""
-    turn = (uniforms(streams.seed, "audit", "corner", start, count) * AUDIT_SHARE).astype(np.int64)
-    return np.asarray(turn == corner_index % AUDIT_SHARE)
+def audit_turns(streams: Streams, start: int, count: int) -> NDArray[np.int64]:
+    """Each unit's number in 0 … AUDIT_SHARE − 1 (count,): both paths solve it at the corner of that number."""
+    return (uniforms(streams.seed, "audit", "corner", start, count) * AUDIT_SHARE).astype(np.int64)
 
 
 def not_starting(solution: Solution) -> NDArray[np.bool_]:

@@ -6,7 +6,6 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
 from yieldosc.studies.estimates import LookPlan, clopper_pearson, yield_estimate
 from yieldosc.studies.gather import BINS, Gathered, Layouts, append, gather, layouts
@@ -36,15 +35,25 @@ class YieldRun:
 
 @dataclass(frozen=True)
 class _Job:
+    """Pieces of `size` units from `boundary` on; the first piece begins at `start`, inside its first solver block."""
+
     setup: Setup
     bins: Layouts
     start: int
     end: int
     size: int
 
+    @property
+    def boundary(self) -> int:
+        return self.start - self.start % INNER
+
+    @property
+    def pieces(self) -> int:
+        return -(-(self.end - self.boundary) // self.size)
+
     def __call__(self, piece: int) -> Gathered:
-        first = self.start + piece * self.size
-        return gather(self.setup, self.bins, first, min(self.size, self.end - first))
+        first = max(self.start, self.boundary + piece * self.size)
+        return gather(self.setup, self.bins, first, min(self.boundary + (piece + 1) * self.size, self.end) - first)
 
 
 def run_units(
@@ -59,34 +68,18 @@ def run_units(
 ) -> Gathered:
     """Tallies of units start … end − 1. block: units per piece of work, rounded up to the solver's blocks."""
     wanted = block or min(-(-(end - start) // (workers * PIECES_PER_WORKER)), MOST_PIECE)
-    size = -(-wanted // INNER) * INNER
-    # The first piece ends at a multiple of INNER even where a look did not.
-    first = start - start % INNER
-    job = _Job(setup, bins, first, end, size)
+    job = _Job(setup, bins, start, end, -(-wanted // INNER) * INNER)
     whole: Gathered | None = None
-    for part in in_order(_From(job, start), -(-(end - first) // size), workers):
+    for part in in_order(job, job.pieces, workers):
+        if progress is not None:
+            progress(part.units)
         if whole is None:
             whole = part
         else:
             append(whole, part)
-        if progress is not None:
-            progress(part.units)
-    assert whole is not None
+    if whole is None:
+        raise ValueError("no units to run")
     return whole
-
-
-@dataclass(frozen=True)
-class _From:
-    """A job whose first piece begins at `start`, inside its first block."""
-
-    job: _Job
-    start: int
-
-    def __call__(self, piece: int) -> Gathered:
-        if piece:
-            return self.job(piece)
-        job = self.job
-        return gather(job.setup, job.bins, self.start, min(job.start + job.size, job.end) - self.start)
 
 
 def joint_yield(
