@@ -72,7 +72,10 @@ def feed(v: Values) -> list[Element]:
     """RC and the choke in series from c, here with a node of their own between them."""
     rows = []
     if "LCH" in v and "RC" in v:
-        rows += [Element("R", ("c", "feed"), (v["RC"],)), Element("L", ("feed", "gnd"), (v["LCH"], v.get("LCH_dcr", 0.0)))]
+        rows += [
+            Element("R", ("c", "feed"), (v["RC"],)),
+            Element("L", ("feed", "gnd"), (v["LCH"], v.get("LCH_dcr", 0.0))),
+        ]
     elif "LCH" in v:
         rows.append(Element("L", ("c", "gnd"), (v["LCH"], v.get("LCH_dcr", 0.0))))
     elif "RC" in v:
@@ -119,12 +122,22 @@ def colpitts(v: Values, options: Mapping[str, str], temperature_c: float) -> lis
     rfeed = v.get("RC", 0.0) + v.get("LCH_dcr", 0.0)
     b = "b" if ground == "base" or "CC" in v else "m"
     if ground == "emitter":
-        rows = [*_coil(v, "c", "m"), Element("C", ("c", "gnd"), (v["C1"],)), Element("C", ("m", "gnd"), (v["C2"],)), *feed(v)]
+        rows = [
+            *_coil(v, "c", "m"),
+            Element("C", ("c", "gnd"), (v["C1"],)),
+            Element("C", ("m", "gnd"), (v["C2"],)),
+            *feed(v),
+        ]
         c = "c"
     elif ground == "base":
         if "C3" not in v:
             rfeed = v.get("L_dcr", 0.0)
-        rows = [*_coil(v, "c", "gnd"), Element("C", ("c", e), (v["C1"],)), Element("C", (e, "gnd"), (v["C2"],)), *feed(v)]
+        rows = [
+            *_coil(v, "c", "gnd"),
+            Element("C", ("c", e), (v["C1"],)),
+            Element("C", (e, "gnd"), (v["C2"],)),
+            *feed(v),
+        ]
         rows.append(Element("C", ("b", "gnd"), (v["CB"],)))
         c = "c"
     else:

@@ -69,7 +69,8 @@ def _scaled(elements: Sequence[Element], w0: float, r0: float) -> list[Element]:
     out = []
     for e in elements:
         values = tuple(
-            mpf(v) * mpf(r0) ** -ohms * mpf(w0) ** seconds for v, (ohms, seconds) in zip(e.values, SI[e.kind], strict=True)
+            mpf(v) * mpf(r0) ** -ohms * mpf(w0) ** seconds
+            for v, (ohms, seconds) in zip(e.values, SI[e.kind], strict=True)
         )
         out.append(replace(e, values=values))
     return out
@@ -208,7 +209,9 @@ def _determinant(rows: list[list[mpf]]) -> mpf:
         for i in range(k + 1, size):
             if m[i][k] != 0:
                 factor = m[i][k] / m[k][k]
-                m[i] = m[i][: k + 1] + [x - factor * y if y != 0 else x for x, y in zip(m[i][k + 1 :], m[k][k + 1 :], strict=True)]
+                m[i] = m[i][: k + 1] + [
+                    x - factor * y if y != 0 else x for x, y in zip(m[i][k + 1 :], m[k][k + 1 :], strict=True)
+                ]
     return total
 
 
@@ -306,9 +309,11 @@ class Unit:
             self.gain_unit = _gain_unit(elements, w0, r0)
             a = _coefficients(_Pencil(_with_gain(self.elements, mpf(0))))
             both = _coefficients(_Pencil(_with_gain(self.elements, mpf(1))))
-            size = max(max(map(abs, a)), max(map(abs, both)))
+            size = max(map(abs, [*a, *both]))
             floor = size * mpf(10) ** (-DIGITS + 22)
-            clean = [[c if abs(c) > floor else mpf(0) for c in p] for p in (a, [y - x for x, y in zip(a, both, strict=True)])]
+            clean = [
+                [c if abs(c) > floor else mpf(0) for c in p] for p in (a, [y - x for x, y in zip(a, both, strict=True)])
+            ]
             lowest = next(k for k, pair in enumerate(zip(*clean, strict=True)) if any(pair))
             self.a, self.b = (_trim(p[lowest:], mpf(0)) for p in clean)
             self.crossings, self.x_roots = self._crossings()
@@ -318,9 +323,7 @@ class Unit:
     def polynomial(self, gain: object = None) -> list[mpf]:
         g = self.g if gain is None else mpf(gain) * self.gain_unit
         size = max(len(self.a), len(self.b))
-        total = [
-            (self.a[k] if k < len(self.a) else 0) + g * (self.b[k] if k < len(self.b) else 0) for k in range(size)
-        ]
+        total = [(self.a[k] if k < len(self.a) else 0) + g * (self.b[k] if k < len(self.b) else 0) for k in range(size)]
         return _trim(total, mpf(0))
 
     def _crossings(self) -> tuple[list[Crossing], list]:
@@ -333,7 +336,7 @@ class Unit:
         one, two = _times(ao, be), _times(ae, bo)
         size = max(len(one), len(two))
         f = [(one[k] if k < len(one) else mpf(0)) - (two[k] if k < len(two) else mpf(0)) for k in range(size)]
-        f = _trim(f, max(max(map(abs, one)), max(map(abs, two))))
+        f = _trim(f, max(map(abs, [*one, *two])))
         lowest = next((k for k, c in enumerate(f) if c != 0), 0)
         roots = _all_roots(f[lowest:])
         out = []

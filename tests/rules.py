@@ -50,8 +50,10 @@ def judge(
         own, overdriven = None, False
         if margin > 1:
             own, overdriven = _growth(unit, lower, growing)
-        others = len(growing) - (0 if own is None else (1 if overdriven and len(growing) == 1 else 2))
-        outcome = "starts" if own is not None else ("wrong_mode" if others else "no_start")
+        if own is None:
+            outcome = "wrong_mode" if growing else "no_start"
+        else:
+            outcome = "wrong_mode" if len(growing) > 2 and _loses(unit, pair, lower, own, growing) else "starts"
         return Verdict(float(lower.omega / (2 * mpmath.pi)), float(margin), outcome, own, len(growing), overdriven)
 
 
@@ -73,6 +75,19 @@ def _belongs(unit: Unit, first: Crossing, other: Crossing) -> bool:
         return True  # one pair was in the right half plane, and one leaves
     here = unit.follow(first, float(other.gain))
     return abs(here - 1j * complex(other.omega)) < 1e-6 * abs(here)
+
+
+def _loses(unit: Unit, pair: list[Crossing], lower: Crossing, own: float, growing: list) -> bool:
+    """Another mode grows faster, and the intended one needs more than half of the gain at which that one enters."""
+    g = float(unit.g / unit.gain_unit)
+    for other in unit.crossings:
+        if other in pair or not other.enters or abs(other.gain) > abs(g):
+            continue
+        rate = unit.follow(other, g).real
+        alive = any(abs(float(p.real) - rate) < 1e-6 * abs(rate) for p in growing)
+        if alive and rate > own and abs(lower.gain) > abs(other.gain) / 2:
+            return True
+    return False
 
 
 def _growth(unit: Unit, lower: Crossing, growing: list) -> tuple[float, bool]:

@@ -33,14 +33,29 @@ FEED = {"RC": 820.0, "LCH": 1e-3, "LCH_dcr": 12.0}
 
 SAMPLES: dict[str, Sample] = {
     "wien_bridge": Sample(
-        values={**WIEN, "GBW": 1e6, "RO": 75.0, "CIN": 5e-12}, level_ohm=1e4, ideal={"GBW": None, "RO": None}, tolerance=1e-12
+        values={**WIEN, "GBW": 1e6, "RO": 75.0, "CIN": 5e-12},
+        level_ohm=1e4,
+        ideal={"GBW": None, "RO": None},
+        tolerance=1e-12,
     ),
     "colpitts": Sample(
         options={"ground": "base"},
         values={**BJT, **TANK, "CB": 10e-9, "RL": 10e3, "CST": 3e-12},
         level_ohm=100.0,
-        ideal={"CB": 1.0, "L_dcr": 1e-12, "RL": 1e12, "CST": 1e-21, "RE": 1e9, "hFE": 1e9, "VA": 1e9, "Cob": 1e-22, "fT": 1e18,
-               "VCC": 5e6, "RB1": 1e3, "RB2": 1e3},
+        ideal={
+            "CB": 1.0,
+            "L_dcr": 1e-12,
+            "RL": 1e12,
+            "CST": 1e-21,
+            "RE": 1e9,
+            "hFE": 1e9,
+            "VA": 1e9,
+            "Cob": 1e-22,
+            "fT": 1e18,
+            "VCC": 5e6,
+            "RB1": 1e3,
+            "RB2": 1e3,
+        },
         tolerance=1e-6,
     ),
     "pierce": Sample(

@@ -62,7 +62,9 @@ def draw(values: Mapping[str, float], n: int, spread: float, seed: int) -> dict[
     return {k: np.full(n, x) if k in fixed else x * np.exp(rng.uniform(-spread, spread, n)) for k, x in values.items()}
 
 
-def solve(name: str, options: Mapping[str, str], drawn: Mapping[str, np.ndarray], nominal: Mapping[str, float], t: float) -> Solution:
+def solve(
+    name: str, options: Mapping[str, str], drawn: Mapping[str, np.ndarray], nominal: Mapping[str, float], t: float
+) -> Solution:
     circuit = registry.build(name, options, drawn)
     n = len(next(iter(drawn.values())))
     values = {r.name: drawn[r.name] if r.name in drawn else np.full(n, r.default) for r in circuit.roles}

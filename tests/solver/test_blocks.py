@@ -10,7 +10,16 @@ from tests.solver.test_agreement import draw
 from yieldosc.circuits import registry
 from yieldosc.solver import make_evaluator
 
-FIELDS = ("frequency_hz", "startup_margin", "growth_per_s", "critical_gain", "upper_ratio", "other_mode_hz", "status", "overdriven")
+FIELDS = (
+    "frequency_hz",
+    "startup_margin",
+    "growth_per_s",
+    "critical_gain",
+    "upper_ratio",
+    "other_mode_hz",
+    "status",
+    "overdriven",
+)
 PICKED = [
     pytest.param(name, *choice, id=f"{name}-{number}")
     for name, choices in CHOICES.items()

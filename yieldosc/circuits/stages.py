@@ -130,6 +130,7 @@ def _inverter(
     law = 1.0 if "gm" in own_law else ((temperature_c + ZERO_C_IN_K) / (ROOM_C + ZERO_C_IN_K)) ** -1.5
     symbols = {
         "gm": values["gm"] * law,
+        "rin": np.float64(MOST_RIN),
         "rout": values["Rout"],
         "cin": values["Cin"],
         "cout": values["Cout"],
@@ -146,7 +147,7 @@ INVERTER = Stage(
         device("Cout", "F", "output capacitance", default=5e-12, kind="ic"),
         device("Cfb", "F", "capacitance from output to input", default=0.5e-12, kind="ic"),
     ),
-    symbols=("gm", "rout", "cin", "cout", "cfb"),
+    symbols=("gm", "rin", "rout", "cin", "cout", "cfb"),
     solve=_inverter,
     supply_role=None,
     assumptions=(

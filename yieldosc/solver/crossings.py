@@ -59,12 +59,32 @@ class Split:
         """The same for some of the units."""
         return Split(*([c[rows] for c in part] for part in (self.ae, self.ao, self.be, self.bo)))
 
+    def polynomial(self) -> list[Array]:
+        """Coefficients of F(x)."""
+        return difference(product(self.ao, self.be), product(self.ae, self.bo))
+
     def all_roots(self) -> ComplexArray:
         """Every root of F (n, degree), complex ones included, nan where there is none."""
-        poly = difference(product(self.ao, self.be), product(self.ae, self.bo))
+        poly = self.polynomial()
         while len(poly) > 1 and not np.any(poly[-1]):
             poly.pop()
         return roots(poly)
+
+
+def real_roots(split: Split, found: ComplexArray) -> tuple[Array, Array]:
+    """Positive real roots x of F among `found` (n, c), polished, and F' there; nan where a root is not one."""
+    with np.errstate(invalid="ignore"):
+        candidate = (found.real > 0) & (np.abs(found.imag) <= REAL_ROOT * np.abs(found))
+    x = np.where(candidate, found.real, np.nan)
+    slope = np.full(x.shape, np.nan)
+    for k in range(x.shape[1]):
+        rows = np.flatnonzero(candidate[:, k])
+        if rows.size:
+            polished, good, steep = newton(split.take(rows), x[rows, k])
+            near = good & (np.abs(polished - x[rows, k]) <= 1e-5 * x[rows, k])
+            x[rows, k] = np.where(near, polished, np.nan)
+            slope[rows, k] = steep
+    return x, slope
 
 
 def newton(split: Split, x: Array, *, steps: int = 12) -> tuple[Array, NDArray[np.bool_], Array]:
@@ -127,21 +147,8 @@ def all_crossings(a: Poly, b: Poly, sign: Array) -> tuple[Crossings, ComplexArra
     """Every crossing of every unit from all roots of F, and those roots (for units without a crossing)."""
     split = Split.of(a, b)
     found = split.all_roots()
-    n, count = found.shape
-    with np.errstate(invalid="ignore"):
-        candidate = (found.real > 0) & (np.abs(found.imag) <= REAL_ROOT * np.abs(found))
-    x = np.where(candidate, found.real, np.nan)
-    slope = np.full((n, count), np.nan)
-    gain = np.full((n, count), np.nan)
-    for k in range(count):
-        rows = np.flatnonzero(candidate[:, k])
-        if rows.size:
-            part = split.take(rows)
-            polished, good, steep = newton(part, x[rows, k])
-            near = good & (np.abs(polished - x[rows, k]) <= 1e-5 * x[rows, k])
-            x[rows, k] = np.where(near, polished, np.nan)
-            slope[rows, k] = steep
-            gain[rows, k] = part.gain(x[rows, k])
+    x, slope = real_roots(split, found)
+    gain = np.stack([split.gain(column) for column in x.T], axis=1) if x.size else x
     with np.errstate(invalid="ignore"):
         wanted = np.isfinite(x) & np.isfinite(gain) & (gain * sign[:, None] > 0)
         enters = np.where(sign[:, None] * slope < 0, 1, -1)

@@ -25,6 +25,7 @@ from yieldosc.solver.reference import Reference, make_reference
 from yieldosc.solver.routh import growing_poles
 from yieldosc.solver.scaled import Scale, Scaled, bias_substitute, scaled
 from yieldosc.solver.solution import Solution, Status
+from yieldosc.solver.sturm import positive_roots
 
 Array = NDArray[np.float64]
 Mask = NDArray[np.bool_]
@@ -137,19 +138,28 @@ class NetworkEvaluator:
         sign = np.sign(part.g)
         gains: list[Array] = []
         doubt = np.zeros(n, dtype=bool)
-        for k, tracked in enumerate(ref.tracked):
-            ratio = (design / ref.design) ** 2 if k == ref.intended else ref.prediction(k, part.symbols)
+        followed: list[Array] = []
+        for k, tracked in enumerate(ref.tracked + ref.idle):
+            ratio = (design / ref.design) ** 2 if k == ref.intended else ref.prediction(tracked, part.symbols)
             x, good, slope = newton(split, tracked.x * ratio)
+            followed.append(x)
             gain = split.gain(x)
             with np.errstate(invalid="ignore"):
+                if not tracked.direction:
+                    doubt |= ~good | (gain * sign >= 0)
+                    continue
                 doubt |= ~good | (gain * sign <= 0) | ((sign * slope < 0) != (tracked.direction > 0))
             gains.append(np.abs(gain))
             if k == ref.intended:
                 centre, half = self._band(values, design, ref.scale, n)
                 with np.errstate(invalid="ignore", divide="ignore"):
                     doubt |= ~(np.abs(np.log(x / (centre * centre))) <= 2 * half)
-                block.omega = np.sqrt(x)
+                    block.omega = np.sqrt(x)
+        # a root of F that the reference does not have may limit the gain from above without a pole more or less at g
+        doubt |= positive_roots(split.polynomial()) != len(followed)
         with np.errstate(invalid="ignore"):
+            for lower, higher in pairwise(ref.order):
+                doubt |= ~(followed[lower] < followed[higher])
             for earlier, later in pairwise(gains):
                 doubt |= ~(earlier < later)
             doubt |= ~(self._expected(part, ref, gains) == growing_poles(_at_gain(part)))

@@ -3,16 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Circuit, Derived
 from yieldosc.circuits.network import Network
-from yieldosc.solver.crossings import Split
+from yieldosc.solver.crossings import Split, real_roots
 from yieldosc.solver.exact import modes
 from yieldosc.solver.scaled import Scale, scaled
+from yieldosc.solver.sturm import positive_roots
 
 Array = NDArray[np.float64]
 
@@ -28,7 +29,11 @@ class Tracked:
 
 @dataclass(frozen=True, slots=True)
 class Reference:
-    """`simple` is False where the fast path would have to guess which crossings belong to which pair."""
+    """`simple` is False where the fast path would have to guess which crossings belong to which pair.
+
+    idle: the positive roots of F that are no crossings, since their gain has the other sign; order: tracked and idle
+    roots (numbered on from the tracked) by rising x. Roots of F cannot pass each other without meeting.
+    """
 
     scale: Scale
     symbols: Mapping[str, Array]
@@ -37,12 +42,15 @@ class Reference:
     intended: int
     leaves: int | None
     simple: bool
+    idle: tuple[Tracked, ...] = ()
+    order: tuple[int, ...] = ()
 
-    def prediction(self, k: int, symbols: Mapping[str, Array]) -> Array:
-        """First-order ratio x/x_reference of crossing k for units with these symbols."""
+    def prediction(self, root: Tracked, symbols: Mapping[str, Array]) -> Array:
+        """First-order ratio x/x_reference of a root for units with these symbols."""
         total: Array = np.zeros(1)
-        for name, exponent in self.tracked[k].exponents.items():
-            total = total + exponent * np.log(symbols[name] / self.symbols[name])
+        with np.errstate(divide="ignore", invalid="ignore"):  # a capacitance may be 0 in some units
+            for name, exponent in root.exponents.items():
+                total = total + exponent * np.log(symbols[name] / self.symbols[name])
         return np.exp(np.clip(total, -3, 3))
 
 
@@ -86,12 +94,24 @@ def make_reference(
     )
     if not simple:
         return empty
-    exponents = _exponents(network, scale, symbols, x)
-    tracked = tuple(
-        Tracked(float(x[k]), int(direction[k]), exponents[k] if k != entering[0] else {}) for k in range(len(x))
-    )
+    every, complete = _positive_roots(Split.of(part.a, part.b), x)
+    if not complete:
+        return empty
+    exponents = _exponents(network, scale, symbols, every)
+    followed = [Tracked(float(root), 0, exponents[k]) for k, root in enumerate(every)]
+    tracked = tuple(replace(f, direction=int(d)) for f, d in zip(followed, direction, strict=False))
     leaves = int(leaving[0]) if leaving.size else None
-    return Reference(scale, extended, float(design[0]), tracked, int(entering[0]), leaves, True)
+    order = tuple(int(k) for k in np.argsort(every))
+    idle = tuple(followed[len(x) :])
+    return Reference(scale, extended, float(design[0]), tracked, int(entering[0]), leaves, True, idle, order)
+
+
+def _positive_roots(split: Split, crossings: Array) -> tuple[Array, bool]:
+    """The crossings' x, then the other positive roots of F; and whether a Sturm chain counts as many."""
+    found, _ = real_roots(split, split.all_roots())
+    idle = [x for x in found[0] if np.isfinite(x) and not np.any(np.abs(crossings - x) <= 1e-9 * x)]
+    every = np.concatenate([crossings, idle])
+    return every, bool(positive_roots(split.polynomial())[0] == len(every))
 
 
 def _countable(direction: NDArray[np.int64], member: NDArray[np.bool_]) -> bool:
