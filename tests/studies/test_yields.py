@@ -95,7 +95,7 @@ def test_joint_interval_covers_as_often_as_it_says(make_study, ideal_wien):
     study = make_study(gain=4.0)
     trials, units, covered = 300, 2000, 0
     for seed in range(trials):
-        run = joint_yield(Setup.of(study, ideal_wien(), seed=seed), LookPlan(first=units, looks=1, confidence=0.9))
+        run = joint_yield(Setup.of(study, ideal_wien(), seed=seed), LookPlan(first=units, looks=1, confidence=0.9), None)
         covered += run.estimate.low <= 1 - 0.16678 <= run.estimate.high
     # Clopper–Pearson covers at least as often as stated
     assert stats.binomtest(covered, trials, 0.9, alternative="less").pvalue > 1e-3
@@ -106,8 +106,8 @@ def test_verdicts_under_the_plan_are_seldom_false(make_study, ideal_wien):
     trials, wrong, several = 300, 0, 0
     study = make_study(gain=4.0, yield_target=1 - 0.16678)
     for seed in range(trials):
-        plan = LookPlan(first=256, looks=4, confidence=0.9, target=study.design.yield_target)
-        run = joint_yield(Setup.of(study, ideal_wien(), seed=seed), plan)
+        plan = LookPlan(first=256, looks=4, confidence=0.9)
+        run = joint_yield(Setup.of(study, ideal_wien(), seed=seed), plan, study.design.yield_target)
         wrong += run.verdict != "not proven"
         several += len(run.looks) > 1
     assert several > trials / 2
@@ -117,8 +117,8 @@ def test_verdicts_under_the_plan_are_seldom_false(make_study, ideal_wien):
 @pytest.mark.parametrize(("target", "verdict"), [(0.80, "meets"), (0.86, "does not meet")])
 def test_a_clear_case_needs_one_look(make_study, ideal_wien, target, verdict):
     study = make_study(gain=4.0, yield_target=target)
-    plan = LookPlan(first=20_000, looks=4, confidence=0.95, target=target)
-    run = joint_yield(Setup.of(study, ideal_wien(), seed=0), plan)
+    plan = LookPlan(first=20_000, looks=4, confidence=0.95)
+    run = joint_yield(Setup.of(study, ideal_wien(), seed=0), plan, target)
     assert run.verdict == verdict
     assert [look.units for look in run.looks] == [20_000]
     assert run.looks_planned == 4

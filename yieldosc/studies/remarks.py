@@ -26,9 +26,10 @@ def verdict(
     if unjudged:
         return "not assessable"
     outside = outcomes["not_assessable"]
-    if outside and target is not None:
+    if outside:
         look = run.looks[-1]
-        if plan.verdict(look.failures - outside, look.units, target) != run.verdict:
+        without = plan.interval(look.failures - outside, look.units)
+        if plan.verdict(without, target) != run.verdict:
             return "not assessable"
     return run.verdict
 
@@ -47,7 +48,7 @@ def conditions(study: Study, ratio: float | None) -> tuple[str, ...]:
         if roles:
             made.append(f"if the {pedigree} values hold: {', '.join(roles)}")
     one_sided = [f for f in study.findings if f.code == ONE_BOUND]
-    made += [f"if the missing bound is no worse than the one given: {f.place or f.text}" for f in one_sided]
+    made += [f"if the missing bound is no worse than the one given: {str(f.place) or f.text}" for f in one_sided]
     if ratio is not None:
         made.append(f"if every unit runs at {ratio:.6g} times its prediction, as the reference board did")
     return tuple(made)

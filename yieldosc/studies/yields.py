@@ -85,12 +85,13 @@ def run_units(
 def joint_yield(
     setup: Setup,
     plan: LookPlan,
+    target: float | None,
     *,
     workers: int = 1,
     block: int | None = None,
     progress: Progress | None = None,
 ) -> YieldRun:
-    """Look at the counts of the plan until a verdict stands; only this yield carries one."""
+    """Look at the counts of the plan until a verdict on the target stands; only this yield carries one."""
     bins = layouts(setup, plan.counts[0])
     gathered: Gathered | None = None
     looks: list[Look] = []
@@ -105,7 +106,7 @@ def joint_yield(
         failures = units - int(gathered.joint[GOOD])
         interval = plan.interval(failures, units)
         looks.append(Look(number=number, units=units, failures=failures, low=interval.low, high=interval.high))
-        verdict = plan.verdict(interval)
+        verdict = plan.verdict(interval, target)
         if verdict != "not proven":
             break
     assert gathered is not None
