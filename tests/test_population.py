@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -31,7 +32,7 @@ def population(*parameters):
 def test_any_cut_of_a_stream_gives_the_same_digits():
     whole = uniforms(7, "units", "R1: initial", 0, 20_000)
     cuts = (0, 1, 3, 4096, 4097, 8192, 12_290, 20_000)
-    pieces = [uniforms(7, "units", "R1: initial", a, b - a) for a, b in zip(cuts, cuts[1:], strict=False)]
+    pieces = [uniforms(7, "units", "R1: initial", a, b - a) for a, b in pairwise(cuts)]
     assert np.array_equal(np.concatenate(pieces), whole)
     numbers = np.array([19_999, 0, 4096, 4095, 12])
     assert np.array_equal(uniforms_at(7, "units", "R1: initial", numbers), whole[numbers])
@@ -39,7 +40,12 @@ def test_any_cut_of_a_stream_gives_the_same_digits():
 
 @pytest.mark.parametrize(
     "other",
-    [(0, "units", "R1: initial"), (1, "lots", "R1: initial"), (1, "units", "R2: initial"), (11, "units", "R1: initial")],
+    [
+        (0, "units", "R1: initial"),
+        (1, "lots", "R1: initial"),
+        (1, "units", "R2: initial"),
+        (11, "units", "R1: initial"),
+    ],
 )
 def test_seed_purpose_and_name_each_make_another_stream(other):
     u, v = uniforms(1, "units", "R1: initial", 0, 50_000), uniforms(*other, 0, 50_000)

@@ -223,7 +223,7 @@ class TrimR1:
 
 
 def test_a_trim_between_drawing_and_judging(make_study, ideal_wien):
-    global bench_corner, target_hz  # noqa: PLW0603 -- a trim must be picklable, so its facts stand at module level
+    global bench_corner, target_hz
     study = make_study(gain=4.0)
     bench_corner, target_hz = study.design.corners()[0], study.design.target_frequency_hz
     plain = quick(study, ideal_wien())

@@ -35,7 +35,7 @@ def band(study, evaluator, output="frequency_hz"):
 
 
 def test_one_over_rc_worst_case_and_root_sum_square(make_study, ideal_wien):
-    # Exact: f = 1/(RC), R ±1 %, C ±5 %: −5.7049 %, +6.3264 %; RSS sd 2.94392 %. Identical parts of a reel make the bridge that.
+    # Exact: f = 1/(RC), R ±1 %, C ±5 %: −5.7049 %, +6.3264 %; RSS sd 2.94392 %. Identical parts make the bridge that.
     study = make_study(gain=4.0, share=1.0)
     made = band(study, ideal_wien())
     nominal = study.design.target_frequency_hz

@@ -26,7 +26,7 @@ def drifting(p):
 
 def timeless(assessment):
     document = assessment_dict(assessment)
-    document["provenance"] = {**document["provenance"], "started": "", "seconds": 0, "workers": 0}
+    document["provenance"] = {**document["provenance"], "started": "", "seconds": 0}
     return document
 
 
@@ -95,7 +95,8 @@ def test_joint_interval_covers_as_often_as_it_says(make_study, ideal_wien):
     study = make_study(gain=4.0)
     trials, units, covered = 300, 2000, 0
     for seed in range(trials):
-        run = joint_yield(Setup.of(study, ideal_wien(), seed=seed), LookPlan(first=units, looks=1, confidence=0.9), None)
+        plan = LookPlan(first=units, looks=1, confidence=0.9)
+        run = joint_yield(Setup.of(study, ideal_wien(), seed=seed), plan, None)
         covered += run.estimate.low <= 1 - 0.16678 <= run.estimate.high
     # Clopper–Pearson covers at least as often as stated
     assert stats.binomtest(covered, trials, 0.9, alternative="less").pvalue > 1e-3

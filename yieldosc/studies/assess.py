@@ -70,7 +70,8 @@ def assess(
     setup = Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment)
     plan = _plan(study, units)
     crew = _Crew(workers or default_workers(), _Meter(progress, plan.counts), block)
-    run = joint_yield(setup, plan, study.design.yield_target, workers=crew.workers, block=block, progress=crew.meter.units)
+    target = study.design.yield_target
+    run = joint_yield(setup, plan, target, workers=crew.workers, block=block, progress=crew.meter.units)
     evidence = _evidence(study, setup, run, crew, rival_units or RIVAL_UNITS)
     provenance = Provenance(
         seed=seed,

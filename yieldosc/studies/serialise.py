@@ -60,7 +60,8 @@ def assessment_dict(assessment: Assessment) -> dict[str, object]:
         "bench_ratio": a.bench_ratio,
         "findings": [finding.to_dict() for finding in a.findings],
         "cautions": list(a.cautions),
-        "provenance": asdict(a.provenance),
+        # The number of workers is no part of the result: documents from any number of them are equal but for times.
+        "provenance": {key: value for key, value in asdict(a.provenance).items() if key != "workers"},
     }
     return {key: finite(value) for key, value in document.items()}
 
