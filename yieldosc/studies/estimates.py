@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy import optimize, stats
+from scipy import stats
 
 from yieldosc.studies.results import Estimate, Verdict
 
@@ -83,16 +83,21 @@ def tango(gained: int, lost: int, units: int, confidence: float = 0.95) -> Estim
         difference = gained - lost - units * delta
         return difference / math.sqrt(variance) if variance > 0 else math.copysign(math.inf, difference or 1.0)
 
-    low = -1.0 if score(-1 + 1e-12) <= z else _solve(lambda d: score(d) - z, -1 + 1e-12, point)
-    high = 1.0 if score(1 - 1e-12) >= -z else _solve(lambda d: score(d) + z, point, 1 - 1e-12)
+    edge = 1 - 1e-12
+    low = -1.0 if score(-edge) <= z else _root(lambda d: score(d) - z, -edge, point)
+    high = 1.0 if score(edge) >= -z else _root(lambda d: score(d) + z, point, edge)
     return Estimate(estimate=point, low=low, high=high, confidence=confidence, units=units)
 
 
-def _solve(function, low: float, high: float) -> float:  # type: ignore[no-untyped-def]
-    ends = function(low), function(high)
-    if not ends[0] * ends[1] < 0:
-        return low if abs(ends[0]) < abs(ends[1]) else high
-    return float(optimize.brentq(function, low, high, xtol=1e-14))
+def _root(function: Callable[[float], float], low: float, high: float) -> float:
+    """Where a falling function passes zero, by bisection: at the point estimate it may jump, which a faster method
+    would not survive."""
+    for _ in range(200):
+        middle = (low + high) / 2
+        if not low < middle < high:
+            break
+        low, high = (middle, high) if function(middle) > 0 else (low, middle)
+    return (low + high) / 2
 
 
 def t_interval(replicates: ArrayLike | Sequence[float], confidence: float = 0.95) -> Estimate:
