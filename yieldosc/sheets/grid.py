@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
-from yieldosc.errors import Place
+from yieldosc.errors import Finding, Place
 
 CellKind = Literal["empty", "text", "number", "percent", "boolean", "date", "error", "formula_without_result"]
 
@@ -65,6 +65,7 @@ class Book:
     path: str
     file_type: str  # "xlsx", "xls", "xlsb", "ods", "csv", "tsv", "toml"
     sheets: tuple[Grid, ...]
+    findings: tuple[Finding, ...] = ()  # what was assumed in opening the file, such as its encoding
 
     def sheet(self, name: str) -> Grid | None:
         """The sheet of that name, case and blanks ignored; None when there is none."""
