@@ -146,7 +146,7 @@ def test_seed_zero_is_a_seed(make_study, ideal_wien):
 def test_lots_of_shared_reels(make_study, ideal_wien):
     # Reel share 0.5: mean yield 72.8 %, lots from 24 % to 93 % (5 and 95 % points, one run of about 1000 lots)
     yields = lot_yields(Setup.of(make_study(gain=4.0, share=0.5), ideal_wien(), seed=1))
-    found = lots(yields, 0.7)
+    found = lots(yields, 256, 0.7)
     assert yields.mean() == pytest.approx(0.728, abs=0.03)
     assert found.q05 == pytest.approx(0.24, abs=0.09)
     assert found.q95 == pytest.approx(0.93, abs=0.02)

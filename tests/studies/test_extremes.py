@@ -24,7 +24,7 @@ AT_25 = Corner(25.0, None, 0.0)
 def found(study, evaluator, units=20_000):
     setup = Setup.of(study, evaluator, seed=1)
     bins = layouts(setup, units)
-    results = corner_results(run_units(setup, bins, 0, units), bins, setup.corners, 0.95)
+    results = corner_results(run_units(setup, bins, 0, units), setup.corners, 0.95)
     return bands(setup.population, setup.bench, results)
 
 
@@ -135,7 +135,7 @@ def test_bench_ratio_scales_every_band(make_study, ideal_wien):
     population = Population.of(study)
     setup = Setup.of(study, ideal_wien(), seed=1, bench_ratio=1.01)
     bins = layouts(setup, 8192)
-    results = corner_results(run_units(setup, bins, 0, 8192), bins, setup.corners, 0.95)
+    results = corner_results(run_units(setup, bins, 0, 8192), setup.corners, 0.95)
     scaled = bands(population, setup.bench, results)[0][0]
     plain = bands(population, Bench(ideal_wien()), results)[0][0]
     assert scaled.extreme[0] == pytest.approx(1.01 * plain.extreme[0])

@@ -78,6 +78,6 @@ def test_a_limit_that_cannot_be_judged_is_named_and_fails_nobody():
 
 
 def test_codes_are_the_contracts_order():
-    assert GOOD == len(OUTCOMES)
+    assert len(OUTCOMES) == GOOD
     order = ["no_bias", "undefined", "not_assessable", "no_start", "wrong_mode", "low_margin", "slow_start"]
     assert [outcome_name(c) for c in range(1, 8)] == order

@@ -9,6 +9,7 @@ import pytest
 
 from yieldosc.parts.linear import Linear
 from yieldosc.studies.nominal import nominal_points, per_percent
+from yieldosc.studies.parallel import Workers
 from yieldosc.studies.ranking import rankings
 from yieldosc.studies.run import Setup
 
@@ -104,4 +105,4 @@ def test_an_output_that_does_not_vary_has_no_ranking(make_study, ideal_wien):
 
 def test_workers_change_no_index(make_study, ideal_wien):
     study = make_study(gain=3.1, share=0.5)
-    assert ranked(study, ideal_wien(), workers=1) == ranked(study, ideal_wien(), workers=2)
+    assert ranked(study, ideal_wien()) == ranked(study, ideal_wien(), workers=Workers(2))

@@ -9,13 +9,14 @@ import pytest
 
 from yieldosc.parts.shapes import Fixed, Split, Uniform
 from yieldosc.studies.nominal import reference_corner, slopes
+from yieldosc.studies.parallel import Workers
 from yieldosc.studies.rivals import paired_difference, rival_sets, rivals
 from yieldosc.studies.run import Setup
 
 UNITS = 20_480
 
 
-def tried(study, evaluator, *, seed=1, workers=1):
+def tried(study, evaluator, *, seed=1, workers=None):
     setup = Setup.of(study, evaluator, seed=seed)
     leaning = slopes(setup.population, setup.bench, reference_corner(study))
     return {r.name: r for r in rivals(setup, leaning, units=UNITS, workers=workers)[0]}
@@ -86,7 +87,7 @@ def test_more_reels_than_patterns_are_leaned_by_gradient(make_study, ideal_wien)
 
 def test_many_patterns_are_screened_to_the_lowest_and_the_highest(make_study, ideal_wien):
     study = make_study(gain=3.1, rf=0.01)  # four reels: sixteen patterns
-    found = [name for name in tried(study, ideal_wien(), workers=2) if name.startswith("one-sided")]
+    found = [name for name in tried(study, ideal_wien(), workers=Workers(2)) if name.startswith("one-sided")]
     assert len(found) == 4
 
 

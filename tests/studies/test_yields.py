@@ -13,6 +13,8 @@ from yieldosc.studies.assess import assess
 from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.gather import layouts
 from yieldosc.studies.judge import GOOD
+from yieldosc.studies.parallel import Workers
+from yieldosc.studies.progress import Meter
 from yieldosc.studies.run import Setup, inner_pieces
 from yieldosc.studies.serialise import assessment_dict
 from yieldosc.studies.yields import corner_results, joint_yield, outcome_counts, run_units
@@ -50,8 +52,8 @@ def test_a_look_continues_where_the_last_one_stopped(make_study, ideal_wien):
     setup = Setup.of(make_study(gain=3.1), ideal_wien(), seed=3)
     bins = layouts(setup, 30_000)
     whole = run_units(setup, bins, 0, 30_000)
-    first = run_units(setup, bins, 0, 10_000, workers=2)
-    rest = run_units(setup, bins, 10_000, 30_000, workers=2, block=8192)
+    first = run_units(setup, bins, 0, 10_000, workers=Workers(2))
+    rest = run_units(setup, bins, 10_000, 30_000, workers=Workers(2), block=8192)
     assert np.array_equal(first.joint + rest.joint, whole.joint)
     assert np.array_equal(np.concatenate([first.failing, rest.failing]), whole.failing)
     codes = setup.codes(0, 30_000)
@@ -61,8 +63,12 @@ def test_a_look_continues_where_the_last_one_stopped(make_study, ideal_wien):
 def test_progress_adds_up(make_study, ideal_wien):
     setup = Setup.of(make_study(), ideal_wien(), seed=1)
     seen = []
-    run_units(setup, layouts(setup, 50_000), 0, 50_000, workers=2, progress=seen.append)
-    assert sum(seen) == 50_000 and len(seen) > 1
+    meter = Meter(lambda done, total: seen.append((done, total)))
+    meter.expect(60_000)
+    run_units(setup, layouts(setup, 50_000), 0, 50_000, workers=Workers(2), meter=meter)
+    assert seen[-1] == (50_000, 60_000) and len(seen) > 1
+    meter.done(20_000)
+    assert seen[-1] == (70_000, 70_000)
 
 
 def test_corner_figures_against_direct_statistics(make_study, ideal_wien):
@@ -72,7 +78,7 @@ def test_corner_figures_against_direct_statistics(make_study, ideal_wien):
     bins = layouts(setup, units)
     gathered = run_units(setup, bins, 0, units)
     solved = [setup.bench.solve(setup.block(0, units), corner) for corner in setup.corners]
-    for result, solution in zip(corner_results(gathered, bins, setup.corners, 0.95), solved, strict=True):
+    for result, solution in zip(corner_results(gathered, setup.corners, 0.95), solved, strict=True):
         f, found = solution.frequency_hz, result.frequency_hz
         assert found.mean == pytest.approx(f.mean(), rel=1e-14)
         assert found.sd == pytest.approx(f.std(ddof=1), rel=1e-11)

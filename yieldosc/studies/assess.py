@@ -4,10 +4,12 @@ from __future__ import annotations
 
 import sys
 import time
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from importlib import metadata
+
+import numpy as np
 
 from yieldosc.errors import Finding
 from yieldosc.population import Adjustment, Population
@@ -17,11 +19,11 @@ from yieldosc.studies import remarks
 from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.extremes import bands
 from yieldosc.studies.failure_share import failure_share
-from yieldosc.studies.gather import layouts
 from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_reels
 from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values, per_percent, reference_corner, slopes
-from yieldosc.studies.parallel import default_workers
-from yieldosc.studies.ranking import rankings
+from yieldosc.studies.parallel import Workers, default_workers
+from yieldosc.studies.progress import Callback, Meter
+from yieldosc.studies.ranking import BASE, rankings
 from yieldosc.studies.results import (
     Assessment,
     Band,
@@ -33,8 +35,8 @@ from yieldosc.studies.results import (
     Tighter,
 )
 from yieldosc.studies.rivals import RIVAL_UNITS, rivals
-from yieldosc.studies.run import Setup
-from yieldosc.studies.sensitivity import NotANumberError
+from yieldosc.studies.run import QUANTUM, Setup
+from yieldosc.studies.sensitivity import REPLICATES, NotANumberError
 from yieldosc.studies.tighter import leading_parts, tighter
 from yieldosc.studies.worst_units import worst_units
 from yieldosc.studies.yields import YieldRun, corner_results, joint_yield, outcome_counts
@@ -42,7 +44,8 @@ from yieldosc.study import Study
 
 FIRST_LOOK = 50_000
 LOOKS = 4
-Progress = Callable[[int, int], None]  # (done, total) units; the total grows where another look is needed
+USUAL_CORNERS = 9  # studies with more corners spend fewer units on what stands beside the declared yield
+LEAST_BASE = 128
 
 
 def assess(
@@ -51,7 +54,7 @@ def assess(
     units: int | None = None,
     seed: int = 1,
     workers: int | None = None,
-    progress: Progress | None = None,
+    progress: Callback | None = None,
     rival_units: int | None = None,
     block: int | None = None,
     evaluator: Evaluator | None = None,
@@ -59,58 +62,35 @@ def assess(
 ) -> Assessment:
     """Everything that `Assessment` holds. No digit depends on `workers` or `block`.
 
-    units: exactly so many, one look; None: looks at 50,000 · 4^k until a verdict stands. rival_units: units of each
-    rival set (default 20,480, never more than the declared run). block: units per piece of work. evaluator: in place
-    of the circuit's own solver. adjustment: what is done to each board before it is judged.
+    units: exactly so many, one look; None: looks at 50,000 · 4^k until a verdict stands. progress: told (done, total)
+    in unit evaluations. rival_units: units of each rival set (default 20,480, never more than the declared run).
+    block: units per piece of work. evaluator: in place of the circuit's own solver. adjustment: what is done to each
+    board before it is judged.
     """
     started, clock = datetime.now(UTC), time.perf_counter()
     population = Population.of(study)
     solver = evaluator or make_evaluator(study.circuit, nominal_values(population, reference_corner(study)))
     ratio = bench_ratio(study, population, solver)
     setup = Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment)
-    plan = _plan(study, units)
-    crew = _Crew(workers or default_workers(), _Meter(progress, plan.counts), block)
-    target = study.design.yield_target
-    run = joint_yield(setup, plan, target, workers=crew.workers, block=block, progress=crew.meter.units)
-    evidence = _evidence(study, setup, run, crew, rival_units or RIVAL_UNITS)
+    plan, meter = _plan(study, units), Meter(progress)
+    effort = _Effort.of(setup, plan.counts[0], rival_units)
+    meter.expect(plan.counts[0] + effort.expected(setup))
+    with Workers(workers or default_workers()) as crew:
+        target = study.design.yield_target
+        run = joint_yield(setup, plan, target, workers=crew, block=block, meter=meter)
+        evidence = _evidence(study, setup, run, effort, crew, meter)
     provenance = Provenance(
         seed=seed,
         input_sha256=study.digest,
         versions=versions(),
         started=started.isoformat(timespec="seconds"),
         seconds=round(time.perf_counter() - clock, 3),
-        workers=crew.workers,
+        workers=crew.count,
         audited=run.gathered.audited,
         disagreeing=run.gathered.disagreeing,
         exact=run.gathered.exact,
     )
     return _assembled(study, setup, run, plan, evidence, ratio, provenance)
-
-
-class _Meter:
-    """Progress in units; another look adds to the total."""
-
-    def __init__(self, progress: Progress | None, counts: tuple[int, ...]) -> None:
-        self._progress = progress
-        self._done = 0
-        self._counts = counts
-        self._extra = 0
-
-    def expect(self, units: int) -> None:
-        self._extra += units
-
-    def units(self, count: int) -> None:
-        self._done += count
-        if self._progress is not None:
-            main = next((n for n in self._counts if n + self._extra >= self._done), self._counts[-1])
-            self._progress(self._done, max(main + self._extra, self._done))
-
-
-@dataclass(frozen=True)
-class _Crew:
-    workers: int
-    meter: _Meter
-    block: int | None
 
 
 def _plan(study: Study, units: int | None) -> LookPlan:
@@ -119,6 +99,33 @@ def _plan(study: Study, units: int | None) -> LookPlan:
     if design.yield_target is None:
         most = 1  # nothing to decide, nothing to look again for
     return LookPlan(first=first, looks=most, confidence=design.confidence)
+
+
+@dataclass(frozen=True)
+class _Effort:
+    """Units spent on each piece of evidence beside the declared yield."""
+
+    rival_units: int
+    base: int  # Sobol' points per scrambling
+    units_per_lot: int
+
+    @classmethod
+    def of(cls, setup: Setup, units: int, rival_units: int | None) -> _Effort:
+        """As much as nine corners would take, where there are more of them."""
+        share = min(1.0, USUAL_CORNERS / len(setup.corners))
+        quanta = max(1, round(RIVAL_UNITS * share / QUANTUM))
+        base = max(LEAST_BASE, 2 ** int(np.log2(BASE * share)))
+        return cls(
+            rival_units=min(rival_units or quanta * QUANTUM, units),
+            base=base,
+            units_per_lot=UNITS_PER_LOT if share == 1 else UNITS_PER_LOT // 2,
+        )
+
+    def expected(self, setup: Setup) -> int:
+        """Roughly, in units: rankings, a dozen rival sets, four tighter parts, lots."""
+        groups = len(setup.population.variables)
+        lots_units = LOTS * self.units_per_lot if shares_reels(setup) else 0
+        return REPLICATES * self.base * (groups + 2) * 3 // 2 + 16 * self.rival_units + lots_units
 
 
 @dataclass(frozen=True)
@@ -134,34 +141,40 @@ class _Evidence:
     outside: tuple[Finding, ...]
 
 
-def _evidence(study: Study, setup: Setup, run: YieldRun, crew: _Crew, rival_units: int) -> _Evidence:
+def _evidence(
+    study: Study, setup: Setup, run: YieldRun, effort: _Effort, crew: Workers, meter: Meter
+) -> _Evidence:
     confidence = study.design.confidence
-    bins = layouts(setup, run.looks[0].units)
-    corners = corner_results(run.gathered, bins, setup.corners, confidence)
-    ranked, unranked = _rankings(study, setup, crew)
+    corners = corner_results(run.gathered, setup.corners, confidence)
+    ranked, unranked = _rankings(study, setup, effort, crew, meter)
     leaning = slopes(setup.population, setup.bench, reference_corner(study))
-    count = min(rival_units, run.gathered.units)
-    tried, declared_good = rivals(setup, leaning, units=count, workers=crew.workers, confidence=confidence)
-    better = tighter(setup, leading_parts(ranked), declared_good, workers=crew.workers, confidence=confidence)
+    tried, declared_good = rivals(
+        setup, leaning, units=effort.rival_units, confidence=confidence, workers=crew, meter=meter
+    )
+    better = tighter(
+        setup, leading_parts(ranked), declared_good, confidence=confidence, workers=crew, meter=meter
+    )
     found, outside = bands(setup.population, setup.bench, corners)
     shared = None
     if shares_reels(setup):
-        crew.meter.expect(LOTS * UNITS_PER_LOT)
-        shared = lots(
-            lot_yields(setup, workers=crew.workers, piece_done=crew.meter.units), study.design.yield_target, confidence
-        )
-    return _Evidence(ranked, unranked, tried, count, better, corners, found, shared, outside)
+        yields = lot_yields(setup, units_per_lot=effort.units_per_lot, workers=crew, meter=meter)
+        shared = lots(yields, effort.units_per_lot, study.design.yield_target, confidence)
+    return _Evidence(ranked, unranked, tried, effort.rival_units, better, corners, found, shared, outside)
 
 
-def _rankings(study: Study, setup: Setup, crew: _Crew) -> tuple[Mapping[str, Ranking], str]:
+def _rankings(
+    study: Study, setup: Setup, effort: _Effort, crew: Workers, meter: Meter
+) -> tuple[Mapping[str, Ranking], str]:
     """Rankings, or why there are none."""
     nominal = nominal_points(setup.population, setup.bench, setup.corners)
     lean = per_percent(study, setup.population, setup.bench)
     hz = [p.settled_hz or p.frequency_hz for p in nominal]
+    confidence = study.design.confidence
     try:
-        return rankings(setup, hz, lean, workers=crew.workers, confidence=study.design.confidence), ""
+        found = rankings(setup, hz, lean, workers=crew, base=effort.base, confidence=confidence, meter=meter)
     except NotANumberError as error:
         return {}, str(error)
+    return found, ""
 
 
 def _assembled(

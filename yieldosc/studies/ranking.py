@@ -13,7 +13,8 @@ from numpy.typing import NDArray
 from yieldosc.population import Block, Variable, combine
 from yieldosc.solver.solution import Solution, Status
 from yieldosc.studies.estimates import t_interval
-from yieldosc.studies.parallel import in_order
+from yieldosc.studies.parallel import Workers
+from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Estimate, Ranking, RankLine
 from yieldosc.studies.run import INNER, Setup
 from yieldosc.studies.sensitivity import REPLICATES, Replicate, replicate
@@ -108,9 +109,10 @@ def rankings(
     nominal_hz: Sequence[float],
     per_percent: Mapping[Output, Mapping[str, float]],
     *,
-    workers: int = 1,
+    workers: Workers | None = None,
     base: int = BASE,
     confidence: float = 0.95,
+    meter: Meter | None = None,
 ) -> dict[str, Ranking]:
     """Rankings of the outputs that vary. nominal_hz: the nominal unit's frequency per corner.
 
@@ -120,7 +122,7 @@ def rankings(
     if not setup.population.variables:
         return {}
     whole = Inputs.of(setup.population.variables, lambda v: v.part)
-    parts = _run(_Job(setup, whole, tuple(nominal_hz), base), workers)
+    parts = _run(_Job(setup, whole, tuple(nominal_hz), base), workers, meter)
     tables = {
         output: table
         for k, output in enumerate(OUTPUTS)
@@ -132,7 +134,7 @@ def rankings(
     }
     chosen = {name for names in leading.values() for name in names}
     causes = Inputs.of(setup.population.variables, lambda v: _cause_group(v, chosen))
-    detail = _run(_Job(setup, causes, tuple(nominal_hz), max(base // 2, 2)), workers)
+    detail = _run(_Job(setup, causes, tuple(nominal_hz), max(base // 2, 2)), workers, meter)
     made: dict[str, Ranking] = {}
     for output, table in tables.items():
         k = OUTPUTS.index(output)
@@ -162,8 +164,13 @@ class _Run:
     units: int
 
 
-def _run(job: _Job, workers: int) -> _Run:
-    answers = list(in_order(job, REPLICATES, workers))
+def _run(job: _Job, workers: Workers | None, meter: Meter | None) -> _Run:
+    answers = []
+    with (workers or Workers()).in_order(job, REPLICATES) as replicates:
+        for answer in replicates:
+            answers.append(answer)
+            if meter is not None:
+                meter.done(answer[2] // len(job.setup.corners))
     evaluations = sum(a[2] for a in answers)
     return _Run(
         tuple(a[0] for a in answers), sum(a[1] for a in answers), evaluations, evaluations // len(job.setup.corners)

@@ -18,7 +18,8 @@ from yieldosc.parts.parameter import Parameter
 from yieldosc.parts.shapes import Hollow, Measured, Normal, Uniform, is_min_typ_max
 from yieldosc.studies.estimates import tango, yield_estimate
 from yieldosc.studies.judge import GOOD
-from yieldosc.studies.parallel import in_order
+from yieldosc.studies.parallel import Workers
+from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Estimate, RivalResult
 from yieldosc.studies.run import QUANTUM, Setup
 
@@ -168,7 +169,14 @@ def _pattern(declared: Parameters, groups: Mapping[str, list[str]], pattern: Map
                  f"every tolerance squeezed into one half: {shown}", parameters)  # fmt: skip
 
 
-def good_units(setup: Setup, sets: Sequence[Parameters], units: int, workers: int) -> list[NDArray[np.bool_]]:
+def good_units(
+    setup: Setup,
+    sets: Sequence[Parameters],
+    units: int,
+    *,
+    workers: Workers | None = None,
+    meter: Meter | None = None,
+) -> list[NDArray[np.bool_]]:
     """Per set: which of units 0 … units − 1 are good at every corner (units,)."""
     setups = tuple(replace(setup, population=setup.population.with_parameters(p)) for p in sets)
     size = 2 * QUANTUM
@@ -176,8 +184,11 @@ def good_units(setup: Setup, sets: Sequence[Parameters], units: int, workers: in
         (rival, first, min(size, units - first)) for rival in range(len(sets)) for first in range(0, units, size)
     )
     parts: list[list[NDArray[np.bool_]]] = [[] for _ in sets]
-    for rival, good in in_order(_Job(setups, pieces), len(pieces), workers):
-        parts[rival].append(good)
+    with (workers or Workers()).in_order(_Job(setups, pieces), len(pieces)) as answers:
+        for rival, good in answers:
+            parts[rival].append(good)
+            if meter is not None:
+                meter.done(len(good))
     return [np.concatenate(part) for part in parts]
 
 
@@ -186,8 +197,9 @@ def rivals(
     slopes: Slopes,
     *,
     units: int = RIVAL_UNITS,
-    workers: int = 1,
     confidence: float = 0.95,
+    workers: Workers | None = None,
+    meter: Meter | None = None,
 ) -> tuple[tuple[RivalResult, ...], NDArray[np.bool_]]:
     """The declared set first, then every rival on the same units; and which of them the declared set calls good.
 
@@ -196,9 +208,10 @@ def rivals(
     declared = setup.population.parameters
     single, patterns = rival_sets(declared, slopes)
     if len(patterns) > SCREENED_ABOVE:
-        patterns = _screened(setup, patterns, min(units, QUANTUM), workers)
+        patterns = _screened(setup, patterns, min(units, QUANTUM), workers, meter)
     chosen = (*single, *patterns)
-    good = good_units(setup, [declared, *(r.parameters for r in chosen)], units, workers)
+    sets = [declared, *(r.parameters for r in chosen)]
+    good = good_units(setup, sets, units, workers=workers, meter=meter)
     first = RivalResult(
         name="declared", meaning="the study as given", yield_=_yield(good[0], confidence), difference=None
     )
@@ -225,9 +238,11 @@ def _yield(good: NDArray[np.bool_], confidence: float) -> Estimate:
     return yield_estimate(len(good) - int(np.count_nonzero(good)), len(good), confidence)
 
 
-def _screened(setup: Setup, patterns: tuple[Rival, ...], units: int, workers: int) -> tuple[Rival, ...]:
+def _screened(
+    setup: Setup, patterns: tuple[Rival, ...], units: int, workers: Workers | None, meter: Meter | None
+) -> tuple[Rival, ...]:
     """The lowest few and the highest of many patterns."""
-    flags = good_units(setup, [p.parameters for p in patterns], units, workers)
+    flags = good_units(setup, [p.parameters for p in patterns], units, workers=workers, meter=meter)
     order = np.argsort([int(np.count_nonzero(f)) for f in flags], kind="stable")
     chosen = dict.fromkeys([*order[:KEPT].tolist(), int(order[-1])])
     return tuple(patterns[i] for i in chosen)

@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 from yieldosc.parts.grades import next_tighter, tolerance_text
 from yieldosc.parts.parameter import Parameter
 from yieldosc.studies.estimates import yield_estimate
+from yieldosc.studies.parallel import Workers
+from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Ranking, Tighter
 from yieldosc.studies.rivals import good_units, paired_difference
 from yieldosc.studies.run import Setup
@@ -32,14 +34,15 @@ def tighter(
     parts: Sequence[str],
     declared_good: NDArray[np.bool_],
     *,
-    workers: int = 1,
     confidence: float = 0.95,
+    workers: Workers | None = None,
+    meter: Meter | None = None,
 ) -> tuple[Tighter, ...]:
     """One line per part that has a tighter grade, in the order of `parts`. declared_good (n,): units 0 … n − 1."""
     declared = setup.population.parameters
     steps = [(part, p, better) for part in parts for p, better in _steps(declared, part)]
     sets = [tuple(better if p is old else p for p in declared) for _, old, better in steps]
-    flags = good_units(setup, sets, len(declared_good), workers) if sets else []
+    flags = good_units(setup, sets, len(declared_good), workers=workers, meter=meter) if sets else []
     return tuple(
         Tighter(
             part=part,

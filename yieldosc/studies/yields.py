@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,13 +9,13 @@ import numpy as np
 from yieldosc.studies.estimates import LookPlan, clopper_pearson, yield_estimate
 from yieldosc.studies.gather import BINS, Gathered, Layouts, append, gather, layouts
 from yieldosc.studies.judge import GOOD
-from yieldosc.studies.parallel import in_order
+from yieldosc.studies.parallel import Workers
+from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import OUTCOMES, CornerResult, Distribution, Estimate, Look, Verdict
 from yieldosc.studies.run import INNER, Setup
 from yieldosc.studies.tally import Histogram, Moments
 from yieldosc.study import Corner
 
-Progress = Callable[[int], None]  # units finished since the last call
 PIECES_PER_WORKER = 8
 MOST_PIECE = 8 * INNER  # units; bounds what one message between processes carries
 CHART_BARS = 64
@@ -27,6 +26,7 @@ class YieldRun:
     """The declared set, evaluated: tallies, looks and verdict."""
 
     gathered: Gathered
+    bins: Layouts
     estimate: Estimate
     looks: tuple[Look, ...]
     looks_planned: int
@@ -62,21 +62,22 @@ def run_units(
     start: int,
     end: int,
     *,
-    workers: int = 1,
+    workers: Workers | None = None,
     block: int | None = None,
-    progress: Progress | None = None,
+    meter: Meter | None = None,
 ) -> Gathered:
     """Tallies of units start … end − 1. block: units per piece of work, rounded up to the solver's blocks."""
-    wanted = block or min(-(-(end - start) // (workers * PIECES_PER_WORKER)), MOST_PIECE)
+    crew, told = workers or Workers(), meter or Meter()
+    wanted = block or min(-(-(end - start) // (crew.count * PIECES_PER_WORKER)), MOST_PIECE)
     job = _Job(setup, bins, start, end, -(-wanted // INNER) * INNER)
     whole: Gathered | None = None
-    for part in in_order(job, job.pieces, workers):
-        if progress is not None:
-            progress(part.units)
-        if whole is None:
-            whole = part
-        else:
-            append(whole, part)
+    with crew.in_order(job, job.pieces) as parts:
+        for part in parts:
+            told.done(part.units)
+            if whole is None:
+                whole = part
+            else:
+                append(whole, part)
     if whole is None:
         raise ValueError("no units to run")
     return whole
@@ -87,9 +88,9 @@ def joint_yield(
     plan: LookPlan,
     target: float | None,
     *,
-    workers: int = 1,
+    workers: Workers | None = None,
     block: int | None = None,
-    progress: Progress | None = None,
+    meter: Meter | None = None,
 ) -> YieldRun:
     """Look at the counts of the plan until a verdict on the target stands; only this yield carries one."""
     bins = layouts(setup, plan.counts[0])
@@ -98,7 +99,9 @@ def joint_yield(
     verdict: Verdict = "not proven"
     for number, units in enumerate(plan.counts, start=1):
         done = 0 if gathered is None else gathered.units
-        more = run_units(setup, bins, done, units, workers=workers, block=block, progress=progress)
+        if meter is not None and number > 1:
+            meter.expect(units - done)
+        more = run_units(setup, bins, done, units, workers=workers, block=block, meter=meter)
         if gathered is None:
             gathered = more
         else:
@@ -109,8 +112,9 @@ def joint_yield(
         verdict = plan.verdict(interval, target)
         if verdict != "not proven":
             break
-    assert gathered is not None
-    return YieldRun(gathered, interval, tuple(looks), len(plan.counts), verdict)
+    if gathered is None:
+        raise ValueError("the plan has no look")
+    return YieldRun(gathered, bins, interval, tuple(looks), len(plan.counts), verdict)
 
 
 def outcome_counts(gathered: Gathered) -> dict[str, int]:
@@ -119,7 +123,7 @@ def outcome_counts(gathered: Gathered) -> dict[str, int]:
 
 
 def corner_results(
-    gathered: Gathered, bins: Layouts, corners: tuple[Corner, ...], confidence: float
+    gathered: Gathered, corners: tuple[Corner, ...], confidence: float
 ) -> tuple[CornerResult, ...]:
     """Per corner; intervals are pointwise."""
     made = []
