@@ -26,7 +26,21 @@ def growing_poles(poly: Sequence[Array]) -> NDArray[np.int64]:
                 up - ratio * (lower[k + 1] if k + 1 < len(lower) else 0.0) for k, up in enumerate(upper[1:])
             ]
             upper, lower = lower, following
-    column = np.stack(np.broadcast_arrays(*first))
-    changes = np.count_nonzero(np.signbit(column[1:]) != np.signbit(column[:-1]), axis=0)
-    broken = ~np.all(np.isfinite(column) & (column != 0), axis=0)
-    return np.where(broken, -1, changes)
+    changes, known = sign_changes(first)
+    return np.where(known, changes, -1)
+
+
+def sign_changes(column: Sequence[Array]) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:
+    """Sign changes (n,) along a column of numbers per unit, and where every one of them is finite and not zero."""
+    size = np.abs(column[0])
+    changes = np.zeros(np.shape(size), dtype=np.int64)
+    smallest, total = size, size
+    before = np.signbit(column[0])
+    for entry in column[1:]:
+        now = np.signbit(entry)
+        changes += now != before
+        before = now
+        size = np.abs(entry)
+        smallest = np.minimum(smallest, size)
+        total = total + size
+    return changes, (smallest > 0) & np.isfinite(total)

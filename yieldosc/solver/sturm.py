@@ -7,6 +7,8 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from yieldosc.solver.routh import sign_changes
+
 Array = NDArray[np.float64]
 
 
@@ -16,6 +18,11 @@ def positive_roots(poly: Sequence[Array]) -> NDArray[np.int64]:
     Units are grouped by their first and last non-zero coefficient: a coefficient that is exactly zero there is a root
     at 0 or at infinity, not a breakdown.
     """
+    poly = list(poly)
+    while len(poly) > 1 and not poly[-1].any():
+        poly.pop()
+    if poly[0].all() and poly[-1].all():
+        return _count(poly)  # the usual case: no unit has a root at 0 or at infinity
     table = np.stack(np.broadcast_arrays(*poly), axis=1)
     count = np.zeros(len(table), dtype=np.int64)
     known = table != 0
@@ -38,10 +45,9 @@ def _count(poly: list[Array]) -> NDArray[np.int64]:
             rest = _negative_remainder(chain[-2], chain[-1])
             size = np.max(np.abs(rest), axis=0)
             chain.append([c / size for c in rest])
-    at_zero = np.stack([p[0] for p in chain])
-    at_infinity = np.stack([p[-1] for p in chain])
-    broken = ~(np.isfinite(at_infinity) & (at_infinity != 0) & (at_zero != 0)).all(axis=0)
-    return np.where(broken, -1, _changes(at_zero) - _changes(at_infinity))
+    zero_changes, zero_known = sign_changes([p[0] for p in chain])
+    far_changes, far_known = sign_changes([p[-1] for p in chain])
+    return np.where(zero_known & far_known, zero_changes - far_changes, -1)
 
 
 def _negative_remainder(dividend: list[Array], divisor: list[Array]) -> list[Array]:
@@ -52,6 +58,3 @@ def _negative_remainder(dividend: list[Array], divisor: list[Array]) -> list[Arr
         second * c + (top * divisor[k - 1] if k else 0.0) - dividend[k] for k, c in enumerate(divisor[:-1])
     ]
 
-
-def _changes(column: Array) -> NDArray[np.int64]:
-    return np.asarray(np.count_nonzero(np.signbit(column[1:]) != np.signbit(column[:-1]), axis=0), dtype=np.int64)
