@@ -130,7 +130,7 @@ def _inverter(
     law = 1.0 if "gm" in own_law else ((temperature_c + ZERO_C_IN_K) / (ROOM_C + ZERO_C_IN_K)) ** -1.5
     symbols = {
         "gm": values["gm"] * law,
-        "rin": np.float64(MOST_RIN),
+        "rin": np.asarray(MOST_RIN),
         "rout": values["Rout"],
         "cin": values["Cin"],
         "cout": values["Cout"],

@@ -78,7 +78,9 @@ def _members(a: Poly, b: Poly, cr: Crossings, intended: NDArray[np.intp], found:
     pair_event = (cr.poles == 2) & np.isfinite(cr.gain)
     before = np.cumsum(cr.direction * cr.poles, axis=1) - cr.direction * cr.poles
     later = pair_event & (at > intended[:, None])
-    leaves = later & (cr.direction == -1)
+    # a real pole that leaves through 0 while one pair is in was half of that pair, and ends it
+    half = (cr.poles == 1) & (cr.omega == 0) & np.isfinite(cr.gain) & (at > intended[:, None]) & (before == 2)
+    leaves = (later | half) & (cr.direction == -1)
     first_leave = np.where(leaves.any(axis=1), np.argmax(leaves, axis=1), c)
     alone = before[np.arange(n), np.minimum(first_leave, c - 1)] == 2
     certain = found & (first_leave < c) & alone
@@ -136,13 +138,16 @@ def _window(cr: Crossings, members: Mask, g: Array) -> tuple[Array, Array, Array
 def _others(cr: Crossings, members: Mask, below: Mask) -> tuple[Array, Array]:
     """(m, c) ω and g_c of modes other than the intended that are in the right half plane; nan where there is none.
 
-    A leaving crossing ends the mode that entered nearest to it in frequency.
+    A leaving crossing ends the mode that entered nearest to it in frequency. Where half of the intended pair left
+    through 0, its other half stays as a real pole: it latches.
     """
     n, c = cr.gain.shape
     open_omega = np.full((n, c), np.nan)
     open_gain = np.full((n, c), np.nan)
     rows = np.arange(n)
     for k in range(c):
+        latched = below[:, k] & members[:, k] & (cr.poles[:, k] == 1)
+        open_omega[latched, k], open_gain[latched, k] = 0.0, cr.gain[latched, k]
         live = below[:, k] & ~members[:, k]
         enters = live & (cr.direction[:, k] == 1)
         open_omega[enters, k] = cr.omega[enters, k]
@@ -160,10 +165,18 @@ def _others(cr: Crossings, members: Mask, below: Mask) -> tuple[Array, Array]:
 
 
 def _nearest(split: Split, f_roots: ComplexArray, design: Array) -> tuple[ComplexArray, ComplexArray]:
-    """The root x of F (complex allowed) nearest to the design frequency in |ln x|, and its complex gain."""
+    """The root x of F (complex allowed) nearest to the design frequency in |ln x|, and its complex gain.
+
+    Where F has no root at all, x is the design frequency's and the gain is nan: no gain exists.
+    """
+    at_design = (design**2).astype(np.complex128)
+    if f_roots.shape[1] == 0:
+        return at_design, np.full_like(at_design, np.nan)
     with np.errstate(divide="ignore", invalid="ignore"):
         distance = np.abs(np.log(f_roots / (design**2)[:, None]))
     distance = np.where(np.isnan(distance), np.inf, distance)
     column = np.argmin(distance, axis=1)
     x: ComplexArray = f_roots[np.arange(len(column)), column]
-    return x, split.gain(x)
+    known = np.isfinite(x)
+    x = np.where(known, x, at_design)
+    return x, np.where(known, split.gain(x), np.nan)

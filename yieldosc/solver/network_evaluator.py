@@ -162,7 +162,8 @@ class NetworkEvaluator:
                 doubt |= ~(followed[lower] < followed[higher])
             for earlier, later in pairwise(gains):
                 doubt |= ~(earlier < later)
-            doubt |= ~(self._expected(part, ref, gains) == growing_poles(_at_gain(part)))
+            expected, real_poles = self._expected(part, ref, gains)
+            doubt |= ~(expected == growing_poles(_at_gain(part))) | real_poles
             block.lower = gains[ref.intended] * sign
             if ref.leaves is not None:
                 block.upper = gains[ref.leaves] * sign
@@ -173,15 +174,16 @@ class NetworkEvaluator:
         return block, doubt
 
     @staticmethod
-    def _expected(part: Scaled, ref: Reference, gains: list[Array]) -> NDArray[np.int64]:
-        """Growing poles implied by the tracked crossings below the actual gain."""
+    def _expected(part: Scaled, ref: Reference, gains: list[Array]) -> tuple[NDArray[np.int64], Mask]:
+        """Growing poles implied by the crossings below the actual gain, and units in which real poles matter: one has
+        crossed, or one will leave that was half of a pair."""
         size = np.abs(part.g)
         count = np.zeros(len(size), dtype=np.int64)
         for tracked, gain in zip(ref.tracked, gains, strict=True):
             count += np.where(gain < size, 2 * tracked.direction, 0)
         _, real_gain, direction = real_crossings(part.a, part.b, np.sign(part.g))
-        count += np.sum(np.where(np.abs(real_gain) < size[:, None], direction, 0), axis=1)
-        return count
+        below = np.where(np.abs(real_gain) < size[:, None], direction, 0)
+        return count + np.sum(below, axis=1), np.any((below != 0) | (direction < 0), axis=1)
 
     @staticmethod
     def _other_growing(size: Array, ref: Reference, gains: list[Array]) -> Mask:
@@ -305,7 +307,8 @@ class NetworkEvaluator:
             if rows.size:
                 ratio = np.broadcast_to(actual, part.g.shape)[rows] / gain(block.nearest_gain)[rows]
                 size = np.abs(ratio)
-                margin[rows] = np.minimum(size, 1 / size) * np.exp(-np.abs(np.angle(ratio)))
+                continued = np.minimum(size, 1 / size) * np.exp(-np.abs(np.angle(ratio)))
+                margin[rows] = np.where(np.isfinite(continued), continued, 0.0)  # nan: F has no root, so no gain exists
                 upper[rows] = np.inf
         return margin, upper
 
