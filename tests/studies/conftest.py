@@ -37,8 +37,9 @@ class IdealWien:
 
 
 def toleranced(role, value, fraction, **changes):
-    """A resistor or capacitor ± fraction, uniform."""
-    kind, trait, unit = ("capacitor", "C", "F") if role.startswith("C") else ("resistor", "R", "Ω")
+    """A resistor, a capacitor or a gain-bandwidth product, ± fraction, uniform."""
+    kinds = {"C": ("capacitor", "C", "F"), "R": ("resistor", "R", "Ω"), "G": ("ic", "GBW", "Hz")}
+    kind, trait, unit = kinds[role[0]]
     made = Parameter(
         role=role, part=role, trait=trait, kind=kind, unit=unit, nominal=value, typical=value,
         low=value * (1 - fraction), high=value * (1 + fraction),
@@ -47,8 +48,8 @@ def toleranced(role, value, fraction, **changes):
     return replace(made, **changes)
 
 
-def wien_study(*, gain=3.2, window=0.03, r=0.01, c=0.05, rf=0.0, share=0.0, change=None, **design):
-    """R1 = R2 of one reel, C1 = C2 of another; change(parameter) → parameter."""
+def wien_study(*, gain=3.2, window=0.03, r=0.01, c=0.05, rf=0.0, share=0.0, change=None, extra=(), **design):
+    """R1 = R2 of one reel, C1 = C2 of another; change(parameter) → parameter; extra: more parameters."""
     parameters = (
         toleranced("R1", R, r, reel="10 kΩ", reel_share=share),
         toleranced("R2", R, r, reel="10 kΩ", reel_share=share),
@@ -57,6 +58,7 @@ def wien_study(*, gain=3.2, window=0.03, r=0.01, c=0.05, rf=0.0, share=0.0, chan
         toleranced("RF", (gain - 1) * 10e3, rf),
         toleranced("RG", 10e3, rf),
     )
+    parameters += tuple(extra)
     if change is not None:
         parameters = tuple(change(p) for p in parameters)
     settings = {"temperature_low_c": 25.0, "temperature_high_c": 25.0, "yield_target": 0.8} | design

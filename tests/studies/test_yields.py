@@ -43,6 +43,18 @@ def test_neither_workers_nor_block_size_change_a_digit(make_study, ideal_wien):
     assert other_seed["yield"] != alone["yield"]
 
 
+def test_nor_with_the_circuits_own_solver(make_study, make_part):
+    def with_op_amp(p):
+        return replace(p, law=Linear(0.0, 50e-6, "±50 ppm/K"))
+
+    study = make_study(gain=3.1, rf=0.01, change=with_op_amp, extra=[make_part("GBW", 1e6, 0.3)], **COLD_TO_HOT)
+    settings = {"units": 20_000, "seed": 1, "rival_units": 4096}
+    alone = timeless(assess(study, workers=1, **settings))
+    assert alone["provenance"]["audited"] > 0
+    assert alone["provenance"]["disagreeing"] == 0
+    assert timeless(assess(study, workers=2, block=8192, **settings)) == alone
+
+
 def test_solver_blocks_are_cut_at_absolute_multiples():
     assert inner_pieces(50_000, 20_000) == [(50_000, 7344), (57_344, 8192), (65_536, 4464)]
     assert inner_pieces(0, 100) == [(0, 100)]

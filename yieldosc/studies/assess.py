@@ -219,7 +219,7 @@ def _assembled(
             *remarks.ranking_findings(evidence.rankings, evidence.unranked),
             *remarks.bench_findings(study, ratio),
         ),
-        cautions=remarks.cautions(study, evidence.lots),
+        cautions=remarks.cautions(evidence.lots),
         provenance=provenance,
     )
 

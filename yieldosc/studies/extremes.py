@@ -45,7 +45,7 @@ def bands(
             sampled = [d for d in (_sampled(result, output) for result in here) if d is not None]
             if sampled:
                 made.append(_band(k, output, temperature_c, [solved[r.corner] for r in here], sampled))
-    outside = tuple(_outside(band) for band in made if band.note)
+    outside = tuple(outside_finding(band, band.extreme) for band in made if band.note and band.extreme is not None)
     return tuple(made), outside
 
 
@@ -75,14 +75,14 @@ def _band(
                 monte_carlo=monte_carlo, method=method, note=note)  # fmt: skip
 
 
-def _outside(band: Band) -> Finding:
+def outside_finding(band: Band, extreme: tuple[float, float]) -> Finding:
+    """Why Monte Carlo lies outside the extremes of bounded inputs."""
     what = "frequency" if band.output == "frequency_hz" else "start-up margin"
-    assert band.extreme is not None
     return Finding(
         "warning",
         "monte-carlo-outside-extremes",
         f"At {band.temperature_c:g} °C the simulated {what} runs from {band.monte_carlo[0]:.6g} to "
-        f"{band.monte_carlo[1]:.6g}, outside the searched extremes {band.extreme[0]:.6g} to {band.extreme[1]:.6g}: "
+        f"{band.monte_carlo[1]:.6g}, outside the searched extremes {extreme[0]:.6g} to {extreme[1]:.6g}: "
         "the search missed an extreme inside the box; trust the simulated range.",
     )
 

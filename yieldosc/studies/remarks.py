@@ -4,8 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
-import numpy as np
-
 from yieldosc.errors import Finding
 from yieldosc.population import Block
 from yieldosc.population.block import middle_draws
@@ -129,7 +127,7 @@ def bench_findings(study: Study, ratio: float | None) -> list[Finding]:
     return [Finding("note", "bench-scaled", text)]
 
 
-def cautions(study: Study, shared: Lots | None) -> tuple[str, ...]:
+def cautions(shared: Lots | None) -> tuple[str, ...]:
     """What the figures do not cover, the same for every study but for its reels."""
     made = [
         "A prediction from stated tolerances, not a measurement of boards.",
@@ -138,7 +136,7 @@ def cautions(study: Study, shared: Lots | None) -> tuple[str, ...]:
     ]
     if shared is not None:
         made.append(
-            "Parts of a reel are alike: the interval describes the pooled rate, a single lot can lie anywhere "
-            f"in {np.round(100 * shared.q05, 1):g} % to {np.round(100 * shared.q95, 1):g} % and beyond."
+            "Parts of a reel are alike: the interval describes the pooled rate; nine lots in ten yield from "
+            f"{100 * shared.q05:.3g} % to {100 * shared.q95:.3g} %, the others lie outside."
         )
     return tuple(made)

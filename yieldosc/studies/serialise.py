@@ -12,6 +12,7 @@ from yieldosc.studies.results import (
     CornerResult,
     Distribution,
     Estimate,
+    Lots,
     Ranking,
     RankLine,
 )
@@ -43,7 +44,7 @@ def assessment_dict(assessment: Assessment) -> dict[str, object]:
         ],
         "rival_units": a.rival_units,
         "bands": [_band(band) for band in a.bands],
-        "lots": None if a.lots is None else _lots(a),
+        "lots": None if a.lots is None else _lots(a.lots),
         "tighter": [
             {
                 "part": t.part,
@@ -152,14 +153,12 @@ def _band(band: Band) -> dict[str, object]:
     }
 
 
-def _lots(a: Assessment) -> dict[str, object]:
-    assert a.lots is not None
-    below = a.lots.share_below_target
+def _lots(lots: Lots) -> dict[str, object]:
     return {
-        "lots": a.lots.lots,
-        "units_per_lot": a.lots.units_per_lot,
-        "q05": a.lots.q05,
-        "q50": a.lots.q50,
-        "q95": a.lots.q95,
-        "share_below_target": _estimate(below),
+        "lots": lots.lots,
+        "units_per_lot": lots.units_per_lot,
+        "q05": lots.q05,
+        "q50": lots.q50,
+        "q95": lots.q95,
+        "share_below_target": _estimate(lots.share_below_target),
     }
