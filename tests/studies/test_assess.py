@@ -168,6 +168,14 @@ def test_tighter_capacitors_help_and_are_leading(make_study, ideal_wien):
             assert line.from_tolerance == "±5 %"
 
 
+def test_a_reel_is_bought_whole(make_study, ideal_wien):
+    found = quick(make_study(gain=4.0, share=1.0), ideal_wien())
+    line = next(t for t in found.tighter if t.part == "reel 10 nF")
+    # R ±1 % and C ±2 %, identical pairs: f = 1/(RC) stays within −2.94 … +3.07 %, 0.2 % of it outside ±3 %
+    assert line.yield_.estimate > 0.99
+    assert line.difference.low > 0.3
+
+
 def test_failure_share_finds_the_part_that_fails_units(make_study, ideal_wien):
     study = make_study(gain=4.0, r=0.0, c=0.0, rf=0.05, window=0.5, least_margin=1.33)
     setup = Setup.of(study, ideal_wien(), seed=1)

@@ -64,6 +64,7 @@ def test_a_reel_is_its_own_line(make_study, ideal_wien):
     assert set(totals(whole)) == {"reel 10 kΩ", "reel 10 nF"}
     shares = log_variance(0.05) / (log_variance(0.05) + log_variance(0.01))
     assert totals(whole)["reel 10 nF"] == pytest.approx(shares, abs=0.005)
+    assert {line.part for line in whole.causes} == {"reel 10 kΩ: initial", "reel 10 nF: initial"}
     half = ranked(make_study(gain=4.0, share=0.5), ideal_wien())["frequency"]
     assert set(totals(half)) == {"reel 10 kΩ", "reel 10 nF", "R1", "R2", "C1", "C2"}
     assert half.parts[0].part == "reel 10 nF"

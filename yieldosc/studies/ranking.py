@@ -38,16 +38,16 @@ class Inputs:
     groups: Mapping[str, tuple[int, ...]]
 
     @classmethod
-    def of(cls, variables: Sequence[Variable], name_of: Callable[[Variable], str]) -> Inputs:
-        """name_of: the group of a part's own variable; a reel's variables are the reel's own line."""
+    def of(cls, variables: Sequence[Variable], group_of: Callable[[Variable, str], str]) -> Inputs:
+        """group_of(variable, line): the group of an input; line is the part's name, or "reel …" for a reel's own."""
         streams: list[str] = []
         groups: dict[str, list[int]] = {}
         for variable in variables:
             pairs = []
             if variable.own_counts:
-                pairs.append((variable.stream, name_of(variable)))
+                pairs.append((variable.stream, group_of(variable, variable.part)))
             if variable.reel_counts:
-                pairs.append((str(variable.reel_stream), f"reel {variable.reel}"))
+                pairs.append((str(variable.reel_stream), group_of(variable, f"reel {variable.reel}")))
             for stream, group in pairs:
                 if stream not in streams:
                     groups.setdefault(group, []).append(len(streams))
@@ -121,26 +121,28 @@ def rankings(
     """
     if not setup.population.variables:
         return {}
-    whole = Inputs.of(setup.population.variables, lambda v: v.part)
+    whole = Inputs.of(setup.population.variables, lambda _, line: line)
     parts = _run(_Job(setup, whole, tuple(nominal_hz), base), workers, meter)
     tables = {
         output: table
         for k, output in enumerate(OUTPUTS)
         if (table := _table(parts.results, whole, setup.corners, k, confidence)) is not None
     }
-    leading = {
-        output: [name for name in table.names if not name.startswith("reel ")][:LEADING]
-        for output, table in tables.items()
-    }
+    leading = {output: table.names[:LEADING] for output, table in tables.items()}
     chosen = {name for names in leading.values() for name in names}
-    causes = Inputs.of(setup.population.variables, lambda v: _cause_group(v, chosen))
+
+    def by_cause(variable: Variable, line: str) -> str:
+        return f"{line}: {cause_of(variable)}" if line in chosen else "the rest"
+
+    causes = Inputs.of(setup.population.variables, by_cause)
     detail = _run(_Job(setup, causes, tuple(nominal_hz), max(base // 2, 2)), workers, meter)
     made: dict[str, Ranking] = {}
     for output, table in tables.items():
         k = OUTPUTS.index(output)
         inside = _table(detail.results, causes, setup.corners, k, confidence, worst=table.worst)
         lines = () if inside is None else inside.lines({})
-        wanted = tuple(line for line in lines if line.part.split(": ")[0] in leading[output] and ": " in line.part)
+        starts = tuple(f"{name}: " for name in leading[output])
+        wanted = tuple(line for line in lines if line.part.startswith(starts))
         made[output] = _ranking(output, table, wanted, parts, setup.corners, per_percent.get(output, {}))
     return made
 
@@ -150,10 +152,6 @@ def cause_of(variable: Variable) -> str:
     if variable.cause == "initial":
         return "initial"
     return "temperature" if variable.cause.startswith("law") else "drift and solder"
-
-
-def _cause_group(variable: Variable, chosen: set[str]) -> str:
-    return f"{variable.part}: {cause_of(variable)}" if variable.part in chosen else "the rest"
 
 
 @dataclass(frozen=True, slots=True)

@@ -20,13 +20,8 @@ LEADING = 3  # parts of each ranking
 
 
 def leading_parts(rankings: Mapping[str, Ranking]) -> tuple[str, ...]:
-    """The leading parts of every ranking, reels left out, each once."""
-    names = [
-        line.part
-        for ranking in rankings.values()
-        for line in [line for line in ranking.parts if not line.part.startswith("reel ")][:LEADING]
-    ]
-    return tuple(dict.fromkeys(names))
+    """The leading lines of every ranking, parts and reels, each once."""
+    return tuple(dict.fromkeys(line.part for ranking in rankings.values() for line in ranking.parts[:LEADING]))
 
 
 def tighter(
@@ -38,28 +33,32 @@ def tighter(
     workers: Workers | None = None,
     meter: Meter | None = None,
 ) -> tuple[Tighter, ...]:
-    """One line per part that has a tighter grade, in the order of `parts`. declared_good (n,): units 0 … n − 1."""
+    """One line per part or reel that has a tighter grade, in the order of `parts`. declared_good (n,): units 0 … n − 1.
+
+    A reel is bought whole: all its parts get the better grade.
+    """
     declared = setup.population.parameters
-    steps = [(part, p, better) for part in parts for p, better in _steps(declared, part)]
-    sets = [tuple(better if p is old else p for p in declared) for _, old, better in steps]
+    steps = [(part, better) for part in parts if (better := _better(declared, part))]
+    sets = [tuple(better.get(p.role, p) for p in declared) for _, better in steps]
     flags = good_units(setup, sets, len(declared_good), workers=workers, meter=meter) if sets else []
     return tuple(
         Tighter(
             part=part,
-            from_tolerance=tolerance_text(old),
-            to_tolerance=tolerance_text(better),
+            from_tolerance=tolerance_text(next(p for p in declared if p.role in better)),
+            to_tolerance=tolerance_text(next(iter(better.values()))),
             yield_=yield_estimate(len(good) - int(np.count_nonzero(good)), len(good), confidence),
             difference=paired_difference(good, declared_good, confidence),
         )
-        for (part, old, better), good in zip(steps, flags, strict=True)
+        for (part, better), good in zip(steps, flags, strict=True)
     )
 
 
-def _steps(declared: Sequence[Parameter], part: str) -> list[tuple[Parameter, Parameter]]:
-    """The part's role with a tighter grade, and the parameter of that grade."""
-    found = []
+def _better(declared: Sequence[Parameter], part: str) -> dict[str, Parameter]:
+    """Role → parameter of the next tighter grade, for a part or every part of a reel; empty where there is none."""
+    found = {}
     for parameter in declared:
-        better = next_tighter(parameter) if parameter.part == part else None
-        if better is not None:
-            found.append((parameter, better))
-    return found[:1]
+        if part in (parameter.part, f"reel {parameter.reel}"):
+            better = next_tighter(parameter)
+            if better is not None:
+                found[parameter.role] = better
+    return found
