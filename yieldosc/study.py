@@ -131,6 +131,9 @@ class Study:
     design_given: Mapping[str, Given] = field(default_factory=dict)  # item → as written and where
     bom: tuple[object, ...] = ()  # the importer's lines, carried for the reports' echo, never read here
     bom_rows: tuple[tuple[str, ...], ...] = ()  # the BOM table as text, heading row first, for the result workbook
+    design_rows: tuple[tuple[str, ...], ...] = ()  # the Design and Roles sheets as text, without their headings
+    role_rows: tuple[tuple[str, ...], ...] = ()
+    extra_rows: Mapping[str, tuple[tuple[str, ...], ...]] = field(default_factory=dict)  # other sheets, headings first
     findings: tuple[Finding, ...] = ()
     digest: str = ""  # SHA-256 of the canonical inputs as understood
 

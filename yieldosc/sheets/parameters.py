@@ -1,0 +1,256 @@
+"""Rows of Roles and lines of the BOM → parameters: who stands behind a role, its bounds, law, drift and pedigree."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+from yieldosc.circuits.circuit import Circuit, Role
+from yieldosc.errors import Place
+from yieldosc.parts.ceramic import Class2Law, default_ageing
+from yieldosc.parts.laws import LawError, parse_law
+from yieldosc.parts.parameter import PEDIGREES, Kind, Law, Parameter, Pedigree
+from yieldosc.parts.shapes import Measured
+from yieldosc.quantities import format_quantity, shown
+from yieldosc.sheets.bom import reel_key
+from yieldosc.sheets.bomline import BomLine
+from yieldosc.sheets.bounds import Bounds, BoundsReader, role_value
+from yieldosc.sheets.design import DesignSheet, reel_share, tolerance
+from yieldosc.sheets.entries import Problems
+from yieldosc.sheets.roles import RoleRow
+
+PASSIVE = ("resistor", "capacitor", "inductor", "crystal")
+
+
+@dataclass(frozen=True, slots=True)
+class Sources:
+    """Everything that parameters are made from."""
+
+    design: DesignSheet
+    lines: Mapping[str, BomLine]  # designator → line
+    tables: Mapping[str, Sequence[tuple[float, float]]]
+    measured: Mapping[str, tuple[float, ...]]
+
+
+class ParameterMaker:
+    """Makes the parameters and conditions of one study; problems are collected."""
+
+    def __init__(self, sources: Sources, problems: Problems) -> None:
+        self.sources, self.problems = sources, problems
+        values = sources.design.values
+        self.default_shape: str = values.get("default_shape", "uniform")
+        self.share: float = values.get("reel_share", 0.0)
+        self.life: float | None = values.get("life_years")
+        self.range_c = (values.get("temperature_low_c"), values.get("temperature_high_c"))
+
+    def make(self, circuit: Circuit, rows: Mapping[str, RoleRow]) -> tuple[tuple[Parameter, ...], dict[str, float]]:
+        parameters, conditions = [], {}
+        for role in circuit.roles:
+            if role.name == circuit.supply_role:
+                continue
+            row = rows.get(role.name)
+            if role.condition:
+                value = self._condition(role, row)
+                if value is not None:
+                    conditions[role.name] = value
+                continue
+            made = self._parameter(role, row)
+            if made is not None:
+                parameters.append(made)
+        self._without_law(circuit, parameters)
+        return tuple(parameters), conditions
+
+    def _condition(self, role: Role, row: RoleRow | None) -> float | None:
+        """An operating condition: one value, from Typ or from the crystal's BOM line."""
+        entry = None if row is None else row.cell("Typ")
+        if entry is not None:
+            return role_value(entry, role, f"{role.name} Typ", self.problems)
+        line = None if row is None else self._line(role, row)
+        if role.name == "CL" and line is not None and line.load_f is not None:
+            return line.load_f
+        place = Place("Roles") if row is None else row.place
+        self.problems.error("value-missing", f"{role.name} ({role.meaning}) has no value: give it as Typ", place)
+        return None
+
+    def _line(self, role: Role, row: RoleRow) -> BomLine | None:
+        """The BOM line that the row names, checked for kind and unit."""
+        entry = row.cell("Part")
+        if entry is None:
+            return None
+        name = entry.written
+        line = self.sources.lines.get(name) or self.sources.lines.get(name.upper())
+        if line is None:
+            self.problems.error(
+                "unknown-part", f"{role.name} names {shown(name)}, which is not in the BOM", entry.place
+            )
+            return None
+        if not line.fitted:
+            self.problems.error(
+                "not-fitted", f"{role.name} names {name}, which the BOM marks as not fitted", entry.place
+            )
+        wrong_kind = role.kind in PASSIVE and line.kind != role.kind and line.kind != "other"
+        passive_for_active = role.kind in ("transistor", "ic") and line.kind in PASSIVE
+        if wrong_kind or passive_for_active:
+            self.problems.error(
+                "wrong-kind",
+                f"{role.name} needs a {role.kind}, but {name} is a {line.kind} ({line.source_text})",
+                entry.place,
+            )
+        elif role.main and line.value is not None and line.si_unit not in (None, role.unit):
+            self.problems.error(
+                "wrong-unit",
+                f"{role.name} is in {role.unit}, but the BOM gives {name} as {format_quantity(line.value, line.si_unit)}",
+                entry.place,
+            )
+        return line
+
+    def _parameter(self, role: Role, row: RoleRow | None) -> Parameter | None:
+        before = len(self.problems.findings)
+        line = None if row is None else self._line(role, row)
+        bounds = BoundsReader(role, row, line, self.default_shape, self.problems).read()
+        if bounds is not None and row is not None:
+            bounds = self._measured(role, row, bounds)
+        law = self._law(role, row, line)
+        solder, drift = (self._pair(role, row, column) for column in ("Solder", "Drift"))
+        share = self._share(role, row)
+        pedigree = self._pedigree(role, row)
+        if bounds is None or any(f.level == "error" for f in self.problems.findings[before:]):
+            return None
+        given = dict(bounds.given)
+        for column, key in (("Temperature law", "law"), ("Solder", "solder"), ("Drift", "drift"), ("Source", "source")):
+            entry = None if row is None else row.cell(column)
+            if entry is not None:
+                given[key] = entry.given
+        if law is not None and "law" not in given and line is not None and "temperature_law" in line.given:
+            given["law"] = line.given["temperature_law"]
+        part = row.cell("Part") if row is not None else None
+        ageing = None
+        if self.life and isinstance(law, Class2Law) and (row is None or row.cell("Drift") is None):
+            ageing = default_ageing(law.text)
+        note = row.cell("Note") if row is not None else None
+        return Parameter(
+            role=role.name, part=role.name if part is None else part.written, trait=role.trait,
+            kind=line.kind if line is not None else _kind(role), unit=role.unit,
+            nominal=bounds.typical, low=bounds.low, typical=bounds.typical, high=bounds.high, shape=bounds.shape,
+            law=law, solder=solder, drift=drift, ageing=ageing,
+            reel=None if line is None else reel_key(line), reel_share=share,
+            pedigree="assumed" if bounds.assumed else pedigree, given=given, note="" if note is None else note.written,
+        )  # fmt: skip
+
+    def _measured(self, role: Role, row: RoleRow, bounds: Bounds) -> Bounds:
+        entry = row.cell("Shape")
+        if entry is None or entry.text.strip().lower() != "measured":
+            return bounds
+        part = row.cell("Part")
+        values = self.sources.measured.get("" if part is None else part.written)
+        if not values:
+            self.problems.error(
+                "no-measurements",
+                f"{role.name} has the shape measured, but Measured has no column for its part",
+                entry.place,
+            )
+            return bounds
+        return Bounds(min(values), bounds.typical, max(values), Measured(values), bounds.given)
+
+    def _law(self, role: Role, row: RoleRow | None, line: BomLine | None) -> Law | None:
+        entry = None if row is None else row.cell("Temperature law")
+        place, text = (None, None) if entry is None else (entry.place, entry.written)
+        if text is None and line is not None and role.main and line.temperature_law is not None:
+            text, place = line.temperature_law, line.place
+            if role.kind == "crystal":
+                text = f"AT {text}"
+                self.problems.add(
+                    "warning", "crystal-law-assumed",
+                    f"{role.name}: the BOM gives {line.temperature_law} over temperature; an AT cut is assumed; "
+                    "write the law in Roles", place,
+                )  # fmt: skip
+        if text is None:
+            return None
+        try:
+            law = parse_law(text, tables=self.sources.tables, si_unit=role.unit)
+        except LawError as error:
+            self.problems.error("unknown-law", f"{role.name} temperature law: {error}", place)
+            return None
+        self._in_range(role, law, place)
+        return law
+
+    def _in_range(self, role: Role, law: Law | None, place: Place | None) -> None:
+        low, high = self.range_c
+        if law is None or law.range_c is None or low is None or high is None:
+            return
+        if low < law.range_c[0] or high > law.range_c[1]:
+            self.problems.error(
+                "law-range",
+                f"{role.name}: {law.text} holds from {law.range_c[0]:g} to {law.range_c[1]:g} °C, the study goes from "
+                f"{low:g} to {high:g} °C; narrow the study or give another law",
+                place,
+            )
+
+    def _pair(self, role: Role, row: RoleRow | None, column: str) -> tuple[float, float]:
+        entry = None if row is None else row.cell(column)
+        if entry is None:
+            return (0.0, 0.0)
+        found = tolerance(entry, f"{role.name} {column.lower()}", self.problems, nominal=None, si_unit=None)
+        if found is not None and column == "Drift" and not self.life and found != (0.0, 0.0):
+            self.problems.error(
+                "life-missing", f"{role.name} has a drift, but Design has no life; add the item life", entry.place
+            )
+        return found or (0.0, 0.0)
+
+    def _share(self, role: Role, row: RoleRow | None) -> float:
+        entry = None if row is None else row.cell("Reel share")
+        if entry is None:
+            return self.share
+        found = reel_share(entry, f"{role.name} reel share", self.problems)
+        return self.share if found is None else found
+
+    def _pedigree(self, role: Role, row: RoleRow | None) -> Pedigree:
+        entry = None if row is None else row.cell("Source")
+        if entry is None:
+            return "assumed"
+        for pedigree in PEDIGREES:
+            if entry.written.casefold() == pedigree:
+                return pedigree
+        self.problems.error(
+            "unknown-source",
+            f"{role.name} source is {shown(entry.written)}; write one of: {', '.join(PEDIGREES)}",
+            entry.place,
+        )
+        return "assumed"
+
+    def _without_law(self, circuit: Circuit, parameters: Sequence[Parameter]) -> None:
+        """One warning for all parts that are taken as constant over temperature."""
+        low, high = self.range_c
+        if low == high:
+            return
+        bare = [
+            p.role
+            for p in parameters
+            if p.law is None
+            and "law" not in p.given
+            and p.part != p.role
+            and circuit.role(p.role).builtin_law is None
+            and circuit.role(p.role).main
+        ]
+        if bare:
+            self.problems.add(
+                "warning",
+                "no-law",
+                f"no temperature law for {', '.join(bare)}: taken as constant over temperature; write none to say that "
+                "this is meant, or give the law",
+            )
+
+
+_KINDS: dict[str, Kind] = {
+    "resistor": "resistor",
+    "capacitor": "capacitor",
+    "inductor": "inductor",
+    "crystal": "crystal",
+    "transistor": "transistor",
+    "ic": "ic",
+}
+
+
+def _kind(role: Role) -> Kind:
+    """The kind of a role without a BOM line."""
+    return _KINDS.get(role.kind, "other")

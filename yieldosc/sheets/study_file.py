@@ -1,0 +1,226 @@
+"""A study file → Study: .xlsx with BOM, Design and Roles, or .toml beside a .csv BOM. All problems in one answer."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping
+from dataclasses import replace
+from pathlib import Path
+
+from yieldosc.circuits import registry
+from yieldosc.circuits.circuit import Circuit, CircuitError, Role
+from yieldosc.errors import Finding, InputError, Place, refusal
+from yieldosc.sheets.bom import BomReading, read_bom
+from yieldosc.sheets.design import DesignSheet, check_design, frequency_limits, make_design, read_design, requirements
+from yieldosc.sheets.digest import digest_of
+from yieldosc.sheets.entries import Problems
+from yieldosc.sheets.extras import law_tables, measured_values, unused_sheets
+from yieldosc.sheets.grid import Book
+from yieldosc.sheets.opening import open_book
+from yieldosc.sheets.parameters import ParameterMaker, Sources
+from yieldosc.sheets.roles import COLUMNS, RoleRow, sort_rows
+from yieldosc.sheets.study_tables import StudyTables, workbook_tables
+from yieldosc.sheets.toml_study import toml_tables
+from yieldosc.study import Study
+
+WORKBOOKS = (".xlsx", ".xlsm", ".xls", ".xlsb", ".ods")
+
+
+def is_study(path: Path) -> bool:
+    """True for a .toml file, or a spreadsheet with a Design sheet. A path that is no file is no study."""
+    if not path.is_file():
+        return False
+    if path.suffix.lower() == ".toml":
+        return True
+    return path.suffix.lower() in WORKBOOKS and open_book(path).sheet("Design") is not None
+
+
+def load_study(path: Path) -> Study:
+    """Read, check and understand a study; InputError with every problem of the file.
+
+    Warnings and notes end in `Study.findings`. Source of the layout: the project's interface contract.
+    """
+    path = Path(path)
+    problems = Problems()
+    if path.suffix.lower() == ".toml":
+        tables, book = toml_tables(path, problems)
+    else:
+        book = open_book(path)
+        if book.sheet("Design") is None:
+            raise refusal(
+                "not-a-study",
+                f"{path.name} has no sheet Design: it is a bare BOM; make a study of it with "
+                f"yieldosc draft {path.name} --circuit NAME -o STUDY.xlsx",
+                Place(path.name),
+            )
+        tables = workbook_tables(book, problems)
+    study = _understood(path, book, tables, problems)
+    if study is None or problems.fatal:
+        raise InputError(_in_order(problems))
+    return study
+
+
+def _in_order(problems: Problems) -> list[Finding]:
+    rank = {"Design": 0, "Roles": 1}
+    return sorted(
+        problems.findings, key=lambda f: (f.level != "error", rank.get(f.place.sheet or "", 2), f.place.row or 0)
+    )
+
+
+def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems) -> Study | None:
+    sheet = read_design(tables.items, tables.design_place, problems)
+    limits = frequency_limits(sheet, problems)
+    check_design(sheet, problems)
+    rows = sort_rows(tables.rows, problems)
+    reading = _bom(book, problems)
+    circuit = _circuit(sheet, rows, problems)
+    if circuit is None:
+        return None
+    lines = {line.designator: line for line in reading.lines}
+    sources = Sources(
+        design=sheet,
+        lines=lines,
+        tables=tables.law_tables or law_tables(book, _named_tables(rows), problems),
+        measured=measured_values(book, _measured_units(circuit, rows), problems),
+    )
+    unused_sheets(book, (), problems)
+    _supply(sheet, circuit, problems)
+    parameters, conditions = ParameterMaker(sources, problems).make(circuit, rows)
+    _note_pedigrees(rows, problems)
+    trim_unit = _trim_unit(sheet, circuit, problems)
+    if limits is None or problems.fatal:
+        return None
+    design = make_design(sheet, limits, trim_unit, problems)
+    if design is None:
+        return None
+    study = Study(
+        name=_name(path),
+        circuit=circuit,
+        parameters=parameters,
+        conditions=conditions,
+        design=design,
+        requirements=requirements(design, sheet.items),
+        design_given={name: item.value.given for name, item in sheet.items.items()},
+        bom=tuple(reading.lines),
+        bom_rows=reading.table_rows,
+        design_rows=tuple((i.name, i.value.written, i.unit, i.note) for i in tables.items),
+        role_rows=tuple(tuple(_role_texts(row)) for row in tables.rows),
+        extra_rows=tables.extra_rows,
+        findings=tuple(problems.findings),
+    )
+    return replace(study, digest=digest_of(study))
+
+
+def _bom(book: Book, problems: Problems) -> BomReading:
+    """The BOM sheet, or the table that looks like one; its errors are warnings until a role needs the line."""
+    name = "BOM" if book.sheet("BOM") is not None else None
+    reading = read_bom(book, name)
+    for finding in reading.findings:
+        level = "warning" if finding.level == "error" else finding.level
+        problems.findings.append(replace(finding, level=level))
+    return reading
+
+
+def _circuit(sheet: DesignSheet, rows: Mapping[str, RoleRow], problems: Problems) -> Circuit | None:
+    if not sheet.circuit:
+        return None
+    place = sheet.place_of("circuit")
+    options = {name: choice for name, (choice, _) in sheet.options.items()}
+    try:
+        family = registry.family(sheet.circuit)
+        chosen = registry.complete_options(family.name, options)
+    except CircuitError as error:
+        for text in error.problems:
+            problems.error("circuit", text, place)
+        return None
+    known = {role.name: role for role in family.roles(chosen)}
+    for name, row in rows.items():
+        if name not in known:
+            problems.error(
+                "unknown-role", f"{family.name} has no role {name} with these options; its roles are {', '.join(known)}",
+                row.place,
+            )  # fmt: skip
+        elif known[name].condition and known[name].unit == "V":
+            problems.error(
+                "supply-in-roles", f"{name} is the supply: give it in Design as supply and supply tolerance", row.place
+            )
+    present = {name for name in rows if name in known}
+    present |= {role.name for role in known.values() if _is_supply(role)}
+    present |= {role.name for role in known.values() if role.name == "CL" and "FL" in present}
+    try:
+        return registry.build(family.name, chosen, present)
+    except CircuitError as error:
+        for text in error.problems:
+            problems.error("circuit", f"{family.name}: {text}", Place("Roles"))
+        return None
+
+
+def _is_supply(role: Role) -> bool:
+    return role.condition and role.unit == "V"
+
+
+def _supply(sheet: DesignSheet, circuit: Circuit, problems: Problems) -> None:
+    if circuit.supply_role is None and "supply" in sheet.items:
+        problems.error(
+            "no-supply-role", f"{circuit.name} with these options has no supply in its model; remove the item supply",
+            sheet.place_of("supply"),
+        )  # fmt: skip
+    if circuit.supply_role is not None and "supply" not in sheet.items:
+        problems.error(
+            "supply-missing",
+            f"{circuit.name} needs the item supply ({circuit.supply_role}); add it to Design",
+            sheet.place,
+        )
+
+
+def _named_tables(rows: Mapping[str, RoleRow]) -> list[str]:
+    names = []
+    for row in rows.values():
+        entry = row.cell("Temperature law")
+        found = None if entry is None else re.match(r"\s*table\s+(.+)", entry.text, re.I)
+        if found is not None:
+            names.append(found[1].strip())
+    return names
+
+
+def _measured_units(circuit: Circuit, rows: Mapping[str, RoleRow]) -> dict[str, str]:
+    """Designator → SI unit of the main role that names it."""
+    units = {}
+    for role in circuit.roles:
+        row = rows.get(role.name)
+        part = None if row is None else row.cell("Part")
+        if part is not None and (role.main or part.written not in units):
+            units[part.written] = role.unit
+    return units
+
+
+def _trim_unit(sheet: DesignSheet, circuit: Circuit, problems: Problems) -> str | None:
+    if "trim role" not in sheet.items:
+        return None
+    name = sheet.items["trim role"].value.written
+    for role in circuit.roles:
+        if role.name == name:
+            return role.unit
+    problems.error("unknown-role", f"trim role {name} is no role of this circuit", sheet.place_of("trim role"))
+    return None
+
+
+def _note_pedigrees(rows: Mapping[str, RoleRow], problems: Problems) -> None:
+    silent = [name for name, row in rows.items() if row.cell("Source") is None and name != "CL"]
+    if silent:
+        problems.add(
+            "note", "pedigree-assumed",
+            f"no Source for {', '.join(silent)}: counted as assumed; a verdict then holds on that condition", Place("Roles"),
+        )  # fmt: skip
+
+
+def _name(path: Path) -> str:
+    return path.stem.removesuffix("-result")
+
+
+def _role_texts(row: RoleRow) -> list[str]:
+    texts = []
+    for column in COLUMNS:
+        entry = row.cell(column)
+        texts.append(row.role if column == "Role" else "" if entry is None else entry.written)
+    return texts

@@ -1,0 +1,108 @@
+"""The Design and Roles sheets of a workbook as items and rows."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+from yieldosc.errors import Place
+from yieldosc.sheets.design import Item
+from yieldosc.sheets.entries import Entry, Problems, entry_of, folded
+from yieldosc.sheets.extras import KNOWN
+from yieldosc.sheets.grid import Book, Grid
+from yieldosc.sheets.roles import RoleRow, column_names
+
+DESIGN_COLUMNS = ("Item", "Value", "Unit", "Note")
+
+
+@dataclass(slots=True)
+class StudyTables:
+    """Items of Design, rows of Roles, and what a TOML study brings along."""
+
+    items: list[Item]
+    rows: list[RoleRow]
+    design_place: Place
+    law_tables: dict[str, list[tuple[float, float]]] = field(default_factory=dict)
+    extra_rows: Mapping[str, tuple[tuple[str, ...], ...]] = field(default_factory=dict)
+
+
+def workbook_tables(book: Book, problems: Problems) -> StudyTables:
+    """From the sheets Design and Roles; a missing Roles sheet is an error."""
+    design = book.sheet("Design")
+    assert design is not None
+    roles = book.sheet("Roles")
+    if roles is None:
+        problems.error(
+            "missing-sheet", "the study has no sheet Roles; add it, or draft a study from the BOM", Place("Roles")
+        )
+    rows = [] if roles is None else _role_rows(roles, problems)
+    named = {
+        folded(row.cells["Temperature law"].text.strip()[5:])
+        for row in rows
+        if "Temperature law" in row.cells and row.cells["Temperature law"].text.strip().lower().startswith("table")
+    }
+    kept = {folded(n) for n in KNOWN if n not in ("BOM", "Design", "Roles")} | named
+    extra = {g.name: _texts(g) for g in book.sheets if folded(g.name) in kept}
+    return StudyTables(_items(design, problems), rows, Place("Design"), extra_rows=extra)
+
+
+def _items(grid: Grid, problems: Problems) -> list[Item]:
+    columns = dict.fromkeys(DESIGN_COLUMNS)
+    heading = next((r for r in range(min(len(grid.rows), 20)) if _is_heading(grid, r)), None)
+    if heading is None:
+        problems.error(
+            "missing-column", "Design has no heading row with Item and Value; its columns are Item, Value, Unit, Note",
+            grid.place(0),
+        )  # fmt: skip
+        return []
+    for c, cell in enumerate(grid.rows[heading]):
+        for name in DESIGN_COLUMNS:
+            if folded(cell.text) == folded(name):
+                columns[name] = c  # type: ignore[assignment]
+    items = []
+    for r in range(heading + 1, len(grid.rows)):
+        entries = {
+            name: Entry("", grid.place(r, 0)) if c is None else entry_of(grid.cell(r, c), grid.place(r, c))
+            for name, c in columns.items()
+        }
+        if not entries["Item"].blank:
+            items.append(
+                Item(entries["Item"].written, entries["Value"], entries["Unit"].written, entries["Note"].written)
+            )
+        elif not entries["Value"].blank:
+            problems.error(
+                "value-without-item",
+                f"the value {entries['Value'].written} stands beside no item",
+                entries["Value"].place,
+            )
+    return items
+
+
+def _is_heading(grid: Grid, row: int) -> bool:
+    texts = {folded(cell.text) for cell in grid.rows[row]}
+    return {"item", "value"} <= texts
+
+
+def _role_rows(grid: Grid, problems: Problems) -> list[RoleRow]:
+    heading = next(
+        (r for r in range(min(len(grid.rows), 20)) if any(folded(c.text) == "role" for c in grid.rows[r])), 0
+    )
+    cells = grid.rows[heading] if grid.rows else ()
+    names = column_names([(cell.text, grid.place(heading, c)) for c, cell in enumerate(cells)], problems)
+    rows = []
+    for r in range(heading + 1, len(grid.rows)):
+        found = {}
+        for c, name in enumerate(names):
+            entry = entry_of(grid.cell(r, c), grid.place(r, c))
+            if name is not None and not entry.blank:
+                found[name] = entry
+        if found:
+            role = found.pop("Role").written if "Role" in found else ""
+            rows.append(RoleRow(role, found, grid.place(r)))
+    return rows
+
+
+def _texts(grid: Grid) -> tuple[tuple[str, ...], ...]:
+    return tuple(
+        tuple(entry_of(cell, grid.place(r, c)).written for c, cell in enumerate(row)) for r, row in enumerate(grid.rows)
+    )
