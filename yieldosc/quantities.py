@@ -227,7 +227,7 @@ def parse_fraction(text: str) -> float:
 
 
 def format_quantity(value: float, si_unit: str | None, digits: int = 4) -> str:
-    """"4.7 kΩ", "10 nF", "1.591 kHz": `digits` significant digits without trailing zeros.
+    """ "4.7 kΩ", "10 nF", "1.591 kHz": `digits` significant digits without trailing zeros.
 
     What is printed reads back as exactly the value rounded to those digits.
     """
@@ -316,7 +316,7 @@ def _part(part: str, text: str, nominal: float | None, si_unit: str | None) -> f
         raise QuantityError(f'{shown(text)} is absolute and the value is not known; write it in %, for example "±5 %"')
     if quantity.si_unit != si_unit or nominal <= 0:
         raise QuantityError(
-            f'{shown(text)} is in {_named(quantity.si_unit)} but the value is in {_named(si_unit)}; '
+            f"{shown(text)} is in {_named(quantity.si_unit)} but the value is in {_named(si_unit)}; "
             'write it in %, for example "±5 %"'
         )
     return quantity.value / nominal
@@ -332,7 +332,7 @@ def _checked(low: float, high: float, text: str) -> tuple[float, float]:
     if not low <= 0 <= high:
         raise QuantityError(f'{shown(text)} does not hold the nominal value; write for example "-20/+80 %"')
     if low <= -1:
-        raise QuantityError(f'{shown(text)} lets the value reach zero; write a tolerance below 100 %')
+        raise QuantityError(f"{shown(text)} lets the value reach zero; write a tolerance below 100 %")
     return low + 0.0, high + 0.0
 
 

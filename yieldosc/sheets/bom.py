@@ -13,12 +13,15 @@ from yieldosc.sheets.designators import DesignatorList, parse_designators
 from yieldosc.sheets.grid import Book, Cell, column_letters
 from yieldosc.sheets.headings import Meaning
 from yieldosc.sheets.kinds import SI_UNIT, letters_of
-from yieldosc.sheets.partfacts import VALUED, PartFacts, Source, make_source, understand
+from yieldosc.sheets.partfacts import VALUED, PartFacts, Source, make_source
 from yieldosc.sheets.plausibility import doubts
 from yieldosc.sheets.tables import Table, find_tables, is_heading
 from yieldosc.sheets.text_guard import printable
+from yieldosc.sheets.understanding import understand
 
-_TOTAL = re.compile(r"\W*(sub)?(total|sum|summe|gesamt|итого|всего|合计|合計|price|board count|approved|checked|drawn)\b", re.I)
+_TOTAL = re.compile(
+    r"\W*(sub)?(total|sum|summe|gesamt|итого|всего|合计|合計|price|board count|approved|checked|drawn)\b", re.I
+)
 _TITLE_LENGTH = 60
 
 
@@ -49,7 +52,8 @@ def read_bom(book: Book, sheet: str | None = None) -> BomReading:
 
 
 def reel_key(line: BomLine) -> str:
-    """Parts of equal key come from one reel: equal part number, or without one equal kind, value, tolerance and law."""
+    """Parts of equal key come from one reel: equal part number, or without one equal kind, value, tolerance "
+    "and law."""
     if line.part_number and re.search(r"\w{3}", line.part_number):
         return "number " + "".join(line.part_number.split()).upper()
     if line.value is None:
@@ -59,8 +63,12 @@ def reel_key(line: BomLine) -> str:
 
 
 def _no_table(book: Book) -> InputError:
-    return refusal("bom-no-table", "no table of parts was found; give a sheet with a heading row such as "
-                   "Designator, Value, Tolerance, Description", Place(printable(book.path)))  # fmt: skip
+    return refusal(
+        "bom-no-table",
+        "no table of parts was found; give a sheet with a heading row such as "
+        "Designator, Value, Tolerance, Description",
+        Place(printable(book.path)),
+    )
 
 
 class _Reader:
@@ -77,13 +85,24 @@ class _Reader:
     def read(self, table: Table) -> None:
         self.table, self.scope = table, None
         if table.grid.hidden:
-            self._say("note", "bom-hidden-sheet", "the sheet is hidden; its parts were read too", table.heading_row or 0)
+            self._say(
+                "note", "bom-hidden-sheet", "the sheet is hidden; its parts were read too", table.heading_row or 0
+            )
         if table.heading_row is None:
-            self._say("note", "bom-headings-guessed", "the table has no headings; its columns were told by their content: "
-                      + self._meanings(), 0)  # fmt: skip
+            self._say(
+                "note",
+                "bom-headings-guessed",
+                "the table has no headings; its columns were told by their content: " + self._meanings(),
+                0,
+            )
         elif table.guessed and table.designator is not None:
-            self._say("note", "bom-headings-guessed", f"column {column_letters(table.designator)} was read as designators by "
-                      "its content", table.heading_row, table.designator)  # fmt: skip
+            self._say(
+                "note",
+                "bom-headings-guessed",
+                f"column {column_letters(table.designator)} was read as designators by its content",
+                table.heading_row,
+                table.designator,
+            )
         for row in range(table.first, table.last):
             self._row(row)
 
@@ -93,8 +112,11 @@ class _Reader:
         valued = [line for line in self.lines if line.kind in VALUED and line.fitted and line.value]
         missing = sum(line.tolerance is None for line in valued)
         if missing:
-            text = (f"{missing} of {len(valued)} resistors, capacitors, inductors and crystals state no tolerance; none is "
-                    "assumed: write it in a column Tolerance or in Roles for the parts of the circuit")  # fmt: skip
+            text = (
+                f"{missing} of {len(valued)} resistors, capacitors, inductors and crystals state no "
+                "tolerance; none is "
+                "assumed: write it in a column Tolerance or in Roles for the parts of the circuit"
+            )
             self.findings.append(Finding("note", "bom-tolerance-missing", text, Place(tables[0].grid.name)))
 
     def _meanings(self) -> str:
@@ -117,7 +139,8 @@ class _Reader:
         self._lead(filled)
         found = self._designators(cells)
         title = len(filled) == 1 and found is not None and not any(c.isdigit() for name in found.names for c in name)
-        if found is None or title or not (found.names or found.junk):
+        total = found is not None and _TOTAL.match(cells[self.table.designator or 0].text) is not None
+        if found is None or title or total or not (found.names or found.junk):
             if not self._without_part(row, filled):
                 self._lines(row, cells, DesignatorList(("",)))
             return
@@ -125,11 +148,21 @@ class _Reader:
 
     def _cell_errors(self, row: int, column: int, cell: Cell) -> None:
         if cell.kind == "error":
-            self._say("warning", "bom-cell-error", f"the cell holds the error {cell.text}; it was not read: correct it",
-                      row, column)  # fmt: skip
+            self._say(
+                "warning",
+                "bom-cell-error",
+                f"the cell holds the error {cell.text}; it was not read: correct it",
+                row,
+                column,
+            )
         elif cell.kind == "formula_without_result":
-            self._say("warning", "bom-formula-empty", "the cell holds a formula without a stored result; open the file in a "
-                      "spreadsheet program and save it", row, column)  # fmt: skip
+            self._say(
+                "warning",
+                "bom-formula-empty",
+                "the cell holds a formula without a stored result; open the file in a spreadsheet program and save it",
+                row,
+                column,
+            )
 
     def _repeated(self, cells: tuple[Cell, ...]) -> bool:
         own = [text.casefold() for text in self.table.headings if text]
@@ -155,20 +188,32 @@ class _Reader:
         texts = [cell.text for _, cell in filled if cell.kind == "text"]
         words = [text for text in texts if re.search(r"[^\W\d]{2}", text)]
         if not words or any(_TOTAL.match(text) for text in texts):
-            self._say("note", "bom-row-skipped", f"{shown(texts[0] if texts else filled[0][1].text)}: a total or a number without "
-                      "a part; the row was skipped", row)  # fmt: skip
+            self._say(
+                "note",
+                "bom-row-skipped",
+                f"{shown(texts[0] if texts else filled[0][1].text)}: a total or a number without "
+                "a part; the row was skipped",
+                row,
+            )
             return True
         if len(filled) > 1 and self.table.designator is None:
             return False
         if len(filled) <= 1 or not self._tells(filled):
             title = printable(" ".join(words[0].split()))
-            if len(title) <= _TITLE_LENGTH and not title.startswith("*") and title[-1] not in ".!," and len(filled) == 1:
+            if (
+                len(title) <= _TITLE_LENGTH
+                and not title.startswith("*")
+                and title[-1] not in ".!,"
+                and len(filled) == 1
+            ):
                 self.scope = title
                 self._say("note", "bom-section", f"{shown(title)} was read as the title of the rows below", row)
             else:
                 self._say("note", "bom-row-skipped", f"{shown(words[0])}: a note; the row was skipped", row)
             return True
-        self._say("note", "bom-no-designator", f"{shown(words[0])} has no designator; the row is shown and used nowhere", row)
+        self._say(
+            "note", "bom-no-designator", f"{shown(words[0])} has no designator; the row is shown and used nowhere", row
+        )
         return False
 
     def _tells(self, filled: list[tuple[int, Cell]]) -> bool:
@@ -180,8 +225,14 @@ class _Reader:
         sources = self._sources(row, cells)
         column = self.table.designator
         if found.junk:
-            self._say("warning", "bom-designator-junk", f"{', '.join(map(shown, found.junk[:5]))} cannot be read as a "
-                      "designator; write a list such as R1, R2, R5-R8", row, column)  # fmt: skip
+            self._say(
+                "warning",
+                "bom-designator-junk",
+                f"{', '.join(map(shown, found.junk[:5]))} cannot be read as a "
+                "designator; write a list such as R1, R2, R5-R8",
+                row,
+                column,
+            )
         parts: dict[str, PartFacts] = {}
         names = found.names or ("",)
         for name in names:
@@ -192,8 +243,7 @@ class _Reader:
         text = printable(" | ".join(source.cell.text.strip() for source in sources if not source.cell.blank))
         for part in parts.values():
             self._remarks(row, part)
-        for name in names:
-            self._add(self._line(name, parts[letters_of(name)], row, sources, text, zero))
+        self._add([self._line(name, parts[letters_of(name)], row, sources, text, zero) for name in names])
         for key, part in parts.items():
             self._unread(row, part, [name for name in names if letters_of(name) == key], zero)
 
@@ -245,11 +295,22 @@ class _Reader:
             if quantity == 0:
                 return True
             if quantity != count:
-                self._say("warning", "bom-quantity-mismatch", f"the quantity is {quantity}, but {count} designators stand in the "
-                          "row; the designators were taken: correct the wrong one", row, source.column)  # fmt: skip
+                self._say(
+                    "warning",
+                    "bom-quantity-mismatch",
+                    f"the quantity is {quantity}, but {count} designators stand in the "
+                    "row; the designators were taken: correct the wrong one",
+                    row,
+                    source.column,
+                )
             elif found.count and found.count != len(found.names):
-                self._say("warning", "bom-designator-count", f"{found.count} parts are announced, but only {len(found.names)} "
-                          "designators named; name them all", row, self.table.designator)  # fmt: skip
+                self._say(
+                    "warning",
+                    "bom-designator-count",
+                    f"{found.count} parts are announced, but only {len(found.names)} designators named; name them all",
+                    row,
+                    self.table.designator,
+                )
             return False
         return False
 
@@ -259,25 +320,50 @@ class _Reader:
         if part.decoded:
             what = ", ".join(name.replace("_", " ") for name in part.decoded)
             text = part.given[part.decoded[0]].text
-            self._say("note", "bom-decoded", f"{what} read from {shown(text)} only; write it in words where it is wrong", row)
+            self._say(
+                "note", "bom-decoded", f"{what} read from {shown(text)} only; write it in words where it is wrong", row
+            )
 
     def _unread(self, row: int, part: PartFacts, names: list[str], zero: bool) -> None:
         if part.kind in VALUED and part.value is None and part.fitted and not zero and names != [""]:
             example = {"resistor": 4700.0, "capacitor": 1e-8, "inductor": 1e-5, "crystal": 8e6}[part.kind]
-            self._say("warning", "bom-value-unread", f"no value could be read for {_few(names)} ({part.kind}); write it in a "
-                      f'column Value, for example "{format_quantity(example, SI_UNIT[part.kind])}"', row)  # fmt: skip
+            self._say(
+                "warning",
+                "bom-value-unread",
+                f"no value could be read for {_few(names)} ({part.kind}); write it in a "
+                f'column Value, for example "{format_quantity(example, SI_UNIT[part.kind])}"',
+                row,
+            )
 
-    def _add(self, line: BomLine) -> None:
-        key = (line.place.sheet or "", line.designator)
-        if line.designator and key in self.seen:
-            before = self.seen[key]
-            same = (before.kind, before.value, before.tolerance) == (line.kind, line.value, line.tolerance)
-            apart = before.scope != line.scope
-            text = f"{line.designator} stands in row {before.place.row} too" + (" with the same value" if same else "")
-            self.findings.append(Finding("note" if apart else "warning", "bom-duplicate-designator",
-                                 text + "; both lines are kept: delete one or rename it", line.place))  # fmt: skip
-        self.seen.setdefault(key, line)
-        self.lines.append(line)
+    def _add(self, lines: list[BomLine]) -> None:
+        """Keeps every line; designators that stood in an earlier row are reported once per row."""
+        again = [
+            (self.seen[key], line)
+            for line in lines
+            if (key := _identity(line)) in self.seen and re.search(r"\d", line.designator)
+        ]
+        if again:
+            before, line = again[0]
+            same = all(_content(old) == _content(new) for old, new in again)
+            verb = "stand" if len(again) > 1 else "stands"
+            text = (
+                f"{_few([new.designator for _, new in again])} {verb} above too, first in row "
+                f"{before.place.row}, with "
+                f"{'the same' if same else 'another'} value; all lines are kept: delete or rename one"
+            )
+            level: Level = "note" if same and before.scope != line.scope else "warning"
+            self.findings.append(Finding(level, "bom-duplicate-designator", text, line.place))
+        for line in lines:
+            self.seen.setdefault(_identity(line), line)
+        self.lines += lines
+
+
+def _identity(line: BomLine) -> tuple[str, str]:
+    return line.place.sheet or "", line.designator
+
+
+def _content(line: BomLine) -> tuple[object, ...]:
+    return line.kind, line.value, line.tolerance
 
 
 def _few(names: list[str]) -> str:
@@ -291,7 +377,8 @@ def _text_table(tables: tuple[Table, ...]) -> tuple[tuple[str, ...], ...]:
         width = max([len(table.headings), *(len(row) for row in table.grid.rows[table.first : table.last])], default=0)
         titles = {c: meaning.replace("_", " ").capitalize() for c, meaning in table.columns.items()}
         heading = tuple(
-            table.headings[c] if c < len(table.headings) and table.headings[c] else titles.get(c, "") for c in range(width)
+            table.headings[c] if c < len(table.headings) and table.headings[c] else titles.get(c, "")
+            for c in range(width)
         )
         rows.append(_clean(heading))
         rows += [_clean(row) for row in _texts(table, width) if any(row)]

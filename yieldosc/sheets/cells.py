@@ -14,9 +14,12 @@ from yieldosc.quantities import QuantityError, normal, parse_quantity, parse_tol
 
 _N = r"(?:\d+(?:[.,]\d+)?|[.,]\d+)"
 _PLUS_MINUS = r"(?:±|\+\s?/?\s?-|-\s?/\s?\+|<=|≤|<)"
-_DIELECTRIC = re.compile(r"(?<![A-Za-zА-Яа-я\d])(C[0O]G|NP[0O]|МП[0O0О]|[XYZ][2-9][A-Z]|[CULMPRSTV][0-9][GHJKL]|CH|CG)(?![A-Za-z\d])")
+_DIELECTRIC = re.compile(
+    r"(?<![A-Za-zА-Яа-я\d])(C[0O]G|NP[0O]|МП[0O0О]|[XYZ][2-9][A-Z]|[CULMPRSTV][0-9][GHJKL]|CH|CG)(?![A-Za-z\d])"
+)
 _PER_KELVIN = re.compile(
-    rf"(?P<sign>{_PLUS_MINUS}|[+-])?\s?(?P<size>{_N})\s?ppm\s?/\s?(?:°|deg\.?\s?)?\s?[CK](?:elvin)?(?![A-Za-z])", re.IGNORECASE
+    rf"(?P<sign>{_PLUS_MINUS}|[+-])?\s?(?P<size>{_N})\s?ppm\s?/\s?(?:°|deg\.?\s?)?\s?[CK](?:elvin)?(?![A-Za-z])",
+    re.IGNORECASE,
 )
 _RANGE_C = re.compile(
     r"(?P<low>[+-]?\d{1,3})\s?(?:°|deg)?\s?C?\s?(?:~|to|\.{2,3}|…|/|-(?=\s?\+))\s?\+?(?P<high>\d{2,3})\s?(?:°\s?C|deg\s?C|℃|C\b)",
@@ -29,15 +32,17 @@ _ABSOLUTE = re.compile(rf"(?:±|\+\s?/?\s?-)\s?{_N}\s?[pnuμ]F", re.IGNORECASE)
 _AT_FREQUENCY = re.compile(rf"@\s?{_N}\s?[kMG]?Hz", re.IGNORECASE)
 _URL = re.compile(r"(?:https?://|www\.)\S+", re.IGNORECASE)
 _POWER_SHARE = re.compile(r"(?<!\d)\d{1,2}\s?/\s?\d{1,2}\s?W(?![A-Za-z])", re.IGNORECASE)
-_SIZE = re.compile(r"(?<![\w.,])(01005|0[2-9]\d\d|1008|1[28]\d\d|20[12]\d|2[25]\d\d|3216|3225|3528|5032|6032|7343)(?![\w.,]|\s?[A-Za-zΩμ%])")
+_SIZE = re.compile(
+    r"(?<![\w.,])(01005|0[2-9]\d\d|1008|1[28]\d\d|20[12]\d|2[25]\d\d|3216|3225|3528|5032|6032|7343)(?![\w.,]|\s?[A-Za-zΩμ%])"
+)
 _UNITS = r"(?:ohms?|Ω|Ом|ом|Ohms?|OHMS?|欧|Hz|HZ|hz|Гц|F|Ф|f|H|h|Гн|V|v|В|A|W|w|Вт)"
 _PREFIX = r"(?:Meg|MEG|meg|мк|МК|[pnuμmkKMGUNPпнмкМКГ])"
 _WITH_UNIT = re.compile(
-    rf"(?<![A-Za-z\d.,])(?P<text>(?:\d+\s?[kKMmunpμRr]\d+|{_N}\.?)\s?-?{_PREFIX}?\s?{_UNITS})(?:DC|AC)?(?![A-Za-zА-Яа-я])"
+    rf"(?<![A-Za-z\d.,-])(?P<text>(?:\d+\s?[kKMmunpμRr]\d+|{_N}\.?)\s?-?{_PREFIX}?\s?{_UNITS})(?:DC|AC)?(?![A-Za-zА-Яа-я])"
 )
-_GLUED = re.compile(rf"(?P<text>{_N}\s?{_PREFIX}?{_UNITS})(?=\d)")
+_GLUED = re.compile(rf"(?<![A-Za-z\d.,-])(?P<text>{_N}\s?{_PREFIX}?{_UNITS})(?=\d)")
 _BARE = re.compile(
-    rf"(?<![\w.,%±/-])(?P<text>\d+[kKMmunpμRrVv]\d+|[Rr]\d+|{_N}\s?(?:{_PREFIX}|R|r|E)|{_N}[kKMRr]\s?(?=[FGJ]\b))(?![\w%]|\.\d)"
+    rf"(?<![\w.,%±/-])(?P<text>\d+[kKMmunpμRrVv]\d+|[Rr]\d{{1,3}}|{_N}\s?(?:{_PREFIX}|R|r|E)|{_N}[kKMRr]\s?(?=[FGJ]\b))(?![\w%]|\.\d)"
 )
 
 
@@ -84,7 +89,7 @@ class _Text:
 
 def read_facts(text: str) -> Facts:
     """Every fact of a cell's text."""
-    facts, rest = Facts(), _Text(normal(_URL.sub(" ", text))[:2000])
+    facts, rest = Facts(), _Text(normal(_URL.sub(" ", text).replace("_", " "))[:2000])
     rest.take(_AT_FREQUENCY)
     for match in rest.take(_PER_KELVIN):
         sign = match["sign"] or "±"

@@ -15,7 +15,6 @@ CELL_LENGTH = 10_000
 SHARED_STRINGS = 200_000
 
 
-
 class Refusal(Exception):  # noqa: N818 - the parent makes an error of it
     """A file that this reader will not read: stable code and one sentence."""
 
@@ -44,5 +43,7 @@ def limit_resources() -> None:
 
 
 def too_large(row: int, column: int) -> Refusal:
-    return Refusal("file-limit", f"a sheet reaches row {row + 1} and column {column + 1}; at most {ROWS} rows and "
-                   f"{COLUMNS} columns are read")  # fmt: skip
+    return Refusal(
+        "file-limit",
+        f"a sheet reaches row {row + 1} and column {column + 1}; at most {ROWS} rows and {COLUMNS} columns are read",
+    )

@@ -24,8 +24,9 @@ class Package:
             raise Refusal("file-encrypted", "the file is encrypted")
         declared = sum(entry.file_size for entry in entries)
         if declared > UNPACKED_BYTES:
-            raise Refusal("file-limit", f"the file unpacks to {declared / 1e6:.0f} MB, more than "
-                          f"{UNPACKED_BYTES / 1e6:.0f} MB")  # fmt: skip
+            raise Refusal(
+                "file-limit", f"the file unpacks to {declared / 1e6:.0f} MB, more than {UNPACKED_BYTES / 1e6:.0f} MB"
+            )
         self.parts: dict[str, bytes] = {}
         total = 0
         for entry in entries:

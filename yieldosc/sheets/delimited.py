@@ -21,12 +21,19 @@ def read_delimited(path: str, place: Place, data: bytes) -> Book:
     """A book of one sheet from comma, semicolon, tab or bar separated text. Raises InputError."""
     decoded = decode(data)
     if decoded is None or "\0" in decoded[0]:
-        raise refusal("file-type", "the file holds NUL bytes or is not text; give a spreadsheet (xlsx, xls, xlsb, "
-                      "ods) or csv", place)  # fmt: skip
+        raise refusal(
+            "file-type",
+            "the file holds NUL bytes or is not text; give a spreadsheet (xlsx, xls, xlsb, ods) or csv",
+            place,
+        )
     text, encoding, guessed = decoded
     if text.lstrip("\ufeff \t\r\n")[:9].lower().startswith(_MARKUP):
-        raise refusal("file-type", "the file is HTML or XML whatever its name says; open it in a spreadsheet program "
-                      "and save it as xlsx or csv", place)  # fmt: skip
+        raise refusal(
+            "file-type",
+            "the file is HTML or XML whatever its name says; open it in a spreadsheet program "
+            "and save it as xlsx or csv",
+            place,
+        )
     lines = text.lstrip("\ufeff").replace("\r\n", "\n").replace("\r", "\n").split("\n")
     if len(lines) > ROWS + 1:
         raise _refused(len(lines) - 1, 0, place)
@@ -35,8 +42,9 @@ def read_delimited(path: str, place: Place, data: bytes) -> Book:
     findings = (Finding("note", "file-encoding", note, place),) if guessed else ()
     grid = Grid(place.sheet or "csv", tuple(_cells(record, row, place) for row, record in enumerate(records)))
     if sum(map(len, grid.rows)) > CELLS:
-        raise refusal("file-limit", f"the file holds more than {CELLS} cells; delete what is not the BOM and save it "
-                      "again", place)  # fmt: skip
+        raise refusal(
+            "file-limit", f"the file holds more than {CELLS} cells; delete what is not the BOM and save it again", place
+        )
     return Book(path, "tsv" if separator == "\t" else "csv", (grid,), findings)
 
 
@@ -50,8 +58,12 @@ def _cells(record: list[str], row: int, place: Place) -> tuple[Cell, ...]:
         raise _refused(row, len(record) - 1, place)
     for cell in record:
         if len(cell) > CELL_LENGTH:
-            raise refusal("file-limit", f"a cell holds {len(cell)} characters, more than {CELL_LENGTH}; delete what "
-                          "is not the BOM and save it again", Place(place.sheet, row + 1))  # fmt: skip
+            raise refusal(
+                "file-limit",
+                f"a cell holds {len(cell)} characters, more than {CELL_LENGTH}; delete what "
+                "is not the BOM and save it again",
+                Place(place.sheet, row + 1),
+            )
     return tuple(Cell("text", cell.strip()) if cell.strip() else EMPTY for cell in record)
 
 

@@ -24,7 +24,7 @@ class DesignatorList:
 
 
 def parse_designators(text: str) -> DesignatorList:
-    """All designators of a cell: ``C1 C2``, ``C7-8``, ``R21…R31``, ``Q101,102``, ``C[2,9-12,15]``, ``R101, R201,…, R801``."""
+    """All designators of a cell: ``C1 C2``, ``C7-8``, ``R21…R31``, ``Q101,102``, ``C[2,9-12]``, ``R1, R11,…, R81``."""
     plain = _sets_opened(re.sub(r"\.{2,}|…\.|(?<=\d) (?:to|bis|through|à) (?=[A-Z]*\d)", "…", normal(text)))
     plain = re.sub(r"\s?\((\d{1,4})\)|(?<=\d)\*(\d{1,4})", r",x\1\2", plain)
     plain = re.sub(r"(?<=[A-Za-z\d])\s?(-|…|~|÷)\s?(?=[A-Za-zА-Яа-я]*\d)", r"\1", plain)

@@ -27,11 +27,19 @@ OUTPUT_BYTES = 48 * 2**20
 
 _OLE = b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1"
 _FOREIGN = (
-    (b"%PDF", "a PDF document"), (b"\x89PNG", "a picture"), (b"\xff\xd8\xff", "a picture"), (b"GIF8", "a picture"),
-    (b"{\\rtf", "an RTF document"), (b"7z\xbc\xaf", "a packed archive"), (b"Rar!", "a packed archive"),
-    (b"\x1f\x8b", "a packed archive"), (b"BZh", "a packed archive"), (b"\xfd7zXZ", "a packed archive"),
-    (b"\x7fELF", "a program"), (b"MZ", "a program"),
-)  # fmt: skip
+    (b"%PDF", "a PDF document"),
+    (b"\x89PNG", "a picture"),
+    (b"\xff\xd8\xff", "a picture"),
+    (b"GIF8", "a picture"),
+    (b"{\\rtf", "an RTF document"),
+    (b"7z\xbc\xaf", "a packed archive"),
+    (b"Rar!", "a packed archive"),
+    (b"\x1f\x8b", "a packed archive"),
+    (b"BZh", "a packed archive"),
+    (b"\xfd7zXZ", "a packed archive"),
+    (b"\x7fELF", "a program"),
+    (b"MZ", "a program"),
+)
 # The package's own start-up is skipped: it loads numerical libraries that the reader does not need.
 _START = """
 import sys, types
@@ -96,8 +104,9 @@ def _read(path: Path, place: Place) -> bytes:
                           "rights", place) from None  # fmt: skip
         after = os.fstat(stream.fileno())
     if (before.st_size, before.st_mtime_ns) != (after.st_size, after.st_mtime_ns) or len(data) != before.st_size:
-        raise refusal("file-changed", "the file changed while it was read; close the program that writes it and "
-                      "try again", place)  # fmt: skip
+        raise refusal(
+            "file-changed", "the file changed while it was read; close the program that writes it and try again", place
+        )
     if not data.strip(b" \t\r\n\xef\xbb\xbf"):
         raise refusal("file-empty", "the file is empty; give a file that holds a BOM", place)
     return data
@@ -108,8 +117,12 @@ def _not_regular(what: str, place: Place) -> InputError:
 
 
 def _too_big(size: int, place: Place) -> InputError:
-    return refusal("file-limit", f"the file has {size / 1e6:.0f} MB, more than {FILE_BYTES / 1e6:.0f} MB; "
-                   "delete what is not the BOM and save it again", place)  # fmt: skip
+    return refusal(
+        "file-limit",
+        f"the file has {size / 1e6:.0f} MB, more than {FILE_BYTES / 1e6:.0f} MB; "
+        "delete what is not the BOM and save it again",
+        place,
+    )
 
 
 def _in_child(path: Path, data: bytes, place: Place) -> Book:
@@ -150,8 +163,11 @@ def _book(path: Path, text: str, status: int, place: Place) -> Book:
         code = str(last["refused"])
         raise refusal(code, f"{printable(str(last['text']))}; {_NEXT.get(code, _NEXT['file-broken'])}", place)
     if status != 0 or not last.get("end"):
-        raise refusal("reader-died", "the file made its reader fail (too much memory or a damaged structure); "
-                      + _NEXT["file-broken"], place)  # fmt: skip
+        raise refusal(
+            "reader-died",
+            "the file made its reader fail (too much memory or a damaged structure); " + _NEXT["file-broken"],
+            place,
+        )
     grids = _grids(lines)
     file_type = str(lines[0]["type"])
     findings: tuple[Finding, ...] = ()

@@ -28,7 +28,8 @@ _SIZE = r"(?:01005|0201|0402|0603|0805|1206|1210|1812|2010|2512)"
 _POINT = r"\d+[RKM]\d*|[RKM]\d+"
 # value: code; tol: letter; law: dielectric in letters or as one letter of a series.
 _RESISTORS = (
-    rf"^[A-Z]{{2,5}}{_SIZE}-?(?P<tol>[BCDFGJK])[A-Z]{{0,2}}-?(?:07|10|13|7[WNT])(?P<value>{_POINT})L?",
+    rf"^[A-Z]{{2,5}}{_SIZE}-?(?P<tol>[BCDFGJK])[A-Z]{{0,2}}-?(?:07|13|7[WNT])(?P<value>\d+[RKM]\d*)L?",
+    rf"^[A-Z]{{2,5}}{_SIZE}(?P<tol>[BCDFGJK])T(?P<value>{_POINT})$",
     rf"^[A-Z]{{2,5}}{_SIZE}(?P<value>{_POINT})(?P<tol>[BCDFGJK])[A-Z]",
     rf"^[A-Z]{{2,3}}{_SIZE}-?(?P<tol>[BCDFGJ])[A-Z]-?(?P<value>\d{{3,4}}|{_POINT})(?:[A-Z]|$)",
     r"^ERJ-?[A-Z0-9]{2,4}?(?P<tol>[BCDFGJ])(?P<value>\d{3,4}|\d+R\d+|R\d+)[VXDC]",
@@ -57,11 +58,15 @@ _INDUCTORS = (
     r"^[A-Z]{2,6}\d{3,5}[A-Z]{0,2}-?(?P<value>\d+[RN]\d*|R\d+)(?P<tol>[JKMN])?(?:[A-Z0-9-]*)$",
     r"^[A-Z]{2,6}\d{3,5}[A-Z]{0,2}-(?P<value>\d{3})(?P<tol>[JKMN])",
 )
-_CRYSTALS = (r"(?P<value>\d{1,3}(?:\.\d{1,6})?)(?P<scale>[MK])HZ", r"-(?P<value>\d{1,3}(?:\.\d{1,6})?)(?P<scale>M)(?:HZ)?(?:-|$)")
+_CRYSTALS = (
+    r"(?P<value>\d{1,3}(?:\.\d{1,6})?)(?P<scale>[MK])HZ",
+    r"-(?P<value>\d{1,3}(?:\.\d{1,6})?)(?P<scale>M)(?:HZ)?(?:-|$)",
+)
 _LAWS = {  # letters of series names for a dielectric, as printed in makers' tables of part numbers (from memory)
     "law_last": {"G": "C0G", "R": "X7R", "P": "X5R", "U": "Z5U", "V": "Y5V"},
     "law_first": {"C": "C0G", "B": "X7R", "A": "X5R", "F": "Y5V", "X": "X6S", "Y": "X7S"},
-    "law_pair": {"5C": "C0G", "R7": "X7R", "R6": "X5R", "C7": "X7S", "C8": "X6S", "D7": "X7T", "F5": "Y5V", "7U": "U2J"},
+    "law_pair": {"5C": "C0G", "R7": "X7R", "R6": "X5R", "C7": "X7S", "C8": "X6S", "D7": "X7T",
+                 "F5": "Y5V", "7U": "U2J"},
     "law_rated": {"A": "C0G", "C": "X7R", "D": "X5R", "G": "Y5V"},
     "law_short": {"BJ": "X5R", "B7": "X7R", "CG": "C0G", "CH": "C0H"},
 }  # fmt: skip

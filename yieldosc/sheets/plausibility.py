@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections import defaultdict
+import re
+from collections import Counter, defaultdict
 from collections.abc import Iterable, Iterator
 
 from yieldosc.errors import Finding
@@ -35,14 +36,28 @@ def _of_row(group: list[BomLine]) -> Iterator[Finding]:
     text = line.given["value"].text if "value" in line.given else line.source_text
     low, high = _USUAL.get(line.kind, (0.0, float("inf")))
     if value != 0 and not low <= value <= high:
-        yield Finding("warning", "bom-implausible-value", f"{shown(text)} reads as {format_quantity(value, unit)}, which no "
-                      f"{line.kind} has; was another prefix meant?", line.place)  # fmt: skip
-    elif line.kind == "resistor" and 0 < value < 0.1 and text.rstrip("ΩRoOhms ").endswith(("m", "м")):
-        yield Finding("warning", "bom-implausible-value", f"{shown(text)} reads as {format_quantity(value, unit)}: m is milli; "
-                      "write M for megaohms", line.place)  # fmt: skip
+        yield Finding(
+            "warning",
+            "bom-implausible-value",
+            f"{shown(text)} reads as {format_quantity(value, unit)}, which no "
+            f"{line.kind} has; was another prefix meant?",
+            line.place,
+        )
+    elif line.kind == "resistor" and 0 < value < 0.1 and re.search(r"\d\s?[mм]$", text):
+        yield Finding(
+            "warning",
+            "bom-implausible-value",
+            f"{shown(text)} reads as {format_quantity(value, unit)}: m is milli; write M for megaohms",
+            line.place,
+        )
     elif line.kind == "capacitor" and value > _LARGEST_CLASS1_F and class1_code(line.temperature_law or "") is not None:
-        yield Finding("warning", "bom-implausible-value", f"{format_quantity(value, unit)} with {line.temperature_law}: so large "
-                      "a class 1 capacitor is rare; check value and dielectric", line.place)  # fmt: skip
+        yield Finding(
+            "warning",
+            "bom-implausible-value",
+            f"{format_quantity(value, unit)} with {line.temperature_law}: so large "
+            "a class 1 capacitor is rare; check value and dielectric",
+            line.place,
+        )
 
 
 def _load_capacitors(groups: list[list[BomLine]]) -> Iterator[Finding]:
@@ -54,10 +69,16 @@ def _load_capacitors(groups: list[list[BomLine]]) -> Iterator[Finding]:
         capacitors = [group for group in own if group[0].kind == "capacitor"]
         if any(_LOAD_F[0] <= (group[0].value or 0.0) <= _LOAD_F[1] for group in capacitors):
             continue
+        times = Counter(line.value for group in capacitors for line in group)
         for group in capacitors:
             value = group[0].value or 0.0
             words = group[0].source_text.casefold()
-            if _LOAD_F[0] <= value * 1e-3 <= _LOAD_F[1] and (len(group) == 2 or "load" in words or "crystal" in words):
-                yield Finding("warning", "bom-load-capacitor", f"{format_quantity(value, 'F')} would be a thousand times a usual "
-                              f"load capacitor of a crystal, and there is no other; was {format_quantity(value * 1e-3, 'F')} "
-                              "meant?", group[0].place)  # fmt: skip
+            if _LOAD_F[0] <= value * 1e-3 <= _LOAD_F[1] and (times[value] == 2 or "load" in words or "crystal" in words):
+                yield Finding(
+                    "warning",
+                    "bom-load-capacitor",
+                    f"{format_quantity(value, 'F')} would be a thousand times a usual "
+                    f"load capacitor of a crystal, and there is no other; was {format_quantity(value * 1e-3, 'F')} "
+                    "meant?",
+                    group[0].place,
+                )

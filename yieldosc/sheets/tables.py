@@ -91,7 +91,11 @@ def _joined(rows: tuple[tuple[Cell, ...], ...]) -> tuple[str, ...]:
 
 def _meaning(heading: str) -> Meaning | None:
     """Of a joined heading, or of its last or first words alone."""
-    return column_meaning(heading) or column_meaning(heading.split(" ")[-1]) or column_meaning(heading.split(" ")[0])
+    return (
+        column_meaning(heading)
+        or column_meaning(heading.rsplit(" ", maxsplit=1)[-1])
+        or column_meaning(heading.split(" ", maxsplit=1)[0])
+    )
 
 
 def _table(grid: Grid, start: int | None, first: int, last: int, headings: tuple[str, ...]) -> Table:

@@ -1,0 +1,162 @@
+"""Tolerance, temperature law, load, ESR and ppm of a part from the words of its row."""
+
+from __future__ import annotations
+
+import re
+
+from yieldosc.parts.codes import class2_code
+from yieldosc.parts.parameter import Given
+from yieldosc.quantities import QuantityError, parse_tolerance, shown
+from yieldosc.sheets.cells import Amount, percent_bounds
+from yieldosc.sheets.kinds import SI_UNIT
+from yieldosc.sheets.partfacts import PartFacts, Source
+
+
+def read_tolerance(part: PartFacts, sources: list[Source], ordered: list[Source]) -> None:
+    unit = SI_UNIT[part.kind]
+    for source in (s for s in sources if s.meaning == "tolerance" and not s.cell.blank):
+        if source.cell.kind == "percent" and source.cell.number is not None:
+            size = abs(source.cell.number)
+            part.tolerance, part.given["tolerance"] = (-size, size), Given(source.cell.text, source.place)
+            return
+        try:
+            part.tolerance = parse_tolerance(source.cell.text, nominal=part.value, si_unit=unit)
+            part.given["tolerance"] = Given(source.cell.text, source.place)
+            return
+        except QuantityError as error:
+            part.remark("warning", "bom-tolerance-unread", str(error), source)
+    for source in (s for s in ordered if s.meaning != "supplier_number"):
+        texts = [*source.facts.absolutes, *source.facts.percents]
+        if texts and _take_tolerance(part, source, texts, unit):
+            return
+    _tolerance_letter(part, ordered, unit)
+
+
+def _take_tolerance(part: PartFacts, source: Source, texts: list[str], unit: str) -> bool:
+    """True when the percentages of the cell settle the tolerance, or settle that it must be asked for."""
+    texts = _without_dielectric(part, source, texts)
+    bounds = []
+    for text in texts:
+        try:
+            found = parse_tolerance(text, nominal=part.value, si_unit=unit)
+        except QuantityError:
+            continue
+        if found not in bounds:
+            bounds.append(found)
+    if len(bounds) > 1:
+        part.remark(
+            "warning",
+            "bom-tolerance-ambiguous",
+            f"{' and '.join(map(shown, texts))} stand in one cell; which is the "
+            "tolerance? none was read: write it in a column Tolerance",
+            source,
+        )
+        return True
+    if bounds:
+        part.tolerance, part.given["tolerance"] = bounds[0], Given(texts[0], source.place)
+    return bool(bounds)
+
+
+def _without_dielectric(part: PartFacts, source: Source, texts: list[str]) -> list[str]:
+    """Percentages without the one that is the dielectric's own change over temperature."""
+    code = class2_code(source.facts.dielectric or "")
+    if code is None or part.kind != "capacitor":
+        return texts
+    own = [text for text in texts if percent_bounds(text) == (-code.change_high, code.change_high)]
+    rest = [text for text in texts if text not in own]
+    if own and not rest:
+        part.remark(
+            "warning",
+            "bom-dielectric-percent",
+            f"{shown(own[0])} is what {code.code} itself changes over temperature; "
+            "it was not read as the tolerance: write the tolerance in a column Tolerance",
+            source,
+        )
+    return rest
+
+
+def _tolerance_letter(part: PartFacts, ordered: list[Source], unit: str) -> None:
+    """A letter of IEC 60062 behind the value: "100n J", "4k7 F"."""
+    for source in (s for s in ordered if s.meaning == "value"):
+        match = re.fullmatch(r"\s*(\S*\d\S*(?:\s?[pnuμkM]?[FHΩ])?)[\s,/]+([BCDFGJKM])\s*", source.cell.text)
+        if match is not None and part.value:
+            part.tolerance = parse_tolerance(match[2], nominal=part.value, si_unit=unit)
+            part.given["tolerance"] = Given(match[2], source.place)
+
+
+def read_law(part: PartFacts, sources: list[Source], ordered: list[Source]) -> None:
+    """Dielectric code or ppm/K, from a column of its own or from any words."""
+    own = [s for s in sources if s.meaning == "law" and not s.cell.blank]
+    for source in own + [s for s in ordered if s.meaning not in ("part_number", "supplier_number")]:
+        facts, text = source.facts, None
+        if part.kind == "capacitor":
+            text = facts.dielectric or (facts.slopes[0] if facts.slopes else None)
+            if text is None and facts.ppms:
+                text = f"±{facts.ppms[0][1]:g} ppm/K"
+        elif part.kind in ("resistor", "inductor"):
+            text = facts.slopes[0] if facts.slopes else (f"±{facts.ppms[0][1]:g} ppm/K" if facts.ppms else None)
+        if text is None and source in own:
+            text = source.cell.text.strip()
+        if text is not None:
+            part.law, part.given["temperature_law"] = text, Given(text, source.place)
+            return
+
+
+_OVER = re.compile(r"range|over|temp|stab|vs")
+
+
+def read_crystal(part: PartFacts, sources: list[Source], ordered: list[Source]) -> None:
+    """Load, ESR, ppm at 25 °C and ppm over temperature, each kept apart."""
+    words = [s for s in ordered if s.meaning != "supplier_number"]
+    own = {m: [s for s in sources if s.meaning == m and not s.cell.blank] for m in ("load", "esr")}
+    loads: list[tuple[Source, Amount]] = [
+        (s, a) for s in own["load"] + words for a in s.facts.of("F") if 1e-12 <= a.value <= 1e-10
+    ]
+    for source, amount in loads[:1]:
+        part.load_f, part.given["load"] = amount.value, Given(amount.text, source.place)
+    resistances = [(s, a) for s in own["esr"] + words for a in s.facts.of("Ω") if a.value >= 1]
+    for source, amount in resistances[:1]:
+        part.esr_ohm, part.given["esr"] = amount.value, Given(amount.text, source.place)
+    for source in words:
+        if source.facts.ppms:
+            _crystal_ppm(part, source)
+            return
+
+
+def _crystal_ppm(part: PartFacts, source: Source) -> None:
+    at_room = [p for p in source.facts.ppms if not _OVER.search(p[2]) or "25" in p[2]]
+    over = [p for p in source.facts.ppms if p not in at_room]
+    if len(at_room) > 1 and not over:
+        over, at_room = at_room[1:], at_room[:1]
+        part.remark(
+            "warning",
+            "bom-crystal-ppm",
+            f"{shown(at_room[0][0])} was read as the tolerance at 25 °C and "
+            f"{shown(over[0][0])} as the limit over temperature; say which is which",
+            source,
+        )
+    if at_room and part.tolerance is None:
+        size = float(f"{at_room[0][1] * 1e-6:.12g}")
+        part.tolerance, part.given["tolerance"] = (-size, size), Given(at_room[0][0], source.place)
+    if not over:
+        return
+    if source.facts.range_c is None:
+        part.remark(
+            "warning",
+            "bom-crystal-range",
+            f"{shown(over[0][0])} holds over a temperature range that is not stated; "
+            "write the law in Roles, for example AT ±30 ppm -40..85 °C",
+            source,
+        )
+        return
+    low, high = source.facts.range_c
+    cut = "AT " if (part.value or 0) > 8e5 else ""
+    part.law = f"{cut}±{over[0][1]:g} ppm {low:g}..{high:g} °C"
+    part.given["temperature_law"] = Given(over[0][0], source.place)
+    if cut:
+        part.remark(
+            "note",
+            "bom-crystal-cut",
+            f"{part.law!r}: an AT cut is assumed; write another law in Roles where it is not",
+            source,
+        )
