@@ -9,9 +9,11 @@ import numpy as np
 import pytest
 from scipy import stats
 
+from yieldosc.parts.linear import Linear
 from yieldosc.parts.parameter import Parameter
 from yieldosc.parts.shapes import Uniform
-from yieldosc.population import Population, Streams, study_variables, uniforms, uniforms_at
+from yieldosc.population import Bench, Population, Streams, study_variables, uniforms, uniforms_at
+from yieldosc.solver.solution import Solution
 from yieldosc.study import Corner
 
 AT_25 = Corner(25.0, None, 0.0)
@@ -129,6 +131,26 @@ def test_conditions_and_supply_arrive_once_and_parts_per_unit():
     assert values["CL"] == 18e-12 and values["CL"].ndim == 0
     assert values["VCC"] == 3.3 and values["VCC"].ndim == 0
     assert values["R1"].shape == (10,)
+
+
+def test_a_law_of_the_users_own_on_a_stage_role_replaces_the_built_in_one():
+    def gm(law):
+        return resistor("gm", trait="gm", kind="ic", nominal=1e-3, low=1e-3, typical=1e-3, high=1e-3, law=law)
+
+    linear = Linear(-0.003, 0.0, "-0.3 %/K")
+    made = Population((gm(linear), resistor("R1", law=linear)), {}, None, frozenset({"gm", "fT"}))
+    assert made.own_law == frozenset({"gm"})
+    assert made.with_parameters((gm(None),)).own_law == frozenset()
+    seen = {}
+
+    class Recorder:
+        def solve(self, values, temperature_c, *, own_law=frozenset(), growth=False, audit=None):
+            seen.update(own_law=own_law, gm=float(values["gm"]), temperature_c=temperature_c)
+            ones = np.ones(3)
+            return Solution(frequency_hz=ones, startup_margin=ones, status=np.zeros(3, dtype=np.int8))
+
+    Bench(Recorder()).solve(made.block(Streams(1), 0, 3), Corner(75.0, None, 0.0))
+    assert seen == {"own_law": frozenset({"gm"}), "gm": pytest.approx(1e-3 * 0.85), "temperature_c": 75.0}
 
 
 def test_stream_names_are_stable():

@@ -57,6 +57,38 @@ def test_json_has_the_contracts_keys_and_nothing_that_json_cannot_write(make_stu
     assert document["lots"]["lots"] >= 1000
 
 
+def test_a_circuit_without_a_start_up_question_has_none(make_study, ideal_wien):
+    class Timer(ideal_wien):
+        def solve(self, values, temperature_c, **settings):
+            solution = super().solve(values, temperature_c, **settings)
+            nothing = np.full(solution.frequency_hz.shape, np.nan)
+            return replace(solution, startup_margin=nothing, status=np.zeros(nothing.shape, dtype=np.int8))
+
+    document = assessment_dict(quick(make_study(gain=1.5), Timer()))
+    json.dumps(document, allow_nan=False)
+    assert document["corners"][0]["startup"] is None
+    assert document["ranking"]["margin"] == [] and document["ranking"]["frequency"]
+    assert document["outcomes"]["no_start"] == document["outcomes"]["low_margin"] == 0
+    assert document["nominal"][0]["startup_margin"] is None
+
+
+def test_no_unit_with_a_gain_leaves_nulls_and_no_traceback(make_study, ideal_wien):
+    found = quick(make_study(gain=4.0, rf=0.01), ideal_wien(never_biased_above_rf=0.0))
+    document = assessment_dict(found)
+    json.dumps(document, allow_nan=False)
+    assert found.outcomes["no_bias"] == 8192
+    assert document["corners"][0]["frequency_hz"]["mean"] is None
+    assert document["corners"][0]["startup"]["failures"] == 8192
+    assert found.verdict == "does not meet"
+
+
+def test_nothing_that_differs_between_units_still_has_a_yield(make_study, ideal_wien):
+    found = quick(make_study(gain=4.0, r=0.0, c=0.0), ideal_wien())
+    assert found.outcomes["good"] == 8192
+    assert found.rankings == {} and found.tighter == ()
+    assert [r.name for r in found.rivals] == ["declared"]
+
+
 def test_what_is_not_finite_is_null():
     assert finite({"a": (float("nan"), 1.0), "b": [float("inf")], "c": "x", "d": 3}) == {
         "a": [None, 1.0], "b": [None], "c": "x", "d": 3,

@@ -37,6 +37,9 @@ class Box:
     def at(self, positions: Array) -> dict[str, Array]:
         """Values of n points; positions (d, n) in [0, 1] along `free`."""
         values = {role: np.asarray(low) for role, low in self.low.items()}
+        if not self.free:
+            first = next(iter(values))
+            values[first] = np.full(positions.shape[1], values[first])  # the solver reads n from the arrays
         for role, where in zip(self.free, positions, strict=True):
             # Written so that 0 and 1 give the bounds exactly.
             values[role] = self.low[role] * (1 - where) + self.high[role] * where
