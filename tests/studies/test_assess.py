@@ -10,6 +10,7 @@ import pytest
 
 from yieldosc.errors import Finding
 from yieldosc.parts.linear import Linear
+from yieldosc.parts.shapes import Split
 from yieldosc.solver.solution import Status
 from yieldosc.studies.assess import assess
 from yieldosc.studies.failure_share import failure_share
@@ -118,7 +119,7 @@ def test_doubtful_values_make_the_verdict_conditional(make_study, ideal_wien):
 
 
 def test_a_missing_bound_is_a_condition(make_study, ideal_wien):
-    finding = Finding("warning", "one-bound", "RF has no upper bound.")
+    finding = Finding("warning", "one-bound-only", "RF has no upper bound.")
     found = quick(replace(make_study(gain=4.0), findings=(finding,)), ideal_wien())
     assert found.conditions == ("if the missing bound is no worse than the one given: RF has no upper bound.",)
     assert found.findings[0] is finding
@@ -206,6 +207,15 @@ def test_a_reel_is_bought_whole(make_study, ideal_wien):
     # R ±1 % and C ±2 %, identical pairs: f = 1/(RC) stays within −2.94 … +3.07 %, 0.2 % of it outside ±3 %
     assert line.yield_.estimate > 0.99
     assert line.difference.low > 0.3
+
+
+def test_a_min_typ_max_value_is_no_grade(make_study, ideal_wien):
+    def data_sheet(p):
+        return replace(p, shape=Split()) if p.role == "C1" else p
+
+    found = quick(make_study(gain=4.0, change=data_sheet), ideal_wien())
+    assert "C1" in [line.part for line in found.rankings["frequency"].parts[:2]]
+    assert "C1" not in [t.part for t in found.tighter]
 
 
 def test_failure_share_finds_the_part_that_fails_units(make_study, ideal_wien):

@@ -14,7 +14,7 @@ from yieldosc.studies.yields import YieldRun
 from yieldosc.study import Study
 
 DOUBTFUL = ("assumed", "typical")
-ONE_BOUND = "one-bound"  # code of the reader's finding for a value with a single bound
+ONE_BOUND = "one-bound-only"  # code of the reader's finding for a value with a single bound
 
 
 def verdict(

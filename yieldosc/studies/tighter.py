@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from yieldosc.parts.grades import next_tighter, tolerance_text
 from yieldosc.parts.parameter import Parameter
+from yieldosc.parts.shapes import is_min_typ_max
 from yieldosc.studies.estimates import yield_estimate
 from yieldosc.studies.parallel import Workers
 from yieldosc.studies.progress import Meter
@@ -57,7 +58,8 @@ def _better(declared: Sequence[Parameter], part: str) -> dict[str, Parameter]:
     """Role → parameter of the next tighter grade, for a part or every part of a reel; empty where there is none."""
     found = {}
     for parameter in declared:
-        if part in (parameter.part, f"reel {parameter.reel}"):
+        # min/typ/max is what a data sheet knows of a value, not a grade that can be bought.
+        if part in (parameter.part, f"reel {parameter.reel}") and not is_min_typ_max(parameter.shape):
             better = next_tighter(parameter)
             if better is not None:
                 found[parameter.role] = better
