@@ -95,3 +95,33 @@ def test_units_agree(name, options, values, temperature_c):
     for row in range(1):
         unit = {k: float(x[row]) for k, x in drawn.items()}
         assert_agrees(solution, row, independent(name, options, unit, temperature_c))
+
+
+def _one_unit(name: str, number: int) -> tuple[dict[str, str], dict[str, float], Solution]:
+    options, values = list(CHOICES[name]())[number]
+    return options, values, solve(name, options, {k: np.array([v]) for k, v in values.items()}, values, 85.0)
+
+
+@pytest.mark.parametrize(
+    ("name", "number", "one", "two"),
+    [
+        ("wien_bridge", 0, "RF", "RG"),
+        ("colpitts", 5, "C1", "C2"),
+        ("pierce", 0, "C0", "C1"),
+        ("colpitts", 5, "RB1", "RB2"),
+    ],
+)
+def test_swapped_roles_do_not_agree(name, number, one, two):
+    """Negative control: the same comparison with two roles exchanged on one side must fail."""
+    options, values, solution = _one_unit(name, number)
+    assert_agrees(solution, 0, independent(name, options, values, 85.0))
+    with pytest.raises(AssertionError):
+        assert_agrees(solution, 0, independent(name, options, {**values, one: values[two], two: values[one]}, 85.0))
+
+
+@pytest.mark.parametrize(("name", "number"), [("colpitts", 5), ("pierce", 0)])
+def test_a_wrong_temperature_law_does_not_agree(name, number):
+    """Negative control: the independent side without its temperature laws must fail at 85 °C."""
+    options, values, solution = _one_unit(name, number)
+    with pytest.raises(AssertionError):
+        assert_agrees(solution, 0, independent(name, options, values, 25.0))
