@@ -15,7 +15,8 @@ import mpmath
 import numpy as np
 import scipy.linalg
 
-DIGITS = 80
+from tests.many_digits import DIGITS, all_roots, slope, times, trim, value
+
 mpf = mpmath.mpf
 GROUND = "gnd"
 POINTS = (0, 1, -1, 2, -2, 3, -3, 4, -4, 5, -5, 6, -6, 7, -7, 8, -8, 9, -9)
@@ -235,62 +236,6 @@ def _coefficients(pencil: _Pencil) -> list[mpf]:
     return poly
 
 
-def _value(poly: Sequence[mpf], x: object) -> object:
-    total = poly[-1]
-    for c in reversed(poly[:-1]):
-        total = total * x + c
-    return total
-
-
-def _slope(poly: Sequence[mpf]) -> list[mpf]:
-    return [k * c for k, c in enumerate(poly)][1:] or [mpf(0)]
-
-
-def _times(left: Sequence[mpf], right: Sequence[mpf]) -> list[mpf]:
-    out = [mpf(0)] * (len(left) + len(right) - 1)
-    for i, a in enumerate(left):
-        for j, b in enumerate(right):
-            out[i + j] += a * b
-    return out
-
-
-def _trim(poly: Sequence[mpf], size: mpf) -> list[mpf]:
-    """Without leading coefficients that are rounding residue of an interpolation of that size."""
-    out = list(poly)
-    while len(out) > 1 and abs(out[-1]) <= size * mpf(10) ** (-DIGITS + 22):
-        out.pop()
-    return out
-
-
-def _all_roots(poly: Sequence[mpf], starts: Sequence[complex] = ()) -> list:
-    """Every root with many digits: companion (or given) starting values, Newton, checked by the sum of all roots."""
-    degree = len(poly) - 1
-    if degree < 1:
-        return []
-    slope = _slope(poly)
-    if not len(starts):
-        scale = abs(poly[0] / poly[-1]) ** (mpf(1) / degree) if poly[0] != 0 else mpf(1)
-        plain = [complex(c * scale**k / (poly[-1] * scale**degree)) for k, c in enumerate(poly)]
-        starts = [complex(z) * float(scale) for z in np.roots(plain[::-1])]
-    found = []
-    for start in starts:
-        z = mpmath.mpc(start)
-        for _ in range(60):
-            steep = _value(slope, z)
-            if steep == 0:
-                break
-            step = _value(poly, z) / steep
-            z -= step
-            if abs(step) <= abs(z) * mpf(10) ** -40:
-                break
-        found.append(z)
-    total = mpmath.fsum(found)
-    wanted = -poly[-2] / poly[-1]
-    if abs(total - wanted) > mpf(10) ** -25 * (mpmath.fsum(abs(z) for z in found) + 1):
-        found = mpmath.polyroots(list(reversed(poly)), maxsteps=400, extraprec=600)
-    return list(found)
-
-
 @dataclass(frozen=True)
 class Crossing:
     omega: mpf
@@ -315,7 +260,7 @@ class Unit:
                 [c if abs(c) > floor else mpf(0) for c in p] for p in (a, [y - x for x, y in zip(a, both, strict=True)])
             ]
             lowest = next(k for k, pair in enumerate(zip(*clean, strict=True)) if any(pair))
-            self.a, self.b = (_trim(p[lowest:], mpf(0)) for p in clean)
+            self.a, self.b = (trim(p[lowest:], mpf(0)) for p in clean)
             self.crossings, self.x_roots = self._crossings()
             self.matrices: tuple[np.ndarray, np.ndarray, np.ndarray] | None = None
 
@@ -324,7 +269,7 @@ class Unit:
         g = self.g if gain is None else mpf(gain) * self.gain_unit
         size = max(len(self.a), len(self.b))
         total = [(self.a[k] if k < len(self.a) else 0) + g * (self.b[k] if k < len(self.b) else 0) for k in range(size)]
-        return _trim(total, mpf(0))
+        return trim(total, mpf(0))
 
     def _crossings(self) -> tuple[list[Crossing], list]:
         def split(p: Sequence[mpf]) -> tuple[list[mpf], list[mpf]]:
@@ -333,12 +278,12 @@ class Unit:
             return even, odd or [mpf(0)]
 
         (ae, ao), (be, bo) = split(self.a), split(self.b)
-        one, two = _times(ao, be), _times(ae, bo)
+        one, two = times(ao, be), times(ae, bo)
         size = max(len(one), len(two))
         f = [(one[k] if k < len(one) else mpf(0)) - (two[k] if k < len(two) else mpf(0)) for k in range(size)]
-        f = _trim(f, max(map(abs, [*one, *two])))
+        f = trim(f, max(map(abs, [*one, *two])))
         lowest = next((k for k, c in enumerate(f) if c != 0), 0)
-        roots = _all_roots(f[lowest:])
+        roots = all_roots(f[lowest:])
         out = []
         for x in roots:
             if abs(x.imag) < abs(x) * mpf(10) ** -30 and x.real > 0:
@@ -349,7 +294,7 @@ class Unit:
         return sorted(out, key=lambda c: abs(c.gain)), roots
 
     def _gain_at(self, s: object) -> object:
-        return -_value(self.a, s) / _value(self.b, s)
+        return -value(self.a, s) / value(self.b, s)
 
     def _enters(self, w: mpf, g: mpf) -> bool:
         """ds/d|g| at the crossing, from the polynomial itself."""
@@ -358,7 +303,7 @@ class Unit:
             (self.a[k] if k < len(self.a) else 0) + g * (self.b[k] if k < len(self.b) else 0)
             for k in range(max(len(self.a), len(self.b)))
         ]
-        speed = -_value(self.b, s) / _value(_slope(d), s)
+        speed = -value(self.b, s) / value(slope(d), s)
         return bool((speed * mpmath.sign(g)).real > 0)
 
     # -- poles ------------------------------------------------------------------------------------------------------
@@ -387,7 +332,7 @@ class Unit:
             found = self.eigenvalues(gain)
             nonzero = found[np.abs(found) > 1e-12]
             starts = nonzero if len(nonzero) == len(poly) - 1 else ()
-            return [z * self.w0 for z in _all_roots(poly, starts)]
+            return [z * self.w0 for z in all_roots(poly, starts)]
 
     def growing(self, gain: object = None) -> list:
         """Poles in the right half plane [1/s]."""
