@@ -1,0 +1,144 @@
+"""Sentences on what decides the yield: how units fail, where, and which parts move frequency and margin."""
+
+from __future__ import annotations
+
+from yieldosc.quantities import format_quantity
+from yieldosc.reports.amounts import listed, margin_text, share_text
+from yieldosc.reports.terminal import one_line
+from yieldosc.studies.digits import rate_text
+from yieldosc.studies.estimates import clopper_pearson
+from yieldosc.studies.results import Assessment, CornerResult, Lots, Ranking, RankLine
+
+SHOWS = {
+    "no_bias": "have no bias point",
+    "undefined": "cannot be solved",
+    "not_assessable": "lie outside the model's range",
+    "no_start": "do not start",
+    "wrong_mode": "start on another mode",
+    "low_margin": "start with too little margin",
+    "slow_start": "start too slowly",
+    "out_of_limits": "run outside the frequency limits",
+    "distorted": "distort too much",
+    "over_drive": "drive the crystal too hard",
+}
+NAMES = {"frequency": "Frequency", "margin": "Start-up margin"}
+MOST_NAMED = 4
+
+
+def how_units_fail(a: Assessment) -> str:
+    """The outcomes of the declared run, in words; zero failures are a bound."""
+    units = a.yield_.units or sum(a.outcomes.values())
+    failing = {name: n for name, n in a.outcomes.items() if n and name != "good"}
+    if not failing:
+        none = clopper_pearson(0, units, a.yield_.confidence)
+        return f"None of {units:,} simulated units failed: the failing share is {rate_text(none)}, not zero."
+    parts = [f"{n:,} {SHOWS[name]}" for name, n in sorted(failing.items(), key=lambda item: -item[1])]
+    return f"Of {units:,} simulated units {sum(failing.values()):,} fail: {listed(parts)}."
+
+
+def where_units_fail(a: Assessment) -> str:
+    """The corner that fails most units; empty where none fails or where there is one corner only."""
+    counted = [(sum(c.failing.values()), c) for c in a.corners]
+    most, corner = max(counted, key=lambda item: item[0])
+    if not most or len(a.corners) < 2:
+        return ""
+    units = a.yield_.units or most
+    rate = clopper_pearson(most, units, a.study.design.confidence)
+    return f"The corner that fails most units is {corner.corner.text}: {rate_text(rate)} of them fail there."
+
+
+def coldest_start(a: Assessment) -> str:
+    """Where the start-up margin is smallest; empty for a circuit without a start-up question."""
+    worst = worst_start(a)
+    if worst is None or worst.margin is None:
+        return ""
+    return f"The smallest start-up margin simulated is {margin_text(worst.margin.min)}, at {worst.corner.text}."
+
+
+def worst_start(a: Assessment) -> CornerResult | None:
+    """The corner of the smallest margin."""
+    asked = [c for c in a.corners if c.margin is not None]
+    return min(asked, key=lambda c: c.margin.min if c.margin is not None else float("inf")) if asked else None
+
+
+def leaders(ranking: Ranking) -> tuple[RankLine, ...]:
+    """The parts whose interval of the total index reaches the first one's: they share the lead."""
+    if not ranking.parts:
+        return ()
+    first = ranking.parts[0]
+    return tuple(line for line in ranking.parts if line.total.high >= first.total.low)
+
+
+def ranking_sentence(ranking: Ranking) -> str:
+    """Which parts lead for one output, or that they cannot be told apart, or why there is no ranking."""
+    name = NAMES[ranking.output]
+    if ranking.withheld:
+        return f"{name}: parts are not ranked, because {ranking.withheld}."
+    if not ranking.parts:
+        return f"{name}: no part moves it."
+    where = f"{name}, at {ranking.corner.text} where it varies most"
+    lead = leaders(ranking)
+    if len(lead) == 1:
+        first, rest = lead[0], ranking.parts[1:2]
+        then = f", then {one_line(rest[0].part)} with {share_text(rest[0].total)}" if rest else ""
+        return f"{where}: {one_line(first.part)} decides {share_text(first.total)} of the variance{then}."
+    named = [f"{one_line(line.part)} {share_text(line.total)}" for line in lead[:MOST_NAMED]]
+    more = len(lead) - MOST_NAMED
+    tail = f", and {more} more" if more > 0 else ""
+    return f"{where}: {listed(named)}{tail} of the variance; their intervals overlap, so this run does not order them."
+
+
+def failing_units_sentence(a: Assessment) -> str:
+    """Which part's draws stand out among failing units, and whether the variance ranking says the same."""
+    if not a.failure_share:
+        return ""
+    first = max(a.failure_share, key=lambda line: line.ks_distance)
+    side = "high" if first.mean_shift_sd > 0 else "low"
+    text = (
+        f"Among failing units {first.part} ({first.cause}) stands out: its draws lie "
+        f"{abs(first.mean_shift_sd):.2f} standard deviations on the {side} side of those of all units."
+    )
+    ranked = {line.part for r in a.rankings.values() for line in leaders(r)}
+    if ranked and first.part not in ranked:
+        text += " It does not lead the variance: what spreads the output most is not what fails units most."
+    return text
+
+
+def wrong_modes_sentence(a: Assessment) -> str:
+    """Where units run that start on another mode."""
+    if not a.wrong_modes_hz:
+        return ""
+    low, high = (format_quantity(f, "Hz", 4) for f in (min(a.wrong_modes_hz), max(a.wrong_modes_hz)))
+    where = f"at {low}" if low == high else f"between {low} and {high}"
+    return f"Units that start on another mode run {where}."
+
+
+def lots_sentence(a: Assessment) -> str:
+    """Yields of single lots where parts share reels."""
+    if a.lots is None:
+        return ""
+    lots, below = a.lots, a.lots.share_below_target
+    text = f"Of {lots.lots:,} simulated lots of {lots.units_per_lot:,} units {listed(_lot_points(lots))}."
+    if below is not None:
+        text += f" Share of lots that miss the target: {rate_text(below)}."
+    return text + " The interval of the yield describes the pooled rate, not a single lot."
+
+
+def _lot_points(lots: Lots) -> list[str]:
+    """The 5, 50 and 95 % points; a lot in which nothing failed is called that, not 100 %."""
+    if lots.q05 >= 1:
+        return ["at least 95 in 100 show no failing unit"]
+    made = [f"one in twenty yields {100 * lots.q05:.3g} % or less"]
+    if lots.q50 >= 1:
+        return [*made, "at least half show no failing unit"]
+    made.append(f"half yield {100 * lots.q50:.3g} % or less")
+    last = f"yields {100 * lots.q95:.3g} % or more" if lots.q95 < 1 else "shows no failing unit"
+    return [*made, f"one in twenty {last}"]
+
+
+def deciding(a: Assessment) -> tuple[str, ...]:
+    """All of them, in reading order."""
+    made = [how_units_fail(a), where_units_fail(a), coldest_start(a)]
+    made += [ranking_sentence(a.rankings[output]) for output in ("frequency", "margin") if output in a.rankings]
+    made += [wrong_modes_sentence(a), failing_units_sentence(a), lots_sentence(a)]
+    return tuple(text for text in made if text)
