@@ -18,6 +18,9 @@ from yieldosc.solver.sturm import positive_roots
 Array = NDArray[np.float64]
 
 
+WEAK = 1e-3  # d ln x / d ln symbol below which a symbol is left out of the prediction
+
+
 @dataclass(frozen=True, slots=True)
 class Tracked:
     """One pair crossing of the reference unit: x = ω² (scaled), direction, and d ln x / d ln symbol."""
@@ -50,6 +53,8 @@ class Reference:
         total: Array = np.zeros(1)
         with np.errstate(divide="ignore", invalid="ignore"):  # a capacitance may be 0 in some units
             for name, exponent in root.exponents.items():
+                if abs(exponent) < WEAK:
+                    continue  # Newton corrects what a weak symbol moves
                 total = total + exponent * np.log(symbols[name] / self.symbols[name])
         return np.exp(np.clip(total, -3, 3))
 

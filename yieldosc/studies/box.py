@@ -67,10 +67,12 @@ def box_at(population: Population, corner: Corner) -> Box:
 def search(box: Box, outputs: Outputs, *, seed_positions: Array | None = None) -> tuple[Array, Array, str]:
     """Lowest and highest (k,) of each output over the box, and how they were found.
 
-    Cost: 2^d evaluations while d ≤ 12, then coordinate search from the best points: 5·d per step.
+    Cost: 2^d evaluations while d ≤ 12, then coordinate search from the best points: 5·d per climber and step, all
+    climbers of all outputs in one call.
     """
     d = len(box.free)
-    if 2**d <= MOST_CORNERS:
+    every = 2**d <= MOST_CORNERS
+    if every:
         starts = np.array(list(product((0.0, 1.0), repeat=d)), dtype=float).T
         method = f"all {starts.shape[1]} corners of the box of {d} roles, refined by coordinate search"
     else:
@@ -80,29 +82,61 @@ def search(box: Box, outputs: Outputs, *, seed_positions: Array | None = None) -
     if seed_positions is not None:
         starts = np.concatenate([starts, seed_positions], axis=1)
     found = outputs(box.at(starts))
-    lows, highs = [], []
-    for k in range(len(found)):
-        lows.append(-_climb(box, outputs, starts, -found[k], k, -1.0))
-        highs.append(_climb(box, outputs, starts, found[k], k, 1.0))
+    goals = [(k, sign) for k in range(len(found)) for sign in (-1.0, 1.0)]
+    climbers = [Climber(k, sign, starts[:, i]) for k, sign in goals for i in _best(sign * found[k], 1 if every else 8)]
+    reached = _climb(box, outputs, climbers)
+    best = {goal: max(v for v, c in zip(reached, climbers, strict=True) if (c.output, c.sign) == goal) for goal in goals}
+    lows = [-best[k, -1.0] for k in range(len(found))]
+    highs = [best[k, 1.0] for k in range(len(found))]
     return np.array(lows), np.array(highs), method
 
 
-def _climb(box: Box, outputs: Outputs, starts: Array, values: Array, k: int, sign: float) -> float:
-    """The largest sign · output that coordinate search reaches from the best few starting points."""
-    finite = np.where(np.isnan(values), -np.inf, values)
-    best = -np.inf
-    few = 1 if 2 ** len(starts) <= MOST_CORNERS else 8
-    for start in np.argsort(-finite, kind="stable")[:few]:
-        point, value = starts[:, start].copy(), float(finite[start])
-        while len(point):
-            trial = np.repeat(point[:, None], len(point) * len(STEPS), axis=1)
-            for dimension in range(len(point)):
-                columns = slice(dimension * len(STEPS), (dimension + 1) * len(STEPS))
-                trial[dimension, columns] = STEPS
-            reached = sign * outputs(box.at(trial))[k]
-            top = int(np.nanargmax(reached)) if not np.isnan(reached).all() else 0
-            if not reached[top] > value:
-                break
-            point, value = trial[:, top].copy(), float(reached[top])
-        best = max(best, value)
-    return best
+@dataclass(frozen=True, slots=True)
+class Climber:
+    """Raises sign · output k from a starting point (d,)."""
+
+    output: int
+    sign: float
+    start: Array
+
+
+def _best(values: Array, count: int) -> NDArray[np.intp]:
+    """Columns of the largest values."""
+    return np.argsort(-np.where(np.isnan(values), -np.inf, values), kind="stable")[:count]
+
+
+def _climb(box: Box, outputs: Outputs, climbers: list[Climber]) -> Array:
+    """What each climber reaches (m,). A step moves every coordinate to its own best position; where that is no gain,
+    only the coordinate that gains most."""
+    points = np.stack([c.start for c in climbers], axis=1)
+    rows = np.array([c.output for c in climbers])
+    signs = np.array([c.sign for c in climbers])
+
+    def score(positions: Array, per: int) -> Array:
+        """(per, m) of positions (d, per · m), the climber running fastest."""
+        found = outputs(box.at(positions)).reshape(-1, per, len(climbers))
+        values = signs * found[rows, :, np.arange(len(climbers))].T
+        return np.where(np.isnan(values), -np.inf, values)
+
+    d, m = points.shape
+    values = score(points, 1)[0]
+    if not d:
+        return values
+    moving = np.ones(m, dtype=bool)
+    while moving.any():
+        trial = np.tile(points, (1, d * len(STEPS))).reshape(d, d, len(STEPS), m)
+        trial[np.arange(d), np.arange(d)] = np.array(STEPS)[:, None]
+        tried = score(trial.reshape(d, -1), d * len(STEPS)).reshape(d, len(STEPS), m)
+        place = np.argmax(tried, axis=1)  # (d, m): the best position of each coordinate alone
+        alone = np.take_along_axis(tried, place[:, None, :], axis=1)[:, 0, :]
+        single = points.copy()
+        lead = np.argmax(alone, axis=0)
+        single[lead, np.arange(m)] = np.array(STEPS)[place[lead, np.arange(m)]]
+        joint = np.where(alone > values, np.array(STEPS)[place], points)
+        together = score(joint, 1)[0]
+        better_joint = together >= alone.max(axis=0)
+        reached = np.where(better_joint, together, alone.max(axis=0))
+        moving = reached > values
+        points = np.where(moving, np.where(better_joint, joint, single), points)
+        values = np.where(moving, reached, values)
+    return values
