@@ -133,7 +133,7 @@ class ParameterMaker:
             kind=line.kind if line is not None else _kind(role), unit=role.unit,
             nominal=bounds.typical, low=bounds.low, typical=bounds.typical, high=bounds.high, shape=bounds.shape,
             law=law, solder=solder, drift=drift, ageing=ageing,
-            reel=None if line is None else reel_key(line), reel_share=share,
+            reel=None if line is None else _reel_name(line), reel_share=share,
             pedigree="assumed" if bounds.assumed else pedigree, given=given, note="" if note is None else note.written,
         )  # fmt: skip
 
@@ -254,3 +254,8 @@ _KINDS: dict[str, Kind] = {
 def _kind(role: Role) -> Kind:
     """The kind of a role without a BOM line."""
     return _KINDS.get(role.kind, "other")
+
+
+def _reel_name(line: BomLine) -> str:
+    """The reel's key as ranks print it: the part number, or what stands for one."""
+    return " ".join(reel_key(line).removeprefix("number ").removeprefix("part ").split())
