@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 from collections.abc import Sequence
 from importlib.metadata import version
-from typing import NoReturn
+from typing import NoReturn, TypeAlias
 
 from yieldosc.cli import commands
 from yieldosc.errors import refusal
@@ -43,7 +43,7 @@ def _parser() -> Parser:
     return parser
 
 
-Sub = argparse._SubParsersAction[Parser]
+Sub: TypeAlias = "argparse._SubParsersAction[Parser]"
 
 
 def _add(sub: Sub, name: str, summary: str, example: str) -> Parser:

@@ -15,7 +15,6 @@ from yieldosc.errors import Finding, InputError, refusal
 from yieldosc.quantities import QuantityError, parse_quantity
 from yieldosc.reports import console as pages
 from yieldosc.reports.progress import progress_bar
-from yieldosc.reports.workbook import write_workbook
 from yieldosc.sheets.bom import read_bom
 from yieldosc.sheets.draft import write_draft
 from yieldosc.sheets.opening import open_book
@@ -140,6 +139,8 @@ def assess(arguments: argparse.Namespace, streams: Streams) -> int:
     quiet = arguments.quiet or streams.silent and not sys.stderr.isatty()
     with progress_bar(quiet=quiet) as advance:
         result = run_assessment(study, units=units, seed=seed, workers=workers, progress=advance)
+    from yieldosc.reports.workbook import write_workbook
+
     content = assessment_dict(result)
     workbook = directory / f"{files.plain_name(study.name)}{files.WORKBOOK_SUFFIX}"
     files.write_through(workbook, lambda temporary: write_workbook(result, temporary))

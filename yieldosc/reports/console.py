@@ -12,6 +12,7 @@ from yieldosc.errors import Finding
 from yieldosc.reports.console_assessment import print_assessment
 from yieldosc.reports.console_check import print_check, print_study
 from yieldosc.reports.console_circuits import circuit_dict, print_circuit, print_circuits
+from yieldosc.reports.console_draft import print_draft
 from yieldosc.reports.console_unit import print_unit
 from yieldosc.reports.terminal import hanging, line, make_console
 
@@ -22,6 +23,7 @@ __all__ = [
     "print_check",
     "print_circuit",
     "print_circuits",
+    "print_draft",
     "print_findings",
     "print_study",
     "print_unit",
