@@ -2,7 +2,7 @@
 
 Read: ``4k7``, ``R47``, ``2R2``, ``4.7 kΩ``, ``0u1``, ``10uH``, ``2,2k``, ``100n``, ``4,7 мкФ``, ``32.768 kHz``,
 ``-40 °C``, ``99.5 %``, ``30 ppm``, ``10 years``. ``M`` is mega and ``m`` is milli; slips of case that leave one
-meaning (``10UF``, ``4K7``, ``12mhz``) are accepted. Letters of tolerances: IEC 60062, from memory.
+meaning (``10UF``, ``4K7``, ``12mhz``) are accepted.
 """
 
 from __future__ import annotations
@@ -246,8 +246,8 @@ def format_quantity(value: float, si_unit: str | None, digits: int = 4) -> str:
     return f"{mantissa} {_PRINTED[power]}{suffix}".strip()
 
 
-# Letter → low and high in percent (IEC 60062, tolerance letters; from memory). Absolute letters of capacitors
-# below 10 pF are in picofarads.
+# Letter → low and high in percent: IEC 60062:2016 by way of a calculator's table (seen); E, H, N and asymmetric ones
+# from memory. Below 10 pF some letters of capacitors are in picofarads (maker's table and an EIA list, both seen).
 TOLERANCE_LETTERS = {
     "E": (-0.005, 0.005), "L": (-0.01, 0.01), "P": (-0.02, 0.02), "W": (-0.05, 0.05), "B": (-0.1, 0.1),
     "C": (-0.25, 0.25), "D": (-0.5, 0.5), "F": (-1.0, 1.0), "G": (-2.0, 2.0), "H": (-3.0, 3.0), "J": (-5.0, 5.0),

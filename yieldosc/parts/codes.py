@@ -8,6 +8,8 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
+from yieldosc.quantities import SMALL_CAPACITOR_F, SMALL_CAPACITOR_LETTERS_PF, TOLERANCE_LETTERS
+
 PPM = 1e-6
 
 
@@ -24,31 +26,23 @@ class Tolerance:
         return (self.low / value, self.high / value) if self.absolute else (self.low, self.high)
 
 
-# IEC 60062:2016 by way of a calculator's table (seen); E, H and N from memory.
-_SYMMETRIC_PERCENT = {
-    "E": 0.005, "L": 0.01, "P": 0.02, "W": 0.05, "B": 0.1, "C": 0.25, "D": 0.5,
-    "F": 1.0, "G": 2.0, "H": 3.0, "J": 5.0, "K": 10.0, "M": 20.0, "N": 30.0,
-}  # fmt: skip
-# Capacitors below 10 pF: picofarads (maker's table and an EIA list, both seen).
-_SMALL_CAPACITOR_PF = {"B": 0.1, "C": 0.25, "D": 0.5, "F": 1.0, "G": 2.0}
-TEN_PICOFARAD = 10e-12
+TEN_PICOFARAD = SMALL_CAPACITOR_F
 
 
 def tolerance_letter(letter: str, capacitance_f: float | None = None) -> Tolerance | None:
-    """The tolerance that a letter stands for; None for a letter that stands for none.
+    """The tolerance that a letter of IEC 60062 stands for (table: `quantities`); None for any other letter.
 
-    capacitance_f: of a capacitor, whose B, C, D (F, G) mean picofarads below 10 pF; None for other parts.
+    capacitance_f: of a capacitor, whose B, C, D (F, G) mean picofarads below 10 pF; None for other parts, which know no
+    asymmetric letters.
     """
     key = letter.strip().upper()
-    if capacitance_f is not None:
-        if key == "Z":
-            return Tolerance(-0.2, 0.8)
-        if capacitance_f < TEN_PICOFARAD and key in _SMALL_CAPACITOR_PF:
-            return Tolerance(-_SMALL_CAPACITOR_PF[key] * 1e-12, _SMALL_CAPACITOR_PF[key] * 1e-12, absolute=True)
-    if key not in _SYMMETRIC_PERCENT:
+    if capacitance_f is not None and capacitance_f < TEN_PICOFARAD and key in SMALL_CAPACITOR_LETTERS_PF:
+        size = SMALL_CAPACITOR_LETTERS_PF[key] * 1e-12
+        return Tolerance(-size, size, absolute=True)
+    low, high = TOLERANCE_LETTERS.get(key, (0.0, 0.0))
+    if high == 0.0 or (capacitance_f is None and low != -high):
         return None
-    share = _SYMMETRIC_PERCENT[key] / 100
-    return Tolerance(-share, share)
+    return Tolerance(low / 100, high / 100)
 
 
 # EIA-198 class 1 as printed in a maker's catalogue (seen). Lists differ on the multiplier digits: "+1" is 5 there and 4

@@ -54,7 +54,7 @@ def read_bom(book: Book, sheet: str | None = None) -> BomReading:
 def reel_key(line: BomLine) -> str:
     """Parts of equal key come from one reel: equal part number, or without one equal kind, value, tolerance "
     "and law."""
-    if line.part_number and re.search(r"\w{3}", line.part_number):
+    if line.part_number and len(re.findall(r"\w", line.part_number)) > 2:
         return "number " + "".join(line.part_number.split()).upper()
     if line.value is None:
         return f"part {line.scope or ''} {line.designator}"

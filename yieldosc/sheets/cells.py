@@ -27,7 +27,9 @@ _RANGE_C = re.compile(
 )
 _SIDES = re.compile(rf"(?:\+\s?{_N}\s?%?\s?[/,]?\s?-\s?{_N}|-\s?{_N}\s?%?\s?[/,]?\s?\+\s?{_N})\s?%")
 _PERCENT = re.compile(rf"{_PLUS_MINUS}?\s?(?:{_N}\s?%|(?<![\d.,])%\s?{_N}(?![\d.,]*\s?%))")
-_PPM = re.compile(rf"{_PLUS_MINUS}?\s?(?P<size>{_N})\s?ppm(?!\s?/)(?=(?P<after>[^,;/]{{0,24}}))", re.IGNORECASE)
+_PPM = re.compile(
+    rf"{_PLUS_MINUS}?\s?(?P<size>{_N})\s?ppm(?!\s?/\s?(?:°|deg)?\s?[CK])(?=(?P<after>[^,;/]{{0,24}}))", re.IGNORECASE
+)
 _ABSOLUTE = re.compile(rf"(?:±|\+\s?/?\s?-)\s?{_N}\s?[pnuμ]F", re.IGNORECASE)
 _AT_FREQUENCY = re.compile(rf"@\s?{_N}\s?[kMG]?Hz", re.IGNORECASE)
 _URL = re.compile(r"(?:https?://|www\.)\S+", re.IGNORECASE)
@@ -35,10 +37,11 @@ _POWER_SHARE = re.compile(r"(?<!\d)\d{1,2}\s?/\s?\d{1,2}\s?W(?![A-Za-z])", re.IG
 _SIZE = re.compile(
     r"(?<![\w.,])(01005|0[2-9]\d\d|1008|1[28]\d\d|20[12]\d|2[25]\d\d|3216|3225|3528|5032|6032|7343)(?![\w.,]|\s?[A-Za-zΩμ%])"
 )
-_UNITS = r"(?:ohms?|Ω|Ом|ом|Ohms?|OHMS?|欧|Hz|HZ|hz|Гц|F|Ф|f|H|h|Гн|V|v|В|A|W|w|Вт)"
+_OHM = r"(?:ohms?|Ω|Ом|ом|Ohms?|OHMS?|欧)"
+_UNITS = rf"(?:{_OHM}|Hz|HZ|hz|Гц|F|Ф|f|H|h|Гн|V|v|В|A|W|w|Вт)"
 _PREFIX = r"(?:Meg|MEG|meg|мк|МК|[pnuμmkKMGUNPпнмкМКГ])"
 _WITH_UNIT = re.compile(
-    rf"(?<![A-Za-z\d.,-])(?P<text>(?:\d+\s?[kKMmunpμRr]\d+|{_N}\.?)\s?-?{_PREFIX}?\s?{_UNITS})(?:DC|AC)?(?![A-Za-zА-Яа-я])"
+    rf"(?<![A-Za-z\d.,-])(?P<text>\d+[kKMRr]\d+\s?{_OHM}|\d+[munpμ]\d+\s?[FH]|{_N}\.?\s?-?{_PREFIX}?\s?{_UNITS})(?:DC|AC)?(?![A-Za-zА-Яа-я])"
 )
 _GLUED = re.compile(rf"(?<![A-Za-z\d.,-])(?P<text>{_N}\s?{_PREFIX}?{_UNITS})(?=\d)")
 _BARE = re.compile(

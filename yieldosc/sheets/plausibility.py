@@ -73,7 +73,8 @@ def _load_capacitors(groups: list[list[BomLine]]) -> Iterator[Finding]:
         for group in capacitors:
             value = group[0].value or 0.0
             words = group[0].source_text.casefold()
-            if _LOAD_F[0] <= value * 1e-3 <= _LOAD_F[1] and (times[value] == 2 or "load" in words or "crystal" in words):
+            marked = times[value] == 2 or "load" in words or "crystal" in words
+            if marked and _LOAD_F[0] <= value * 1e-3 <= _LOAD_F[1]:
                 yield Finding(
                     "warning",
                     "bom-load-capacitor",

@@ -76,12 +76,23 @@ def _without_dielectric(part: PartFacts, source: Source, texts: list[str]) -> li
 
 
 def _tolerance_letter(part: PartFacts, ordered: list[Source], unit: str) -> None:
-    """A letter of IEC 60062 behind the value: "100n J", "4k7 F"."""
-    for source in (s for s in ordered if s.meaning == "value"):
-        match = re.fullmatch(r"\s*(\S*\d\S*(?:\s?[pnuμkM]?[FHΩ])?)[\s,/]+([BCDFGJKM])\s*", source.cell.text)
-        if match is not None and part.value:
-            part.tolerance = parse_tolerance(match[2], nominal=part.value, si_unit=unit)
-            part.given["tolerance"] = Given(match[2], source.place)
+    """A letter of IEC 60062 behind the value: "100nF J", "4k7 F", "22pF C0G J".
+
+    "10 K", "1 M" and "100n F" end in a prefix or in the unit: the letter counts only behind a value that has its own.
+    """
+    for source in (s for s in ordered if s.meaning == "value" and part.value):
+        match = re.fullmatch(
+            r"(?P<value>\d\S*(?:\s?[pnuμkM]?[FHΩ])?)(?P<more>.*)[\s,/](?P<letter>[BCDFGJKM])", source.cell.text.strip()
+        )
+        if match is None or not re.search(r"[^\W\d_]", match["value"]):
+            continue
+        letter = match["letter"]
+        if (letter in "BCD" and match["more"].strip(" ,/")) or (
+            letter == unit and letter not in match["value"].upper()
+        ):
+            continue
+        part.tolerance = parse_tolerance(letter, nominal=part.value, si_unit=unit)
+        part.given["tolerance"] = Given(letter, source.place)
 
 
 def read_law(part: PartFacts, sources: list[Source], ordered: list[Source]) -> None:
