@@ -19,7 +19,7 @@ from yieldosc.circuits.circuit import Circuit, Derived
 from yieldosc.circuits.network import Network, network
 from yieldosc.solver.crossings import Split, newton, real_crossings
 from yieldosc.solver.exact import Modes, modes
-from yieldosc.solver.growth import growth_rate
+from yieldosc.solver.growth import growth_rate, only_pair_growth
 from yieldosc.solver.polynomials import roots
 from yieldosc.solver.reference import Reference, make_reference
 from yieldosc.solver.routh import growing_poles
@@ -87,7 +87,7 @@ class NetworkEvaluator:
         chosen = doubt if audit is None else doubt | audit
         disagreeing = self._exact(block, part, design, values, reference, np.flatnonzero(chosen), doubt)
         if growth:
-            self._growth(block, part)
+            self._growth(block, part, doubt)
         audited = 0 if audit is None else int(np.count_nonzero(audit & ~doubt))
         solution = self._solution(block, part, derived, values, reference, n)
         return replace(solution, audited=audited, disagreeing=disagreeing, exact=int(np.count_nonzero(doubt)))
@@ -170,6 +170,9 @@ class NetworkEvaluator:
             size = np.abs(part.g)
             block.grows = (size > gains[ref.intended]) & (size < np.abs(block.upper))
             doubt |= self._other_growing(size, ref, gains)
+            if ref.far is not None:
+                # whose crossing this is was not settled by counting; it must not come near enough to limit the margin
+                doubt |= gains[ref.far] * gains[ref.intended] <= size * size
         block.status = np.where(block.grows, Status.STARTS, Status.NO_START).astype(np.int8)
         return block, doubt
 
@@ -250,11 +253,13 @@ class NetworkEvaluator:
         return status.astype(np.int8)
 
     @staticmethod
-    def _growth(block: _Block, part: Scaled) -> None:
-        rows = np.flatnonzero(block.grows)
-        if rows.size:
-            a, b, g = part.take(rows)
-            block.growth[rows], block.overdriven[rows] = growth_rate(a, b, block.omega[rows], block.lower[rows], g)
+    def _growth(block: _Block, part: Scaled, doubt: Mask) -> None:
+        """A unit without doubt has one growing pair only: its Routh count said so."""
+        for rows, rate in ((block.grows & ~doubt, only_pair_growth), (block.grows & doubt, growth_rate)):
+            at = np.flatnonzero(rows)
+            if at.size:
+                a, b, g = part.take(at)
+                block.growth[at], block.overdriven[at] = rate(a, b, block.omega[at], block.lower[at], g)
 
     def _solution(
         self, block: _Block, part: Scaled, derived: Derived, values: Mapping[str, Array], ref: Reference, n: int

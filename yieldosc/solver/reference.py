@@ -18,6 +18,7 @@ from yieldosc.solver.sturm import positive_roots
 Array = NDArray[np.float64]
 
 
+FAR = 4.0  # how far beyond limiting the margin an untold crossing of the reference must lie, as a ratio
 WEAK = 1e-3  # d ln x / d ln symbol below which a symbol is left out of the prediction
 
 
@@ -46,6 +47,7 @@ class Reference:
     leaves: int | None
     simple: bool
     idle: tuple[Tracked, ...] = ()
+    far: int | None = None  # the first crossing whose pair counting cannot tell, too far away to limit the margin
     order: tuple[int, ...] = ()
 
     def prediction(self, root: Tracked, symbols: Mapping[str, Array]) -> Array:
@@ -89,13 +91,15 @@ def make_reference(
         inside = np.abs(np.log(found.crossings.omega[0, pairs] / centre[0])) <= half[0]
     entering = np.flatnonzero(member & (direction == 1))
     leaving = np.flatnonzero(member & (direction == -1))
+    far = _first_uncountable(direction, member)
+    gains = np.abs(found.crossings.gain[0, pairs])
     simple = (
         np.count_nonzero(inside & (direction == 1)) == 1
         and entering.size == 1
         and bool(inside[entering[0]])
         and leaving.size <= 1
         and (leaving.size == 0 or leaving[0] > entering[0])
-        and _countable(direction, member)
+        and (far is None or (far > entering[0] and gains[far] * gains[entering[0]] > FAR * part.g[0] ** 2))
     )
     if not simple:
         return empty
@@ -108,7 +112,7 @@ def make_reference(
     leaves = int(leaving[0]) if leaving.size else None
     order = tuple(int(k) for k in np.argsort(every))
     idle = tuple(followed[len(x) :])
-    return Reference(scale, extended, float(design[0]), tracked, int(entering[0]), leaves, True, idle, order)
+    return Reference(scale, extended, float(design[0]), tracked, int(entering[0]), leaves, True, idle, far, order)
 
 
 def _positive_roots(split: Split, crossings: Array) -> tuple[Array, bool]:
@@ -119,15 +123,16 @@ def _positive_roots(split: Split, crossings: Array) -> tuple[Array, bool]:
     return every, bool(positive_roots(split.polynomial())[0] == len(every))
 
 
-def _countable(direction: NDArray[np.int64], member: NDArray[np.bool_]) -> bool:
-    """True when every leaving crossing happens with one pair in the right half plane: no pair can be mistaken."""
-    count = 0
-    for step in direction:
-        if step < 0 and count != 1:
-            return False
+def _first_uncountable(direction: NDArray[np.int64], member: NDArray[np.bool_]) -> int | None:
+    """The first crossing whose pair counting cannot tell; None where every leaving crossing happens with one pair in
+    the right half plane and nothing that left can be mistaken for what enters later."""
+    count, left = 0, False
+    for k, step in enumerate(direction):
+        if (step < 0 and count != 1) or (left and not member.all()):
+            return k
+        left = left or step < 0
         count += int(step)
-    # a pair that left could be taken for another that enters later, unless all crossings are the intended pair's
-    return bool(np.count_nonzero(direction < 0) <= 1 or member.all())
+    return None
 
 
 def _exponents(network: Network, scale: Scale, symbols: Mapping[str, Array], x: Array) -> list[dict[str, float]]:
