@@ -136,9 +136,14 @@ def _lot_points(lots: Lots) -> list[str]:
     return [*made, f"one in twenty {last}"]
 
 
+def leading(a: Assessment) -> tuple[str, ...]:
+    """The sentences on parts."""
+    return tuple(ranking_sentence(a.rankings[output]) for output in ("frequency", "margin") if output in a.rankings)
+
+
 def deciding(a: Assessment) -> tuple[str, ...]:
     """All of them, in reading order."""
     made = [how_units_fail(a), where_units_fail(a), coldest_start(a)]
-    made += [ranking_sentence(a.rankings[output]) for output in ("frequency", "margin") if output in a.rankings]
+    made += leading(a)
     made += [wrong_modes_sentence(a), failing_units_sentence(a), lots_sentence(a)]
     return tuple(text for text in made if text)

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from yieldosc.reports.advice import next_steps, open_points, pedigree_sentence
 from yieldosc.reports.amounts import bare_percent, range_text
 from yieldosc.reports.cautions import cautions
-from yieldosc.reports.deciding import deciding
+from yieldosc.reports.deciding import deciding, leading
 from yieldosc.reports.requirements import RequirementLine, percent, requirement_lines
 from yieldosc.studies.digits import percent_text
 from yieldosc.studies.results import Assessment
@@ -30,6 +30,7 @@ class Summary:
     range_note: str
     requirements: tuple[RequirementLine, ...]
     deciding: tuple[str, ...]
+    leading: tuple[str, ...]  # of `deciding`, the sentences on parts
     next_steps: tuple[str, ...]
     open_points: tuple[str, ...]
     pedigrees: str
@@ -50,6 +51,7 @@ def summarise(a: Assessment) -> Summary:
         range_note=range_note(a),
         requirements=requirement_lines(a),
         deciding=deciding(a),
+        leading=leading(a),
         next_steps=next_steps(a),
         open_points=open_points(a),
         pedigrees=pedigree_sentence(a),

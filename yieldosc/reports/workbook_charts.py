@@ -1,0 +1,97 @@
+"""Native charts: bars and lines over cells, with axis titles, nothing three-dimensional."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+from openpyxl.chart import BarChart, Reference, ScatterChart, Series
+from openpyxl.chart.shapes import GraphicalProperties
+from openpyxl.drawing.line import LineProperties
+from openpyxl.worksheet.worksheet import Worksheet
+
+BLUE, ORANGE, RED, GREY = "2F6F8F", "C77B30", "B23A3A", "8A99A3"
+
+
+def _plain(chart: BarChart | ScatterChart, title: str, x_title: str, y_title: str) -> None:
+    chart.title, chart.x_axis.title, chart.y_axis.title = title, x_title or None, y_title
+    for titled in (chart, chart.x_axis, chart.y_axis):
+        if titled.title is not None:
+            titled.title.overlay = False
+    chart.x_axis.delete = False
+    chart.y_axis.delete = False
+    chart.width, chart.height = 22, 10
+    chart.y_axis.majorGridlines.spPr = GraphicalProperties(ln=LineProperties(solidFill="DDE4E8"))
+
+
+def bars(
+    sheet: Worksheet, title: str, axis: str, *, names: Reference, values: Sequence[Reference], number_format: str
+) -> BarChart:
+    """Horizontal bars from 0, first row on top. values: columns whose first cell is the series' name."""
+    chart = BarChart()
+    chart.type, chart.style = "bar", 10
+    _plain(chart, title, "", axis)
+    for reference, colour in zip(values, (BLUE, GREY), strict=False):
+        chart.add_data(reference, titles_from_data=True)
+        chart.series[-1].graphicalProperties = GraphicalProperties(solidFill=colour)
+    chart.set_categories(names)
+    chart.x_axis.scaling.orientation = "maxMin"  # the first row on top …
+    chart.y_axis.crosses = "max"  # … and the axis of values still at the bottom
+    chart.y_axis.scaling.min = 0
+    chart.y_axis.number_format, chart.y_axis.numFmt.sourceLinked = number_format, False
+    chart.gapWidth = 40
+    chart.legend.position = "b"
+    if len(values) == 1:
+        chart.legend = None
+    return chart
+
+
+def lines(title: str, x_title: str, y_title: str) -> ScatterChart:
+    """An empty chart of numbers over numbers; `add_line` fills it."""
+    chart = ScatterChart()
+    chart.style, chart.scatterStyle = 13, "lineMarker"
+    _plain(chart, title, x_title, y_title)
+    chart.x_axis.majorGridlines = None
+    chart.x_axis.tickLblPos = "low"
+    chart.y_axis.tickLblPos = "low"
+    chart.legend.position = "b"
+    return chart
+
+
+def add_line(
+    chart: ScatterChart,
+    name: str,
+    x: Reference,
+    y: Reference,
+    colour: str,
+    *,
+    dashed: bool = False,
+    marks: bool = False,
+) -> None:
+    """One line through (x, y)."""
+    series = Series(y, x, title=name)
+    properties = LineProperties(solidFill=colour, w=19050)
+    if dashed:
+        properties.prstDash = "dash"
+    series.graphicalProperties = GraphicalProperties(ln=properties)
+    series.marker.symbol = "circle" if marks else "none"
+    if marks:
+        series.marker.size = 5
+        series.marker.graphicalProperties = GraphicalProperties(solidFill=colour)
+    series.smooth = False
+    chart.series.append(series)
+
+
+def span(chart: ScatterChart, x: Sequence[float], y: Sequence[float]) -> None:
+    """Axes that hold the data with a little room, at round numbers."""
+    chart.x_axis.scaling.min, chart.x_axis.scaling.max, chart.x_axis.majorUnit = rounded_axis(min(x), max(x))
+    chart.y_axis.scaling.min, chart.y_axis.scaling.max, chart.y_axis.majorUnit = rounded_axis(min(y), max(y))
+
+
+def rounded_axis(low: float, high: float) -> tuple[float, float, float]:
+    """Ends and step of an axis: 4 to 10 steps of 1, 2 or 5 times a power of ten."""
+
+    extent = (high - low) or abs(high) or 1.0
+    power = 10.0 ** math.floor(math.log10(extent / 4))
+    step = next(power * m for m in (1, 2, 5, 10) if extent / (power * m) <= 8)
+    return math.floor(low / step) * step, math.ceil(high / step) * step, step

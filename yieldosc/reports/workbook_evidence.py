@@ -1,0 +1,149 @@
+"""Evidence sheets: extremes, sets of assumptions, better grades and lots, worst units."""
+
+from __future__ import annotations
+
+from openpyxl import Workbook
+from openpyxl.chart import Reference
+
+from yieldosc.quantities import format_quantity
+from yieldosc.reports.amounts import Deviation, bare_percent
+from yieldosc.reports.deciding import lots_sentence
+from yieldosc.reports.findings import Summary
+from yieldosc.reports.scales import decimals_of, scaled_unit, with_unit
+from yieldosc.reports.terminal import one_line
+from yieldosc.reports.workbook_charts import bars
+from yieldosc.reports.workbook_page import Page, Value
+from yieldosc.studies.results import Assessment, Band, Estimate
+
+POINTS = '+0.000" points";−0.000" points";0.000" points"'
+PERCENT = "0.0000%"
+
+
+def extremes(book: Workbook, a: Assessment) -> None:
+    """Three bands per output and temperature."""
+    scale = Deviation.of(a.study.design)
+    page = Page.new(
+        book, "Extremes", "Three bands: extreme value, root-sum-square, simulated",
+        f"Frequency as deviation from {format_quantity(scale.target_hz, 'Hz', 9)} in {scale.unit}. Only extreme value "
+        "is a bound, and only where every shape is bounded.",
+    )  # fmt: skip
+    headings = ("Temperature", "Extreme, low", "Extreme, high", "Root-sum-square, low", "Root-sum-square, high",
+                "Simulated, low", "Simulated, high", "Method and remarks")  # fmt: skip
+    deviation = with_unit(scale.decimals, scale.unit, signed=True)
+    for output, title, number_format in (
+        ("frequency_hz", "Frequency", deviation), ("startup_margin", "Start-up margin", "0.000"),
+    ):  # fmt: skip
+        chosen = [band for band in a.bands if band.output == output]
+        if not chosen:
+            continue
+        page.text(title, size=12, bold=True)
+        rows = [_band_row(band, scale) for band in chosen]
+        page.table(headings, rows, ('0.##" °C"', *(number_format,) * 6, None))
+    page.finish()
+
+
+def _band_row(band: Band, scale: Deviation) -> list[Value]:
+    def pair(bounds: tuple[float, float] | None) -> list[Value]:
+        if bounds is None:
+            return ["open", "open"]
+        return [scale.value(v) for v in bounds] if band.output == "frequency_hz" else list(bounds)
+
+    remark = f"{band.method}. {band.note}" if band.note else band.method
+    return [band.temperature_c, *pair(band.extreme), *pair(band.rss), *pair(band.monte_carlo), remark]
+
+
+def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
+    """Every set tried, lowest first behind the declared one, with a chart of failing units."""
+    page = Page.new(
+        book, "Assumptions", "The same units under other assumptions",
+        f"{summary.range_label}: {summary.range_value}; {summary.range_note}.",
+    )  # fmt: skip
+    first_set, *others = a.rivals or (None,)
+    if first_set is None:
+        page.text("No set was tried.")
+        return
+    ordered = [first_set, *sorted((r for r in others if r is not None), key=lambda r: r.yield_.estimate)]
+    rows: list[list[Value]] = [
+        [
+            r.name,
+            bare_percent(r.yield_),
+            r.yield_.low,
+            r.yield_.high,
+            r.yield_.failures,
+            *_points(r.difference),
+            r.meaning,
+        ]
+        for r in ordered
+    ]
+    headings = ("Set", "Yield", "Low", "High", "Units failing", "Change", "Change, low", "Change, high", "Meaning")
+    top = page.row
+    first, last = page.table(headings, rows, (None, None, PERCENT, PERCENT, "#,##0", *(POINTS,) * 3, None))
+    target, sheet = a.study.design.yield_target, page.sheet
+    allows = "" if target is None else f"; the target allows {(1 - target) * a.rival_units:,.0f}"
+    chart = bars(
+        sheet, f"Units failing of {a.rival_units:,}{allows}", "units failing",
+        names=Reference(sheet, min_col=1, min_row=first, max_row=last),
+        values=[Reference(sheet, min_col=5, min_row=top, max_row=last)], number_format="#,##0",
+    )  # fmt: skip
+    chart.width, chart.height = 26, max(7.0, 3 + 0.8 * len(rows))
+    sheet.add_chart(chart, f"A{page.row}")
+    page.finish()
+
+
+def _points(difference: Estimate | None) -> list[Value]:
+    if difference is None:
+        return ["", "", ""]
+    return [100 * difference.estimate, 100 * difference.low, 100 * difference.high]
+
+
+def better_grades(book: Workbook, a: Assessment) -> None:
+    """The next tighter grade of each leading part; lots where reels are shared; the looks."""
+    page = Page.new(
+        book, "Better grades", "What the next tighter grade of one part does", "The same draws as the declared set.",
+    )  # fmt: skip
+    rows: list[list[Value]] = [
+        [one_line(t.part), t.from_tolerance, t.to_tolerance, bare_percent(t.yield_), t.yield_.low, t.yield_.high,
+         *_points(t.difference)]
+        for t in a.tighter
+    ]  # fmt: skip
+    headings = ("Part", "From", "To", "Yield", "Low", "High", "Change", "Change, low", "Change, high")
+    if rows:
+        page.table(headings, rows, (None, None, None, None, PERCENT, PERCENT, *(POINTS,) * 3))
+    else:
+        page.text("No leading part has a tighter grade.")
+    if a.lots is not None:
+        page.text("Lots whose units share their reels", size=12, bold=True)
+        page.text(lots_sentence(a))
+        page.row += 1
+    page.text(f"Looks at the joint yield: {len(a.looks)} of {a.looks_planned} planned", size=12, bold=True)
+    looks: list[list[Value]] = [[k.number, k.units, k.failures, k.low, k.high] for k in a.looks]
+    page.table(("Look", "Units", "Failing", "Yield, low", "Yield, high"), looks,
+               (None, "#,##0", "#,##0", PERCENT, PERCENT), freeze=False)  # fmt: skip
+    page.finish()
+
+
+def worst_units(book: Workbook, a: Assessment) -> None:
+    """Simulated boards that fail, or nearly do, with every part value at 25 °C, new."""
+    scale = Deviation.of(a.study.design)
+    page = Page.new(
+        book, "Worst units", "Single simulated boards: the worst of each kind of failure, and those nearest to a limit",
+        "Part values at 25 °C, new; frequency and margin at the corner named, in deviation from the target.",
+    )  # fmt: skip
+    scales = [(p, *scaled_unit(p.typical, p.unit)) for p in a.study.parameters]
+    headings = [
+        "Unit",
+        "Outcome",
+        "Corner",
+        "Frequency",
+        "Margin",
+        *(f"{p.role} [{u}]" if u else p.role for p, _, u in scales),
+    ]
+    deviation = with_unit(scale.decimals + 1, scale.unit, signed=True)
+    formats = ["0", None, None, deviation, "0.0000", *(with_unit(decimals_of(p.typical * k), "") for p, k, _ in scales)]
+    rows: list[list[Value]] = [
+        [u.number, u.outcome.replace("_", " "), u.corner.text, scale.value(u.frequency_hz), u.startup_margin,
+         *(u.values[p.role] * k if p.role in u.values else None for p, k, _ in scales)]
+        for u in a.worst_units
+    ]  # fmt: skip
+    page.table(headings, rows, formats)
+    page.finish()
