@@ -104,6 +104,7 @@ def test_notations(text: str, value: float | None, si_unit: str | None) -> None:
         ("", "F", 'the cell is empty; write for example "10 nF"'),
         ("12,500", None, '"12,500" can be read with a decimal comma or with a thousands comma; write 12.500 or 12500'),
         ("1e999", None, '"1e999" is not a quantity; write for example "4.7 kΩ"'),
+        ("1e99999999", None, '"1e99999999" is not a quantity; write for example "4.7 kΩ"'),
         ("nan", None, '"nan" is not a quantity; write for example "4.7 kΩ"'),
         ("x" * 60, None, f'"{"x" * 39}…" is not a quantity; write for example "4.7 kΩ"'),
         ("a\x1b[31m", None, '"a [31m" is not a quantity; write for example "4.7 kΩ"'),

@@ -11,7 +11,7 @@ import math
 import re
 import unicodedata
 from dataclasses import dataclass
-from decimal import Decimal, InvalidOperation
+from decimal import Decimal, DecimalException
 
 
 class QuantityError(ValueError):
@@ -111,7 +111,7 @@ def parse_quantity(text: str, si_unit: str | None = None, *, decimal_comma: bool
         raise QuantityError(f"{shown(text)} is in {_named(unit)}, expected {_named(si_unit)}: {_example(si_unit)}")
     try:
         value = float(number.scaleb(power))
-    except (InvalidOperation, OverflowError):
+    except (DecimalException, OverflowError):
         raise _unreadable(text, si_unit) from None
     if not math.isfinite(value):
         raise _unreadable(text, si_unit)
@@ -195,7 +195,7 @@ def _number(text: str, whole: str, decimal_comma: bool) -> Decimal | None:
         mantissa = mantissa.replace(",", ".")
     try:
         return Decimal(mantissa + (f"e{exponent}" if exponent else ""))
-    except InvalidOperation:
+    except DecimalException:
         return None
 
 

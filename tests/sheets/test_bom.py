@@ -1,6 +1,7 @@
 """BOM tables in every kind of mess that was counted in real ones; every table here is invented."""
 
 import re
+import time
 
 import pytest
 from hypothesis import given, settings
@@ -8,19 +9,13 @@ from hypothesis import strategies as st
 
 from tests.sheets.made_books import book, grid, only, read, texts
 from yieldosc.errors import InputError
-from yieldosc.sheets.bom import BomReading, read_bom, reel_key
+from yieldosc.sheets.bom import read_bom, reel_key
 from yieldosc.sheets.bomline import BomLine
 from yieldosc.sheets.grid import EMPTY, Cell, Grid
 
 
 def one(value: str, description: str = "", designator: str = "R1") -> BomLine:
     return only(read("Reference|Value|Description", f"{designator}|{value}|{description}"))
-
-
-def texts(reading: BomReading, *without: str) -> list[str]:
-    """All findings as "LEVEL CODE PLACE: TEXT", except the closing note on tolerances and those named."""
-    skipped = ("bom-tolerance-missing", *without)
-    return [f"{f.level} {f.code} {f.place}: {f.text}" for f in reading.findings if f.code not in skipped]
 
 
 @pytest.mark.parametrize(
@@ -304,3 +299,12 @@ def test_random_cells_never_give_a_traceback(rows: list[list[str]]) -> None:
         return
     assert all(line.value is None or line.value >= 0 or line.value < 0 for line in reading.lines)
     assert all("\x1b" not in finding.text for finding in reading.findings)
+
+
+@pytest.mark.parametrize(
+    "text", ["9" * 9000, "a" * 9000, "0402" * 2000, "R1-" * 3000, "± 5" * 3000, "-5%/+" * 1800, "C[1," * 2000]
+)
+def test_long_cells_take_no_long_time(text: str) -> None:
+    start = time.monotonic()
+    read("Ref|Value|Description|MPN|Qty|Tolerance", "|".join([text] * 6), "R1|1k||||")
+    assert time.monotonic() - start < 3.0

@@ -1,4 +1,4 @@
-"""What the reader of BOMs asks: contradictions, slips, what is missing. Whole texts of the findings; invented tables."""
+"""What the reader of BOMs asks: contradictions, slips, what is missing. Whole texts of findings; invented tables."""
 
 import pytest
 

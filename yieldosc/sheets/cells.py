@@ -32,6 +32,7 @@ _PPM = re.compile(
 )
 _ABSOLUTE = re.compile(rf"(?:±|\+\s?/?\s?-)\s?{_N}\s?[pnuμ]F", re.IGNORECASE)
 _AT_FREQUENCY = re.compile(rf"@\s?{_N}\s?[kMG]?Hz", re.IGNORECASE)
+_ENDLESS = re.compile(r"\d{20,}")  # no number of a BOM; would make the patterns below slow
 _URL = re.compile(r"(?:https?://|www\.)\S+", re.IGNORECASE)
 _POWER_SHARE = re.compile(r"(?<!\d)\d{1,2}\s?/\s?\d{1,2}\s?W(?![A-Za-z])", re.IGNORECASE)
 _SIZE = re.compile(
@@ -92,7 +93,8 @@ class _Text:
 
 def read_facts(text: str) -> Facts:
     """Every fact of a cell's text."""
-    facts, rest = Facts(), _Text(normal(_URL.sub(" ", text).replace("_", " "))[:2000])
+    plain = _ENDLESS.sub("…", _URL.sub(" ", text[:2000]).replace("_", " "))
+    facts, rest = Facts(), _Text(normal(plain))
     rest.take(_AT_FREQUENCY)
     for match in rest.take(_PER_KELVIN):
         sign = match["sign"] or "±"

@@ -50,7 +50,7 @@ def _sets_opened(text: str) -> str:
         prefix, parts = match[1], re.split(r"[,;\s]+", match[2].strip())
         return ",".join(prefix + re.sub(r"-", f"-{prefix}", part) for part in parts if part)
 
-    return re.sub(r"([A-Za-z]+)\[([\d,;\s-]+)\]", opened, text)
+    return re.sub(r"(?<![A-Za-z])([A-Za-z]{1,8})\[([\d,;\s-]{1,400})\]", opened, text)
 
 
 class _Reader:

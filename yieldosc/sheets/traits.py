@@ -80,7 +80,7 @@ def _tolerance_letter(part: PartFacts, ordered: list[Source], unit: str) -> None
 
     "10 K", "1 M" and "100n F" end in a prefix or in the unit: the letter counts only behind a value that has its own.
     """
-    for source in (s for s in ordered if s.meaning == "value" and part.value):
+    for source in (s for s in ordered if s.meaning == "value" and part.value and len(s.cell.text) < 100):
         match = re.fullmatch(
             r"(?P<value>\d\S*(?:\s?[pnuμkM]?[FHΩ])?)(?P<more>.*)[\s,/](?P<letter>[BCDFGJKM])", source.cell.text.strip()
         )
