@@ -34,12 +34,13 @@ def tighter(
     workers: Workers | None = None,
     meter: Meter | None = None,
 ) -> tuple[Tighter, ...]:
-    """One line per part or reel that has a tighter grade, in the order of `parts`. declared_good (n,): units 0 … n − 1.
+    """One line per purchase that has a tighter grade, in the order of `parts`. declared_good (n,): units 0 … n − 1.
 
-    A reel is bought whole: all its parts get the better grade.
+    What is bought as one (a reel, a row of the BOM) is bought whole: all its parts get the better grade.
     """
     declared = setup.population.parameters
-    steps = [(part, better) for part in parts if (better := _better(declared, part))]
+    purchases = {frozenset(better): better for part in parts if (better := _better(declared, part))}
+    steps = [(_names(declared, better), better) for better in purchases.values()]
     sets = [tuple(better.get(p.role, p) for p in declared) for _, better in steps]
     flags = good_units(setup, sets, len(declared_good), workers=workers, meter=meter) if sets else []
     return tuple(
@@ -55,12 +56,18 @@ def tighter(
 
 
 def _better(declared: Sequence[Parameter], part: str) -> dict[str, Parameter]:
-    """Role → parameter of the next tighter grade, for a part or every part of a reel; empty where there is none."""
+    """Role → parameter of the next tighter grade, for every part that is bought together with `part`."""
+    reels = {p.reel for p in declared if p.reel is not None and part in (p.part, f"reel {p.reel}")}
     found = {}
     for parameter in declared:
         # min/typ/max is what a data sheet knows of a value, not a grade that can be bought.
-        if part in (parameter.part, f"reel {parameter.reel}") and not is_min_typ_max(parameter.shape):
+        if (parameter.part == part or parameter.reel in reels) and not is_min_typ_max(parameter.shape):
             better = next_tighter(parameter)
             if better is not None:
                 found[parameter.role] = better
     return found
+
+
+def _names(declared: Sequence[Parameter], better: Mapping[str, Parameter]) -> str:
+    """The designators of one purchase."""
+    return ", ".join(dict.fromkeys(p.part for p in declared if p.role in better))
