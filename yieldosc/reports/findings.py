@@ -40,7 +40,7 @@ class Summary:
 def summarise(a: Assessment) -> Summary:
     """All sentences on an assessment."""
     return Summary(
-        verdict=a.verdict.upper(),
+        verdict=verdict_words(a),
         headline=headline(a),
         conditions=tuple(f"On condition: {condition}." for condition in a.conditions),
         yield_label="Yield, declared set",
@@ -57,6 +57,12 @@ def summarise(a: Assessment) -> Summary:
         pedigrees=pedigree_sentence(a),
         cautions=cautions(a),
     )
+
+
+def verdict_words(a: Assessment) -> str:
+    """The verdict in capitals, with what hangs on conditions called so."""
+    conditional = a.verdict == "meets" and a.conditions
+    return f"{a.verdict.upper()}, ON CONDITIONS" if conditional else a.verdict.upper()
 
 
 def headline(a: Assessment) -> str:
@@ -87,10 +93,12 @@ def _looks(a: Assessment) -> str:
 def yield_note(a: Assessment) -> str:
     """Confidence, units, and which look of how many."""
     units, failures = a.yield_.units or 0, a.yield_.failures or 0
-    together = "" if a.looks_planned == 1 else ", all planned looks together"
+    counted = f"{failures:,} of {units:,} units fail"
+    if a.looks_planned == 1:
+        return f"{percent(a.study.design.confidence)} confidence; {counted}; one look"
     return (
-        f"{percent(a.study.design.confidence)} confidence{together}; {failures:,} of {units:,} units fail; "
-        f"decided at look {len(a.looks)} of {a.looks_planned}"
+        f"{percent(a.study.design.confidence)} confidence for all {a.looks_planned} planned looks together; {counted}; "
+        f"look {len(a.looks)} of {a.looks_planned}"
     )
 
 

@@ -24,8 +24,8 @@ def _circuit(a: Assessment) -> tuple[Row, ...]:
         ),
         (
             "Frequency",
-            "The crossing: the frequency at which a real gain puts a pair of roots of D on the imaginary axis, followed "
-            "per unit from the closed form.",
+            "The crossing: the frequency at which a real gain puts a pair of roots of D on the imaginary axis, "
+            "followed per unit from the closed form.",
             "Barkhausen condition on D(jω) = 0",
         ),
         (
@@ -108,8 +108,8 @@ def _evidence(a: Assessment) -> tuple[Row, ...]:
         ),
         (
             "Digits",
-            "Two significant digits of the interval's half-width, bounds rounded outward, more where rounding would tie "
-            "with the target; the verdict uses unrounded values.",
+            "Two significant digits of the interval's half-width, bounds rounded outward, more where rounding would "
+            "tie with the target; the verdict uses unrounded values.",
             "JCGM 101 for the principle",
         ),
     )

@@ -1,4 +1,4 @@
-"""Numbers for cells: a factor and an SI unit with prefix that suit a value, so that a column reads "10.02" under "nF"."""
+"""Numbers for cells: a factor and a prefixed SI unit that suit a value, so that a column reads "10.02" under "nF"."""
 
 from __future__ import annotations
 

@@ -6,6 +6,8 @@ import math
 from collections.abc import Sequence
 
 from openpyxl.chart import BarChart, Reference, ScatterChart, Series
+from openpyxl.chart.axis import ChartLines, NumericAxis
+from openpyxl.chart.legend import Legend
 from openpyxl.chart.shapes import GraphicalProperties
 from openpyxl.drawing.line import LineProperties
 from openpyxl.worksheet.worksheet import Worksheet
@@ -18,10 +20,13 @@ def _plain(chart: BarChart | ScatterChart, title: str, x_title: str, y_title: st
     for titled in (chart, chart.x_axis, chart.y_axis):
         if titled.title is not None:
             titled.title.overlay = False
-    chart.x_axis.delete = False
-    chart.y_axis.delete = False
-    chart.width, chart.height = 22, 10
-    chart.y_axis.majorGridlines.spPr = GraphicalProperties(ln=LineProperties(solidFill="DDE4E8"))
+    for axis in (chart.x_axis, chart.y_axis):
+        axis.delete = False
+        axis.crosses = "min"  # axes along the edges, not through 0
+        axis.tickLblPos = "low"
+    chart.width, chart.height = 24, 10
+    chart.y_axis.majorGridlines = ChartLines(spPr=GraphicalProperties(ln=LineProperties(solidFill="DDE4E8")))
+    chart.legend = Legend(legendPos="b")
 
 
 def bars(
@@ -36,11 +41,10 @@ def bars(
         chart.series[-1].graphicalProperties = GraphicalProperties(solidFill=colour)
     chart.set_categories(names)
     chart.x_axis.scaling.orientation = "maxMin"  # the first row on top …
-    chart.y_axis.crosses = "max"  # … and the axis of values still at the bottom
+    chart.y_axis.crosses, chart.y_axis.tickLblPos = "max", "nextTo"  # … and its values still at the bottom
     chart.y_axis.scaling.min = 0
     chart.y_axis.number_format, chart.y_axis.numFmt.sourceLinked = number_format, False
     chart.gapWidth = 40
-    chart.legend.position = "b"
     if len(values) == 1:
         chart.legend = None
     return chart
@@ -52,9 +56,9 @@ def lines(title: str, x_title: str, y_title: str) -> ScatterChart:
     chart.style, chart.scatterStyle = 13, "lineMarker"
     _plain(chart, title, x_title, y_title)
     chart.x_axis.majorGridlines = None
-    chart.x_axis.tickLblPos = "low"
-    chart.y_axis.tickLblPos = "low"
-    chart.legend.position = "b"
+    for axis in (chart.x_axis, chart.y_axis):
+        axis.number_format = "General"
+        axis.numFmt.sourceLinked = False  # the cells' own formats carry SI units, the titles say them once
     return chart
 
 
@@ -84,6 +88,7 @@ def add_line(
 
 def span(chart: ScatterChart, x: Sequence[float], y: Sequence[float]) -> None:
     """Axes that hold the data with a little room, at round numbers."""
+    assert isinstance(chart.x_axis, NumericAxis) and isinstance(chart.y_axis, NumericAxis)
     chart.x_axis.scaling.min, chart.x_axis.scaling.max, chart.x_axis.majorUnit = rounded_axis(min(x), max(x))
     chart.y_axis.scaling.min, chart.y_axis.scaling.max, chart.y_axis.majorUnit = rounded_axis(min(y), max(y))
 

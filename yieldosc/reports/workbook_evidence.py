@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 from openpyxl import Workbook
 from openpyxl.chart import Reference
 
@@ -12,7 +14,7 @@ from yieldosc.reports.findings import Summary
 from yieldosc.reports.scales import decimals_of, scaled_unit, with_unit
 from yieldosc.reports.terminal import one_line
 from yieldosc.reports.workbook_charts import bars
-from yieldosc.reports.workbook_page import Page, Value
+from yieldosc.reports.workbook_page import ROW_CM, Page, Value
 from yieldosc.studies.results import Assessment, Band, Estimate
 
 POINTS = '+0.000" points";−0.000" points";0.000" points"'
@@ -28,7 +30,7 @@ def extremes(book: Workbook, a: Assessment) -> None:
         "is a bound, and only where every shape is bounded.",
     )  # fmt: skip
     headings = ("Temperature", "Extreme, low", "Extreme, high", "Root-sum-square, low", "Root-sum-square, high",
-                "Simulated, low", "Simulated, high", "Method and remarks")  # fmt: skip
+                "Simulated, low", "Simulated, high", "Remark")  # fmt: skip
     deviation = with_unit(scale.decimals, scale.unit, signed=True)
     for output, title, number_format in (
         ("frequency_hz", "Frequency", deviation), ("startup_margin", "Start-up margin", "0.000"),
@@ -37,6 +39,8 @@ def extremes(book: Workbook, a: Assessment) -> None:
         if not chosen:
             continue
         page.text(title, size=12, bold=True)
+        for method in dict.fromkeys(band.method for band in chosen):
+            page.sentence(f"Extreme: {method}.")
         rows = [_band_row(band, scale) for band in chosen]
         page.table(headings, rows, ('0.##" °C"', *(number_format,) * 6, None))
     page.finish()
@@ -48,8 +52,7 @@ def _band_row(band: Band, scale: Deviation) -> list[Value]:
             return ["open", "open"]
         return [scale.value(v) for v in bounds] if band.output == "frequency_hz" else list(bounds)
 
-    remark = f"{band.method}. {band.note}" if band.note else band.method
-    return [band.temperature_c, *pair(band.extreme), *pair(band.rss), *pair(band.monte_carlo), remark]
+    return [band.temperature_c, *pair(band.extreme), *pair(band.rss), *pair(band.monte_carlo), band.note]
 
 
 def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
@@ -67,8 +70,7 @@ def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
         [
             r.name,
             bare_percent(r.yield_),
-            r.yield_.low,
-            r.yield_.high,
+            *_bounds(r.yield_),
             r.yield_.failures,
             *_points(r.difference),
             r.meaning,
@@ -78,6 +80,10 @@ def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
     headings = ("Set", "Yield", "Low", "High", "Units failing", "Change", "Change, low", "Change, high", "Meaning")
     top = page.row
     first, last = page.table(headings, rows, (None, None, PERCENT, PERCENT, "#,##0", *(POINTS,) * 3, None))
+    if not any(r.yield_.failures for r in ordered):
+        page.text("No unit failed in any set.")
+        page.finish()
+        return
     target, sheet = a.study.design.yield_target, page.sheet
     allows = "" if target is None else f"; the target allows {(1 - target) * a.rival_units:,.0f}"
     chart = bars(
@@ -85,9 +91,16 @@ def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
         names=Reference(sheet, min_col=1, min_row=first, max_row=last),
         values=[Reference(sheet, min_col=5, min_row=top, max_row=last)], number_format="#,##0",
     )  # fmt: skip
-    chart.width, chart.height = 26, max(7.0, 3 + 0.8 * len(rows))
+    chart.width, chart.height = page.width_cm, round(max(7.0, 3.5 + 0.8 * len(rows)))
     sheet.add_chart(chart, f"A{page.row}")
+    page.row += math.ceil(chart.height / ROW_CM)
     page.finish()
+
+
+def _bounds(yield_: Estimate) -> list[Value]:
+    """Low and high; where no unit failed the high end is called that, never 100 %, and the low end likewise."""
+    low: Value = "none good" if yield_.failures is not None and yield_.failures == yield_.units else yield_.low
+    return [low, "none failed" if yield_.failures == 0 else yield_.high]
 
 
 def _points(difference: Estimate | None) -> list[Value]:
@@ -102,7 +115,7 @@ def better_grades(book: Workbook, a: Assessment) -> None:
         book, "Better grades", "What the next tighter grade of one part does", "The same draws as the declared set.",
     )  # fmt: skip
     rows: list[list[Value]] = [
-        [one_line(t.part), t.from_tolerance, t.to_tolerance, bare_percent(t.yield_), t.yield_.low, t.yield_.high,
+        [one_line(t.part), t.from_tolerance, t.to_tolerance, bare_percent(t.yield_), *_bounds(t.yield_),
          *_points(t.difference)]
         for t in a.tighter
     ]  # fmt: skip
@@ -113,10 +126,12 @@ def better_grades(book: Workbook, a: Assessment) -> None:
         page.text("No leading part has a tighter grade.")
     if a.lots is not None:
         page.text("Lots whose units share their reels", size=12, bold=True)
-        page.text(lots_sentence(a))
+        page.sentence(lots_sentence(a))
         page.row += 1
     page.text(f"Looks at the joint yield: {len(a.looks)} of {a.looks_planned} planned", size=12, bold=True)
-    looks: list[list[Value]] = [[k.number, k.units, k.failures, k.low, k.high] for k in a.looks]
+    looks: list[list[Value]] = [
+        [k.number, k.units, k.failures, k.low, "none failed" if k.failures == 0 else k.high] for k in a.looks
+    ]
     page.table(("Look", "Units", "Failing", "Yield, low", "Yield, high"), looks,
                (None, "#,##0", "#,##0", PERCENT, PERCENT), freeze=False)  # fmt: skip
     page.finish()

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 from openpyxl import Workbook
 from openpyxl.styles import Alignment
+from openpyxl.utils import get_column_letter
 
 from yieldosc.parts.parameter import Parameter
 from yieldosc.quantities import format_quantity
 from yieldosc.reports.advice import pedigree_sentence
 from yieldosc.reports.console_check import bounds_text
 from yieldosc.reports.method import method_rows
-from yieldosc.reports.workbook_page import Page, Value, head, print_set_up, put
+from yieldosc.reports.workbook_page import Page, Value, at, head, print_set_up, put
 from yieldosc.sheets.bomline import BomLine
 from yieldosc.sheets.write_study import study_sheets
 from yieldosc.studies.results import Assessment
@@ -22,34 +23,34 @@ def inputs_used(book: Workbook, a: Assessment) -> None:
     """Roles with every cause of spread, conditions, then the items of the design."""
     page = Page.new(book, "Inputs used", "Inputs exactly as used, with their source", pedigree_sentence(a))
     headings = ("Role", "Part", "Least", "Typical", "Most", "Shape", "Temperature law", "Solder", "Drift over life",
-                "Reel", "Reel share", "Source", "As written, and where", "Note")  # fmt: skip
+                "Reel", "Reel share", "Source", "Note")  # fmt: skip
     rows = [_role_row(p) for p in a.study.parameters]
     rows += [_condition_row(a, role, value) for role, value in a.study.conditions.items()]
-    page.table(headings, rows, (None,) * 10 + ("0.##", None, None, None))
-    page.text("Design", size=12, bold=True)
-    items: list[list[Value]] = [
-        [name.replace("_", " "), given.text, given.place] for name, given in a.study.design_given.items()
-    ]
-    page.table(("Item", "As written", "Cell"), items, (None, None, None), freeze=False)
+    page.table(headings, rows, (None,) * 10 + ("0.##", None, None))
+    page.text("As written, and where", size=12, bold=True)
+    written = [(f"design: {name.replace('_', ' ')}", "", given) for name, given in a.study.design_given.items()]
+    written += [(p.role, name.replace("_", " "), given) for p in a.study.parameters for name, given in p.given.items()]
+    items: list[list[Value]] = [[of, what, given.text, given.place] for of, what, given in written]
+    page.table(("Of", "What", "As written", "Cell"), items, (None,) * 4, freeze=False)
     page.finish()
 
 
 def _role_row(p: Parameter) -> list[Value]:
-    written = "; ".join(f"{name.replace('_', ' ')} “{given.text}” {given.place}" for name, given in p.given.items())
     drift = bounds_text(p.drift) if p.drift != (0.0, 0.0) else ""
     if p.ageing is not None:
         drift = f"{drift} −{p.ageing.per_decade * 100:g} % per decade from {p.ageing.reference_h:g} h".strip()
     return [
         p.role, "" if p.part == p.role else p.part, _quantity(p.low, p.unit), _quantity(p.typical, p.unit),
         _quantity(p.high, p.unit), p.shape.text, "" if p.law is None else p.law.text,
-        bounds_text(p.solder) if p.solder != (0.0, 0.0) else "", drift, p.reel or "", p.reel_share, p.pedigree, written,
+        bounds_text(p.solder) if p.solder != (0.0, 0.0) else "", drift, p.reel or "", p.reel_share, p.pedigree,
         p.note,
     ]  # fmt: skip
 
 
 def _condition_row(a: Assessment, role: str, value: float) -> list[Value]:
     shown = _quantity(value, a.study.circuit.role(role).unit)
-    return [role, "", "", shown, "", "condition", *[""] * 4, None, "", "", "an operating condition, without spread"]
+    note = "an operating condition, without spread"
+    return [role, "", "", shown, "", "condition", "", "", "", "", None, "", note]
 
 
 def _quantity(value: float, si_unit: str) -> str:
@@ -68,7 +69,8 @@ def import_findings(book: Workbook, a: Assessment) -> None:
     if lines:
         page.text("BOM lines as understood", size=12, bold=True)
         page.table(
-            ("Part", "Kind", "Row as written", "Place", "Value", "Tolerance", "Temperature law", "Fitted", "From part number"),
+            ("Part", "Kind", "Row as written", "Place", "Value", "Tolerance", "Temperature law", "Fitted",
+             "From part number"),
             [_line_row(line) for line in lines], (None,) * 9, freeze=False,
         )  # fmt: skip
     page.finish()
@@ -104,8 +106,9 @@ def provenance(book: Workbook, a: Assessment) -> None:
         ["Units", f"{a.yield_.units or 0:,}"], ["Units of each set of assumptions", f"{a.rival_units:,}"],
         ["Unit-corners audited by the exact path", f"{p.audited:,}"], ["of these disagreeing", f"{p.disagreeing:,}"],
         ["Unit-corners solved by the exact path", f"{p.exact:,}"],
-        *([f"Version of {name}", version] for name, version in p.versions.items()),
+
     ]  # fmt: skip
+    rows += [[f"Version of {name}", version] for name, version in p.versions.items()]
     page.table(("What", "Value"), rows, (None, None))
     page.finish()
 
@@ -119,13 +122,13 @@ def contract_sheets(book: Workbook, a: Assessment) -> None:
             for c, text in enumerate(row, start=1):
                 if not text:
                     continue
-                cell = put(sheet.cell(r, c), text)
+                cell = put(at(sheet, r, c), text)
                 cell.alignment = Alignment(vertical="top", wrap_text=True)
                 widths[c] = max(widths.get(c, 8), min(len(text) + 2, 48))
                 if r == 1:
                     head(cell)
         for c, width in widths.items():
-            sheet.column_dimensions[sheet.cell(1, c).column_letter].width = width
+            sheet.column_dimensions[get_column_letter(c)].width = width
         sheet.freeze_panes = "A2"
         sheet.print_title_rows = "1:1"
         print_set_up(sheet, landscape=True)

@@ -3,25 +3,28 @@
 from __future__ import annotations
 
 import math
+from itertools import pairwise, zip_longest
 
 from openpyxl import Workbook
 from openpyxl.chart import Reference
 
 from yieldosc.quantities import format_quantity
-from yieldosc.reports.amounts import Deviation, upper_text
+from yieldosc.reports.amounts import Deviation, per_percent_text, upper_text
 from yieldosc.reports.findings import Summary
 from yieldosc.reports.scales import with_unit
 from yieldosc.reports.temperatures import caption, limited_frequency, temperature_lines
 from yieldosc.reports.terminal import one_line
 from yieldosc.reports.workbook_charts import BLUE, GREY, ORANGE, RED, add_line, bars, lines, span
-from yieldosc.reports.workbook_page import Page, Value
+from yieldosc.reports.workbook_page import ROW_CM, Page, Value
 from yieldosc.studies.digits import percent_text
 from yieldosc.studies.results import Assessment, CornerResult, Distribution, Ranking, RankLine
 
 SHARE = "0.0%"
-CHART_COLUMN = "K"
+FIRST_ROWS = 12
 OUTLINE_COLUMN = 24  # where a chart's own numbers stand, beyond the printed area
 MOST_BARS = 12
+CHART_ROWS = 22
+SPREAD_ROWS = 26
 
 
 def leading_parts(book: Workbook, a: Assessment, summary: Summary) -> None:
@@ -29,14 +32,17 @@ def leading_parts(book: Workbook, a: Assessment, summary: Summary) -> None:
     page = Page.new(
         book, "Leading parts", "Which parts decide frequency and start-up margin",
         "Shares of variance (Sobol indices); total includes interactions. Intervals from 16 scramblings.",
+        landscape=False,
     )  # fmt: skip
     for sentence in summary.leading:
-        page.text(sentence)
+        page.sentence(sentence)
     page.row += 1
     for output, name in (("frequency", "frequency"), ("margin", "start-up margin")):
         ranking = a.rankings.get(output)
         if ranking is None or not ranking.parts:
             continue
+        if page.row > FIRST_ROWS:
+            page.break_here()
         page.text(f"Variance of the {name} at {ranking.corner.text}", size=12, bold=True)
         _ranking(page, ranking, name)
     _failure_share(page, a)
@@ -46,7 +52,7 @@ def leading_parts(book: Workbook, a: Assessment, summary: Summary) -> None:
 def _ranking(page: Page, ranking: Ranking, name: str) -> None:
     headings = ("Part", "Total", "Total, low", "Total, high", "First order", "Low", "High", "Mean total over corners",
                 "Change of output per +1 %")  # fmt: skip
-    formats = (None, *(SHARE,) * 7, with_unit(3, "%", signed=True))
+    formats = (None, *(SHARE,) * 7, None)
     top = page.row
     first, last = page.table(headings, [_index_row(line) for line in ranking.parts], formats)
     end = min(last, first + MOST_BARS - 1)
@@ -54,12 +60,13 @@ def _ranking(page: Page, ranking: Ranking, name: str) -> None:
     chart = bars(
         sheet, f"Parts that move the {name}", "share of variance",
         names=Reference(sheet, min_col=1, min_row=first, max_row=end),
-        values=[Reference(sheet, min_col=2, min_row=top, max_row=end), Reference(sheet, min_col=5, min_row=top, max_row=end)],
+        values=[Reference(sheet, min_col=column, min_row=top, max_row=end) for column in (2, 5)],
         number_format="0%",
     )  # fmt: skip
-    chart.height = max(6.0, 2.6 + 0.85 * (end - first + 1))
-    sheet.add_chart(chart, f"{CHART_COLUMN}{top}")
-    page.row = max(page.row, top + math.ceil(chart.height / 0.51) + 1)
+    chart.height = round(max(6.5, 3.2 + 0.8 * (end - first + 1)))
+    chart.width = page.width_cm
+    sheet.add_chart(chart, f"A{page.row}")
+    page.row += math.ceil(chart.height / ROW_CM) + 1
     if ranking.causes:
         page.text("Causes inside the leading parts", bold=True)
         page.table(headings, [_index_row(line) for line in ranking.causes], formats, freeze=False)
@@ -68,7 +75,8 @@ def _ranking(page: Page, ranking: Ranking, name: str) -> None:
 def _index_row(line: RankLine) -> list[Value]:
     return [
         one_line(line.part), line.total.estimate, line.total.low, line.total.high,
-        line.first_order.estimate, line.first_order.low, line.first_order.high, line.mean_total.estimate, line.per_percent,
+        line.first_order.estimate, line.first_order.low, line.first_order.high, line.mean_total.estimate,
+        "" if line.per_percent is None else per_percent_text(line.per_percent),
     ]  # fmt: skip
 
 
@@ -91,6 +99,7 @@ def temperatures(book: Workbook, a: Assessment) -> None:
     page = Page.new(
         book, "Temperatures", "Start-up, frequency and margin over temperature",
         f"Frequency as deviation from {target} in {scale.unit}; {caption(a)}.",
+        landscape=False,
     )  # fmt: skip
     deviation = with_unit(scale.decimals, scale.unit, signed=True)
     rows: list[list[Value]] = [
@@ -102,14 +111,15 @@ def temperatures(book: Workbook, a: Assessment) -> None:
         for t in temperature_lines(a)
     ]  # fmt: skip
     headings = ("Temperature", "Units that do not start", "At most", "Frequency, 0.1 % quantile", "Frequency, median",
-                "Frequency, 99.9 % quantile", "Margin, smallest", "Margin, 0.1 % quantile", "Good at this temperature")  # fmt: skip
+                "Frequency, 99.9 % quantile", "Margin, smallest", "Margin, 0.1 % quantile", "Good here")  # fmt: skip
     formats = ('0.##" °C"', "#,##0", None, *(deviation,) * 3, "0.000", "0.000", None)
     first, last = page.table(headings, rows, formats)
     page.row += 1
     _frequency_chart(page, a, first, last)
     if any(t.margin_min is not None for t in temperature_lines(a)):
         _margin_chart(page, a, first, last)
-    page.row += 22
+    page.row += 2 * CHART_ROWS
+    page.break_here()
     _every_corner(page, a, scale)
     page.finish()
 
@@ -127,6 +137,7 @@ def _frequency_chart(page: Page, a: Assessment, first: int, last: int) -> None:
         add_line(chart, name, *at, RED, dashed=True)
     values = [scale.value(f) for t in rows for f in (t.frequency_q001_hz, t.frequency_q999_hz)]
     span(chart, ends, [*(v for v in values if math.isfinite(v)), *limits])
+    chart.width = page.width_cm
     sheet.add_chart(chart, f"A{page.row}")
 
 
@@ -142,7 +153,8 @@ def _margin_chart(page: Page, a: Assessment, first: int, last: int) -> None:
     add_line(chart, "least margin", *at, RED, dashed=True)
     margins = [m for t in rows for m in (t.margin_min, t.margin_q001) if m is not None]
     span(chart, ends, [*margins, least])
-    sheet.add_chart(chart, f"F{page.row}")
+    chart.width = page.width_cm
+    sheet.add_chart(chart, f"A{page.row + CHART_ROWS}")
 
 
 def _every_corner(page: Page, a: Assessment, scale: Deviation) -> None:
@@ -167,36 +179,42 @@ def frequency_spread(book: Workbook, a: Assessment) -> None:
     page = Page.new(
         book, "Frequency spread", "How the frequency is spread, with its limits",
         f"Deviation from {format_quantity(scale.target_hz, 'Hz', 9)} in {scale.unit}; units in bars of equal width.",
+        landscape=False,
     )  # fmt: skip
-    chosen = _two_corners(a)
+    chosen = [c for c in _two_corners(a) if limited_frequency(c).counts]
     chart = lines("Frequency of the simulated units", f"deviation from target [{scale.unit}]", "units per bar")
-    chart.width, chart.height = 26, 12
-    sheet, spans, top = page.sheet, [], 1
-    deviation = with_unit(scale.decimals + 1, scale.unit, signed=True)
-    start = page.row
-    page.row += 25
+    start, spans, top = page.row, [0.0], 1
+    page.row += SPREAD_ROWS
     for i, (corner, colour) in enumerate(zip(chosen, (BLUE, ORANGE), strict=False)):
         d = limited_frequency(corner)
-        if not d.counts:
-            continue
-        points = _steps(d, scale)
-        at = _outline(page, OUTLINE_COLUMN + 4 * i, start, points, corner.corner.text)
+        at = _outline(page, OUTLINE_COLUMN + 4 * i, start, _steps(d, scale), corner.corner.text)
         add_line(chart, corner.corner.text, *at, colour)
         spans += [scale.value(d.edges[0]), scale.value(d.edges[-1])]
         top = max(top, *d.counts)
-        page.text(f"Bars at {corner.corner.text}", bold=True)
-        bars_ = [
-            [scale.value(low), scale.value(high), n]
-            for low, high, n in zip(d.edges, d.edges[1:], d.counts, strict=False)
-        ]
-        page.table(("From", "To", "Units"), bars_, (deviation, deviation, "#,##0"), freeze=False)
     limits = [scale.value(a.study.design.frequency_low_hz), scale.value(a.study.design.frequency_high_hz)]
     for i, (limit, name) in enumerate(zip(limits, ("lower limit", "upper limit"), strict=True)):
         at = _outline(page, OUTLINE_COLUMN + 8 + 4 * i, start, [(limit, 0.0), (limit, float(top))], name)
         add_line(chart, name, *at, RED, dashed=True)
     span(chart, [*spans, *limits], [0.0, float(top)])
-    sheet.add_chart(chart, f"A{start}")
+    _bars_table(page, chosen, scale)
+    chart.width, chart.height = page.width_cm, 12
+    page.sheet.add_chart(chart, f"A{start}")
     page.finish()
+
+
+def _bars_table(page: Page, chosen: list[CornerResult], scale: Deviation) -> None:
+    """The bars of each corner side by side."""
+    columns = [_bars_of(limited_frequency(c), scale) for c in chosen]
+    rows = [[value for cells in row for value in cells] for row in zip_longest(*columns, fillvalue=(None, None, None))]
+    headings = [f"{name}, {c.corner.text}" for c in chosen for name in ("From", "To", "Units")]
+    deviation = with_unit(scale.decimals + 1, scale.unit, signed=True)
+    page.table(headings, rows, [deviation, deviation, "#,##0"] * len(chosen))
+
+
+def _bars_of(d: Distribution, scale: Deviation) -> list[tuple[Value, Value, Value]]:
+    return [
+        (scale.value(low), scale.value(high), n) for (low, high), n in zip(pairwise(d.edges), d.counts, strict=True)
+    ]
 
 
 def _two_corners(a: Assessment) -> list[CornerResult]:
@@ -209,7 +227,7 @@ def _two_corners(a: Assessment) -> list[CornerResult]:
 def _steps(d: Distribution, scale: Deviation) -> list[tuple[float, float]]:
     """The outline of the bars."""
     made = [(scale.value(d.edges[0]), 0.0)]
-    for low, high, n in zip(d.edges, d.edges[1:], d.counts, strict=False):
+    for (low, high), n in zip(pairwise(d.edges), d.counts, strict=True):
         made += [(scale.value(low), float(n)), (scale.value(high), float(n))]
     return [*made, (scale.value(d.edges[-1]), 0.0)]
 

@@ -5,14 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from openpyxl import Workbook
-from openpyxl.styles import Alignment, Border, Font, PatternFill, Side
+from openpyxl.styles import Alignment, Border, PatternFill, Side
 from openpyxl.worksheet.worksheet import Worksheet
 
 from yieldosc.reports.findings import Summary
-from yieldosc.reports.workbook_page import INK, RULE, head, lines_needed, print_set_up, put
+from yieldosc.reports.workbook_page import INK, RULE, at, head, ink, lines_needed, print_set_up, put
 from yieldosc.studies.results import Assessment
 
-WIDTHS = (17, 31, 9, 24, 17)
+WIDTHS = (24, 29, 9, 25, 17)
 WHOLE = float(sum(WIDTHS))
 MOST_OPEN = 8
 FILLS = {"meets": "FFDDEEDD", "does not meet": "FFF4D9D6", "not proven": "FFFBEBCB", "not assessable": "FFFBEBCB"}
@@ -32,6 +32,9 @@ def sign_off(book: Workbook, a: Assessment, summary: Summary) -> None:
     page.section("Leading parts")
     for sentence in summary.leading:
         page.sentence(sentence)
+    page.section("What to do next")
+    for step in summary.next_steps:
+        page.sentence(f"•  {step}")
     page.section("Open points")
     page.sentence(summary.pedigrees)
     for point in summary.open_points[:MOST_OPEN]:
@@ -59,8 +62,8 @@ class _Form:
 
     def pair(self, label: str, text: str, *, size: float = 10, bold: bool = False) -> None:
         """A label and what stands behind it."""
-        cell = put(self.sheet.cell(self.row, 1), label)
-        cell.font = Font(size=10, color="FF5A6B75")
+        cell = put(at(self.sheet, self.row, 1), label)
+        cell.font = ink(colour="FF5A6B75")
         cell.alignment = Alignment(vertical="center", wrap_text=True)
         self._span(2, 5, text, size=size, bold=bold, width=WHOLE - WIDTHS[0])
         self.row += 1
@@ -75,10 +78,9 @@ class _Form:
     def cells(self, texts: Sequence[str], *, heading: bool = False) -> None:
         lines = 1
         for column, (text, width) in enumerate(zip(texts, WIDTHS, strict=True), start=1):
-            cell = put(self.sheet.cell(self.row, column), text)
-            cell.alignment = Alignment(wrap_text=True, vertical="center", horizontal="right" if column == 3 else None)
+            cell = put(at(self.sheet, self.row, column), text)
+            cell.alignment = Alignment(wrap_text=True, vertical="center", horizontal="center" if column == 3 else None)
             cell.border = Border(bottom=RULE)
-            cell.font = Font(size=10, color=INK)
             if heading:
                 head(cell)
             lines = max(lines, lines_needed(text, width))
@@ -89,14 +91,14 @@ class _Form:
         self, first: int, last: int, text: str, *, size: float, bold: bool, width: float, fill: str | None = None
     ) -> None:
         self.sheet.merge_cells(start_row=self.row, end_row=self.row, start_column=first, end_column=last)
-        cell = put(self.sheet.cell(self.row, first), text)
-        cell.font = Font(size=size, bold=bold, color=INK)
+        cell = put(at(self.sheet, self.row, first), text)
+        cell.font = ink(size, bold=bold)
         cell.alignment = Alignment(wrap_text=True, vertical="center")
         if fill is not None:
             for column in range(first, last + 1):
                 self.sheet.cell(self.row, column).fill = PatternFill("solid", start_color=fill)
         lines = lines_needed(text, width * 10 / size * (0.93 if bold else 1.0))
-        self.sheet.row_dimensions[self.row].height = max(15.0, lines * size * 1.36 + 1.5)
+        self.sheet.row_dimensions[self.row].height = max(15.0, lines * size * 1.3 + 2)
 
 
 def _analysed(page: _Form, a: Assessment) -> None:
@@ -133,7 +135,7 @@ def _requirements(page: _Form, summary: Summary) -> None:
     joint = summary.requirements[-1]
     page.cells((joint.name, joint.limit, joint.failing, f"yield {joint.share}", joint.verdict))
     for column in range(1, 6):
-        page.sheet.cell(page.row - 1, column).font = Font(size=10, bold=True, color=INK)
+        page.sheet.cell(page.row - 1, column).font = ink(bold=True)
 
 
 def _signatures(page: _Form) -> None:
