@@ -30,6 +30,7 @@ def test_counts_never_read_all_or_nothing():
     assert rate_text(clopper_pearson(0, 50_000)) == "below 74 ppm"
     assert percent_text(yield_estimate(1000, 1000)) == "below 0.37 %"
     assert rate_text(clopper_pearson(0, 100)) == "below 3.7 %"
+    assert rate_text(clopper_pearson(100, 100)) == "above 96.3 %"
 
 
 def test_rates_choose_ppm_or_per_cent():

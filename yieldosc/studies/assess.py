@@ -24,6 +24,7 @@ from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values
 from yieldosc.studies.parallel import Workers, default_workers
 from yieldosc.studies.progress import Callback, Meter
 from yieldosc.studies.ranking import BASE, rankings
+from yieldosc.studies.reach import reach_findings
 from yieldosc.studies.results import (
     Assessment,
     Band,
@@ -215,6 +216,8 @@ def _assembled(
             *study.findings,
             *remarks.unjudged_findings(unjudged),
             *remarks.run_findings(study, run, outcomes),
+            *reach_findings(setup, gathered.units, study.design.confidence),
+            *remarks.settling_findings(setup),
             *evidence.outside,
             *remarks.ranking_findings(evidence.rankings, evidence.unranked),
             *remarks.bench_findings(study, ratio),

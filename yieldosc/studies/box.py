@@ -85,7 +85,8 @@ def search(box: Box, outputs: Outputs, *, seed_positions: Array | None = None) -
     goals = [(k, sign) for k in range(len(found)) for sign in (-1.0, 1.0)]
     climbers = [Climber(k, sign, starts[:, i]) for k, sign in goals for i in _best(sign * found[k], 1 if every else 8)]
     reached = _climb(box, outputs, climbers)
-    best = {goal: max(v for v, c in zip(reached, climbers, strict=True) if (c.output, c.sign) == goal) for goal in goals}
+    pairs = list(zip(reached, climbers, strict=True))
+    best = {goal: max(value for value, c in pairs if (c.output, c.sign) == goal) for goal in goals}
     lows = [-best[k, -1.0] for k in range(len(found))]
     highs = [best[k, 1.0] for k in range(len(found))]
     return np.array(lows), np.array(highs), method
@@ -119,7 +120,7 @@ def _climb(box: Box, outputs: Outputs, climbers: list[Climber]) -> Array:
         return np.where(np.isnan(values), -np.inf, values)
 
     d, m = points.shape
-    values = score(points, 1)[0]
+    values: Array = score(points, 1)[0]
     if not d:
         return values
     moving = np.ones(m, dtype=bool)

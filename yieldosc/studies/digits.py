@@ -34,7 +34,8 @@ def rounded(estimate: float, low: float, high: float, *, target: float | None = 
     decimals = decimals_for((high - low) / 2)
     while decimals < MOST_DECIMALS and target is not None and _ties(low, high, target, decimals):
         decimals += 1
-    return Shown(f"{estimate:.{decimals}f}", f"{_down(low, decimals):.{decimals}f}", f"{_up(high, decimals):.{decimals}f}")
+    texts = (f"{value:.{decimals}f}" for value in (estimate, _down(low, decimals), _up(high, decimals)))
+    return Shown(*texts)
 
 
 def _ties(low: float, high: float, target: float, decimals: int) -> bool:
@@ -54,7 +55,7 @@ def _up(value: float, decimals: int) -> float:
 
 
 def percent_text(estimate: Estimate, *, target: float | None = None) -> str:
-    """A yield: "97.98 % (97.85 % to 98.11 %)"; "above 99.9926 %" where no unit failed; "below …" where every one did."""
+    """A yield: "97.98 % (97.85 % to 98.11 %)"; "above 99.9926 %" where no unit failed, "below …" where all did."""
     low, high = estimate.low * 100, estimate.high * 100
     if estimate.failures == 0:
         return f"above {_down(low, _enough(100 - low)):.{_enough(100 - low)}f} %"
@@ -69,6 +70,9 @@ def rate_text(estimate: Estimate) -> str:
     if estimate.failures == 0:
         ppm = estimate.high * 1e6
         return f"below {_two_up(ppm)} ppm" if ppm < 1e4 else f"below {_two_up(ppm / 1e4)} %"
+    if estimate.failures is not None and estimate.failures == estimate.units:
+        low = estimate.low * 100
+        return f"above {_down(low, _enough(100 - low)):.{_enough(100 - low)}f} %"
     scale, unit = (1e6, "ppm") if estimate.high < 0.01 else (100.0, "%")
     shown = rounded(estimate.estimate * scale, estimate.low * scale, estimate.high * scale)
     return f"{shown.estimate} {unit} ({shown.low} to {shown.high} {unit})"

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
+import numpy as np
+
 from yieldosc.errors import Finding
 from yieldosc.population import Block
 from yieldosc.population.block import middle_draws
@@ -114,6 +116,20 @@ def run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> li
             )
         )
     return made
+
+
+def settling_findings(setup: Setup) -> list[Finding]:
+    """What the frequencies leave out, where no limiter is declared."""
+    block = Block(setup.population, middle_draws(setup.population.variables, 1), 1, typical=True)
+    solution = setup.bench.solve(block, setup.corners[0])
+    if solution.settled_hz is not None or np.isnan(solution.startup_margin).all():
+        return []
+    text = (
+        "No limiter is declared, so every frequency is a crossing: where the circuit runs when its level is held "
+        "without distortion. A stage that clips settles elsewhere, a low-Q RC circuit the more the larger its excess "
+        "gain; that shift is left out."
+    )
+    return [Finding("note", "settling-left-out", text)]
 
 
 def bench_findings(study: Study, ratio: float | None) -> list[Finding]:
