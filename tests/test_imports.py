@@ -35,6 +35,7 @@ INSIDE = {  # parts of the package that a layer may import from; itself is alway
     "reports": {
         "errors", "quantities", "parts", "circuits", "solver", "study", "studies", "sheets", "unit", "population",
     },
+    "api": {"errors", "circuits", "sheets", "studies", "reports", "study", "unit"},
     "cli": {
         "errors", "quantities", "parts", "circuits", "study", "studies", "sheets", "reports", "unit",
     },
