@@ -1,9 +1,10 @@
-"""An invented assessment: the 1 kHz Wien tone source of a tide-gauge buoy at ten temperatures. No figure was computed."""
+"""An invented assessment: the 1 kHz Wien tone source of a tide-gauge buoy at ten temperatures. Nothing was computed."""
 
 from __future__ import annotations
 
 import math
 from dataclasses import replace
+from itertools import pairwise
 
 from yieldosc.circuits.registry import build
 from yieldosc.errors import Finding, Place
@@ -28,7 +29,7 @@ from yieldosc.studies.results import (
     Tighter,
     WorstUnit,
 )
-from yieldosc.study import Corner, Design, Requirement, Study
+from yieldosc.study import Design, Requirement, Study
 
 UNITS, FAILING = 50_000, 1_010
 PARTS = (
@@ -84,7 +85,7 @@ def bell(centre, sd, units, bars=40):
     """A distribution with the counts of a normal one, cut at four standard deviations."""
     edges = tuple(centre + sd * (-4 + 8 * i / bars) for i in range(bars + 1))
     share = [math.erf((b - centre) / sd / 2**0.5) - math.erf((a - centre) / sd / 2**0.5)
-             for a, b in zip(edges[:-1], edges[1:], strict=True)]  # fmt: skip
+             for a, b in pairwise(edges)]  # fmt: skip
     return Distribution(
         mean=centre, sd=sd, min=edges[0], max=edges[-1], q001=centre - 3.09 * sd, q50=centre, q999=centre + 3.09 * sd,
         edges=edges, counts=tuple(round(units * s / 2) for s in share),
@@ -150,8 +151,9 @@ def tone_bands(corners):
     made = []
     for c in corners:
         f, m = c.frequency_hz, c.margin
-        made.append(Band(output="frequency_hz", temperature_c=c.corner.temperature_c, extreme=(f.min - 4, f.max + 4),
-                         rss=(f.q001, f.q999), monte_carlo=(f.min, f.max), method="all 64 corners of the box"))  # fmt: skip
+        made.append(Band(output="frequency_hz", temperature_c=c.corner.temperature_c, rss=(f.q001, f.q999),
+                         extreme=(f.min - 4, f.max + 4), monte_carlo=(f.min, f.max),
+                         method="all 64 corners of the box"))  # fmt: skip
         made.append(Band(output="startup_margin", temperature_c=c.corner.temperature_c,
                          extreme=(m.min - 0.01, m.max + 0.01), rss=(m.q001, m.q999), monte_carlo=(m.min, m.max),
                          method="all 64 corners of the box"))  # fmt: skip
@@ -171,7 +173,7 @@ def tone_assessment(study=None, **changes):
         yield_=joint,
         looks=(Look(number=1, units=UNITS, failures=FAILING, low=joint.low, high=joint.high),),
         looks_planned=4,
-        outcomes={name: 0 for name in OUTCOMES}
+        outcomes=dict.fromkeys(OUTCOMES, 0)
         | {"good": UNITS - FAILING, "no_start": 10, "low_margin": 25, "out_of_limits": 975},
         corners=corners,
         nominal=tuple(
@@ -184,7 +186,7 @@ def tone_assessment(study=None, **changes):
                 outcome="starts",
             )
             for c in corners
-        ),  # fmt: skip
+        ),
         rankings=tone_rankings(corners[-1].corner),
         rivals=tone_rivals(),
         rival_units=20_480,
@@ -205,7 +207,7 @@ def tone_assessment(study=None, **changes):
                 yield_=yield_estimate(400, 20_480),
                 difference=tango(30, 16, 20_480),
             ),
-        ),  # fmt: skip
+        ),
         failure_share=(FailureShare(part="C1", cause="initial", ks_distance=0.31, p_value=1e-9, mean_shift_sd=-0.84),),
         worst_units=tuple(
             WorstUnit(number=n, outcome=o, corner=corners[0].corner, frequency_hz=f, startup_margin=m, values=values)
@@ -232,7 +234,7 @@ def tone_assessment(study=None, **changes):
             audited=500,
             disagreeing=0,
             exact=3,
-        ),  # fmt: skip
+        ),
     )
     return replace(made, **changes)
 
@@ -242,7 +244,7 @@ def flawless_assessment():
     joint = yield_estimate(0, UNITS, 0.9875)
     return tone_assessment(
         verdict="meets", yield_=joint, looks=(Look(number=1, units=UNITS, failures=0, low=joint.low, high=joint.high),),
-        outcomes={name: 0 for name in OUTCOMES} | {"good": UNITS},
+        outcomes=dict.fromkeys(OUTCOMES, 0) | {"good": UNITS},
         corners=tuple(
             replace(corner_result(c, i), failing={}, startup_failures=0, startup_rate=clopper_pearson(0, UNITS),
                     yield_=yield_estimate(0, UNITS), first_failures=0)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from itertools import combinations
 
 from rich.console import Console
 from rich.text import Text
@@ -47,11 +48,22 @@ def line_of_drawing(row: str) -> Text:
 def example(family: Family, options: Mapping[str, str]) -> Circuit:
     """The circuit with its required roles and as many of the others, in their order, as go together."""
     roles = family.roles(options)
-    present = {r.name for r in roles if r.required}
+    present = _least(family, options, roles)
     for role in roles:
         if role.name not in present and _buildable(family, options, present | {role.name}):
             present.add(role.name)
     return registry.build(family.name, options, present)
+
+
+def _least(family: Family, options: Mapping[str, str], roles: Sequence[Role]) -> set[str]:
+    """The required roles with the fewest optional ones that a circuit needs beside them ("RC, LCH or both")."""
+    required = {r.name for r in roles if r.required}
+    others = [r.name for r in roles if not r.required]
+    for count in range(len(others) + 1):
+        for chosen in combinations(others, count):
+            if _buildable(family, options, required | set(chosen)):
+                return required | set(chosen)
+    return required
 
 
 def _buildable(family: Family, options: Mapping[str, str], present: set[str]) -> bool:
