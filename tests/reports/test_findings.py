@@ -22,9 +22,7 @@ def test_a_failing_study_says_so_with_its_reason_and_its_way_out():
         "On condition: if the assumed values hold: CIN.",
         "On condition: if the typical values hold: GBW.",
     )
-    assert s.yield_note == (
-        "95 % confidence for all 4 planned looks together; 1,010 of 50,000 units fail; look 1 of 4"
-    )
+    assert s.yield_note == ("95 % confidence for all 4 planned looks together; 1,010 of 50,000 units fail; look 1 of 4")
     assert s.range_label == "Range over the 4 sets tried"
     assert s.range_note == (
         "lowest: hollow, same reel; highest: all normal; 20,480 units each; a range of the sets tried, not a bound"
@@ -65,9 +63,7 @@ def test_a_withheld_ranking_gives_its_reason():
     a = tone_assessment()
     withheld = replace(a.rankings["margin"], parts=(), withheld="2.0% of the evaluations have no bias")
     s = summarise(replace(a, rankings={"margin": withheld}))
-    assert s.leading == (
-        "Start-up margin: parts are not ranked, because 2.0% of the evaluations have no bias.",
-    )
+    assert s.leading == ("Start-up margin: parts are not ranked, because 2.0% of the evaluations have no bias.",)
 
 
 @pytest.mark.parametrize(
@@ -98,9 +94,7 @@ def test_every_verdict_has_its_words(verdict, conditions, words, headline):
 def test_without_a_target_nothing_is_met_or_missed():
     s = summarise(tone_assessment(tone_study(yield_target=None), verdict="not proven"))
     assert s.headline == "No yield target is given, so nothing is met or missed."
-    assert s.next_steps[0] == (
-        "State a yield target in the Design sheet: without one nothing can be met or missed."
-    )
+    assert s.next_steps[0] == ("State a yield target in the Design sheet: without one nothing can be met or missed.")
     assert s.requirements[-1].limit == "no target given"
 
 
@@ -114,9 +108,7 @@ def test_not_proven_names_the_units_to_try():
 def test_zero_failures_are_a_bound_and_never_zero_or_all():
     # 0 of 50000 at 1 − 0.05/4: 1 − (0.00625)^(1/50000) = 101.5 ppm; at 95 %: 1 − 0.025^(1/50000) = 73.8 ppm
     s = summarise(flawless_assessment())
-    assert s.deciding[0] == (
-        "None of 50,000 simulated units failed: the failing share is below 110 ppm, not zero."
-    )
+    assert s.deciding[0] == ("None of 50,000 simulated units failed: the failing share is below 110 ppm, not zero.")
     assert s.yield_value == "above 99.989 %"
     assert [r.share for r in s.requirements] == ["below 74 ppm"] * 3 + ["above 99.989 %"]
     said = " ".join([s.headline, s.yield_value, s.range_value, *s.deciding, *s.next_steps, *s.open_points])

@@ -142,7 +142,7 @@ def worst_units(book: Workbook, a: Assessment) -> None:
     scale = Deviation.of(a.study.design)
     page = Page.new(
         book, "Worst units", "Single simulated boards: the worst of each kind of failure, and those nearest to a limit",
-        "Part values at 25 °C, new; frequency and margin at the corner named, in deviation from the target.",
+        "Part values at 25 °C, new. Frequency (deviation from the target) and margin at the corner named.",
     )  # fmt: skip
     scales = [(p, *scaled_unit(p.typical, p.unit)) for p in a.study.parameters]
     headings = [

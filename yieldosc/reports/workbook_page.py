@@ -48,6 +48,8 @@ def put(cell: Cell, value: Value, number_format: str | None = None) -> Cell:
     """Write a value, never a formula: text is typed as text, and marked so that editing it does not make it one."""
     if isinstance(value, str):
         text = printable(value)
+        if not text:
+            return cell
         cell.value = text
         cell.data_type = "s"
         if begins_like_formula(text):
@@ -164,8 +166,9 @@ def lines_needed(text: str, width: float) -> int:
     for word in text.split(" "):
         if used and used + 1 + len(word) > room:
             lines, used = lines + 1, 0.0
-        lines += int(len(word) // room) if len(word) > room else 0
-        used += len(word) % room + 1
+        used += len(word) + (1 if used else 0)
+        while used > room:  # a word longer than the line is broken
+            lines, used = lines + 1, used - room
     return lines
 
 
