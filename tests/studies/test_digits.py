@@ -1,5 +1,7 @@
 """Digits follow the half-width; bounds go outward; nothing ties with the target. Expected texts by the rule's words."""
 
+import re
+
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
@@ -31,6 +33,31 @@ def test_counts_never_read_all_or_nothing():
     assert percent_text(yield_estimate(1000, 1000)) == "below 0.37 %"
     assert rate_text(clopper_pearson(0, 100)) == "below 3.7 %"
     assert rate_text(clopper_pearson(100, 100)) == "above 96.3 %"
+    # one failure: 0.025/n and about 5.57/n are its bounds; neither the share nor the yield may round to all or nothing
+    assert rate_text(clopper_pearson(1, 50_000)) == "20.0 ppm (0.5 to 111.5 ppm)"
+    assert percent_text(yield_estimate(1, 50_000)) == "99.99800 % (99.98885 % to 99.99995 %)"
+
+
+@given(st.integers(2, 3_200_000), st.data())
+def test_no_count_rounds_to_all_or_nothing(units, data):
+    failures = data.draw(st.integers(1, min(units - 1, 5)) | st.integers(1, units - 1))
+    for text in (percent_text(yield_estimate(failures, units)), rate_text(clopper_pearson(failures, units))):
+        numbers = [float(n) for n in re.findall(r"\d+(?:\.\d+)?", text)]
+        assert len(numbers) == 3
+        assert min(numbers) > 0
+        assert "%" not in text or max(numbers) < 100
+
+
+def test_large_half_widths_round_to_tens_and_hundreds():
+    assert rate_text(clopper_pearson(250, 50_000)) == "5000 ppm (4400 to 5660 ppm)"  # half-width 629 ppm
+    assert rate_text(made(0.0051, 0.00213, 0.00874)) == "5100 ppm (2100 to 8800 ppm)"  # half-width 3305 ppm
+
+
+def test_a_bound_alone_does_not_tie_with_the_target():
+    # the lower bound is 99.99262 %: with two digits of its distance to 100 % it would read as the target
+    low = yield_estimate(0, 50_000).low
+    assert percent_text(yield_estimate(0, 50_000), target=0.999926) == "above 99.99262 %"
+    assert low > 0.999926
 
 
 def test_rates_choose_ppm_or_per_cent():

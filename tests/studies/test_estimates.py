@@ -28,6 +28,12 @@ def test_exact_binomial_interval(failures, units, low, high, tolerance):
     assert found.high == pytest.approx(high, abs=tolerance)
 
 
+def test_rule_of_three():
+    # one-sided 95 % is the upper end of two-sided 90 %: 1 − 0.05^(1/1000), near 3/n
+    assert clopper_pearson(0, 1000, 0.90).high == pytest.approx(1 - 0.05 ** (1 / 1000), rel=1e-12)
+    assert clopper_pearson(0, 1000, 0.90).high == pytest.approx(0.0029912, abs=1e-7)
+
+
 def test_yield_interval_mirrors_the_rate():
     rate, good = clopper_pearson(3, 40), yield_estimate(3, 40)
     assert (good.low, good.high) == (1 - rate.high, 1 - rate.low)
@@ -65,9 +71,10 @@ def test_all_looks_together_keep_the_error_rate():
 
 
 def test_plain_repeated_looks_do_not_keep_it():
-    # negative control: at 95 % each, eleven doublings; the theory of repeated significance tests puts it near 30 %
-    plan = LookPlan(first=200, factor=2, looks=11)
-    assert false_verdicts(plan, 0.95, 0.9, 2000, 8) > 0.2
+    # negative control: a first look and eleven doublings, each at 95 %; 31 % false verdicts are known for it
+    plan = LookPlan(first=200, factor=2, looks=12)
+    share = false_verdicts(plan, 0.95, 0.9, 4000, 8)
+    assert share == pytest.approx(0.31, abs=3 * math.sqrt(0.31 * 0.69 / 4000))
 
 
 def test_verdict_uses_the_bounds():

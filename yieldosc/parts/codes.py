@@ -98,10 +98,10 @@ def class2_code(code: str) -> Class2 | None:
     return Class2(key, _CLASS2_LOW[key[0]], _CLASS2_HIGH[key[1]], low / 100, high / 100)
 
 
-# IEC 60062 letters for a resistor's temperature coefficient, ± ppm/K (from memory).
-_RESISTOR_TCR_PPM = {
-    "U": 250, "S": 250, "R": 100, "P": 50, "Q": 25, "Z": 20, "M": 15, "Y": 15, "N": 10, "W": 5, "K": 1,
-}  # fmt: skip
+# IEC 60062 letters for a resistor's temperature coefficient, ± ppm/K. The letters are from memory; their values are
+# those of the colour bands black, brown, red, yellow, orange, violet and grey as printed in a decoder's table (seen).
+# Z is left out: remembered for the green band (20) and for the blue one (10).
+_RESISTOR_TCR_PPM = {"U": 250, "S": 100, "R": 50, "Q": 25, "P": 15, "M": 5, "K": 1}
 
 
 def resistor_tcr_letter(letter: str) -> float | None:
@@ -128,10 +128,25 @@ def e_series(count: int) -> tuple[float, ...]:
     return tuple(values)
 
 
+def nearest_e(value: float, count: int) -> float:
+    """The series value nearest to a value (> 0) in ratio, as parts of equal relative steps are chosen."""
+    return min(_ladder(value, count), key=lambda member: abs(math.log(member / value)))
+
+
 def neighbours_e(value: float, count: int) -> tuple[float, float]:
     """The largest series value below and the smallest above a value (> 0), exact members left out."""
-    decade = 10.0 ** math.floor(math.log10(value))
-    ladder = sorted(v * decade * scale for scale in (0.1, 1.0, 10.0) for v in e_series(count))
+    ladder = _ladder(value, count)
     below = [v for v in ladder if v < value * (1 - 1e-9)]
     above = [v for v in ladder if v > value * (1 + 1e-9)]
     return below[-1], above[0]
+
+
+def _ladder(value: float, count: int) -> list[float]:
+    """Series values of the decade of a value and of the decades beside it, rising."""
+    exponent = math.floor(math.log10(value))
+    # divided, not multiplied, below 1: 4.7 / 1e9 is the double nearest to 4.7e-9
+    return [
+        v * 10.0**e if e >= 0 else v / 10.0**-e
+        for e in (exponent - 1, exponent, exponent + 1)
+        for v in e_series(count)
+    ]

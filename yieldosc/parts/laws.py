@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
@@ -10,15 +11,16 @@ from yieldosc.parts.ceramic import Class2Law
 from yieldosc.parts.codes import class1_code, class2_code
 from yieldosc.parts.linear import Linear
 from yieldosc.parts.parameter import Law
-from yieldosc.parts.quartz import ARCMINUTE, AtLaw, ForkLaw, at_law, least_limit, possible_angles
+from yieldosc.parts.quartz import ARCMINUTE, ROOM_C, AtLaw, ForkLaw, at_law, least_limit, possible_angles
 from yieldosc.parts.table_law import table_law
 
 ACCEPTED = (
     "±50 ppm/K, -220 ±100 ppm/K, 0.5 %/K, -2 mV/K, C0G, U2J, X7R, AT ±30 ppm -40..85 °C, AT ±2 arcmin, "
     "fork, fork -0.035 ±0.009 ppm/K² 25 ±5 °C, table NAME"
 )
-_NUMBER = r"[-+]?\d+(?:\.\d+)?(?:e[-+]?\d+)?"
-_PREFIX = {"n": 1e-9, "µ": 1e-6, "u": 1e-6, "m": 1e-3, "": 1.0, "k": 1e3, "M": 1e6}
+_SIZE = r"(?:\d+(?:\.\d+)?|\.\d+)(?:e[-+]?\d+)?"
+_NUMBER = rf"[-+]?{_SIZE}"
+_PREFIX = {"p": 1e-12, "n": 1e-9, "µ": 1e-6, "u": 1e-6, "m": 1e-3, "": 1.0, "k": 1e3, "M": 1e6}
 _PER_KELVIN = r"/\s*(?:K|°\s*C|C|deg\s*C?)"
 
 
@@ -34,6 +36,8 @@ def parse_law(
     tables: sheet name → (temperature [°C], change as a fraction); si_unit: the value's own, for laws such as -2 mV/K.
     """
     plain = _plain(text)
+    _refuse_numbers(text.strip(), plain)
+    plain = re.sub(r"(?<=\d),(?=\d)", ".", plain)
     if plain.lower() in ("none", "0"):
         return None
     for reader in (_ceramic, _at, _fork, _linear):
@@ -47,8 +51,21 @@ def parse_law(
 
 def _plain(text: str) -> str:
     out = text.strip().replace("−", "-").replace("–", "-").replace("μ", "µ").replace("+/-", "±").replace("+-", "±")
-    out = re.sub(r"±\s+", "±", out)
-    return re.sub(r"(?<=\d),(?=\d)", ".", out)
+    out = out.replace("\u2126", "Ω").replace("℃", "°C")  # the ohm sign and the one-character degree Celsius
+    return re.sub(r"±\s+", "±", out)
+
+
+def _refuse_numbers(written: str, plain: str) -> None:
+    """LawError for numbers of two readings, and for numbers too large to compute with."""
+    if plain.lower().startswith("table"):
+        return  # a sheet's name may hold anything
+    if re.search(r"(?<![\d.,])[1-9]\d{0,2},\d{3}(?!\d)", plain):
+        raise LawError(
+            f"{written!r} can be read with a decimal comma or with a thousands comma; "
+            "write a decimal point, or no comma"
+        )
+    if any(not math.isfinite(float(number)) for number in re.findall(_NUMBER, plain, re.I)):
+        raise LawError(f"{written!r} holds a number that is too large; write a temperature law such as ±50 ppm/K")
 
 
 def _ceramic(text: str, si_unit: str) -> Law | None:
@@ -60,8 +77,8 @@ def _ceramic(text: str, si_unit: str) -> Law | None:
 
 
 def _linear(text: str, si_unit: str) -> Law | None:
-    unit = r"(?P<unit>ppm|%|(?P<prefix>[nµumkM]?)(?P<si>V|A|Ω|F|H|S|Hz))"
-    found = re.fullmatch(rf"(?P<typical>{_NUMBER})?\s*(?:±(?P<limit>{_NUMBER}))?\s*{unit}\s*{_PER_KELVIN}", text, re.I)
+    unit = r"(?P<unit>ppm|%|(?P<prefix>(?-i:[pnµumkM]?))(?P<si>V|A|Ω|F|H|S|Hz))"  # the case of a prefix counts
+    found = re.fullmatch(rf"(?P<typical>{_NUMBER})?\s*(?:±(?P<limit>{_SIZE}))?\s*{unit}\s*{_PER_KELVIN}", text, re.I)
     if found is None or (found["typical"] is None and found["limit"] is None):
         return None
     relative = {"ppm": 1e-6, "%": 1e-2}.get(found["unit"].lower())
@@ -73,28 +90,30 @@ def _linear(text: str, si_unit: str) -> Law | None:
         if found["si"] != si_unit:
             raise LawError(f"{text!r} changes {found['si']}, but the value is in {si_unit or 'another unit'}")
         relative = _PREFIX[found["prefix"] or ""]
-    typical, limit = float(found["typical"] or 0.0), abs(float(found["limit"] or 0.0))
+    typical, limit = float(found["typical"] or 0.0), float(found["limit"] or 0.0)
     return Linear(typical * relative, limit * relative, text, absolute=found["si"] is not None)
 
 
 def _at(text: str, si_unit: str) -> Law | None:
     if not re.match(r"AT\b", text, re.I):
         return None
-    angle = re.fullmatch(rf"AT\s*±({_NUMBER})\s*(?:arcmin|')", text, re.I)
+    angle = re.fullmatch(rf"AT\s*±({_SIZE})\s*(?:arcmin|['′])", text, re.I)
     if angle is not None:
-        half = abs(float(angle[1])) * ARCMINUTE
+        half = float(angle[1]) * ARCMINUTE
         return AtLaw((-half, half), (-half, half), text, None)
     found = re.fullmatch(
-        rf"AT\s*±({_NUMBER})\s*ppm\s*({_NUMBER})\s*(?:°?C)?\s*(?:\.\.+|…|to)\s*({_NUMBER})\s*(?:°\s*C|C)?", text, re.I
+        rf"AT\s*±({_SIZE})\s*ppm\s*({_NUMBER})\s*(?:°?C)?\s*(?:\.\.+|…|to)\s*({_NUMBER})\s*(?:°\s*C|C)?", text, re.I
     )
     if found is None:
         raise LawError(f"{text!r} is no AT law; write AT ±30 ppm -40..85 °C, or AT ±2 arcmin")
-    limit, low_c, high_c = abs(float(found[1])) * 1e-6, float(found[2]), float(found[3])
+    limit, low_c, high_c = float(found[1]) * 1e-6, float(found[2]), float(found[3])
     if low_c >= high_c:
         raise LawError(f"{text!r}: the range must rise, for example -40..85 °C")
+    if not low_c <= ROOM_C <= high_c:
+        raise LawError(f"{text!r}: the range must hold 25 °C, from which changes count, for example -40..85 °C")
     first, last = possible_angles(limit, low_c, high_c)
     if first > last:
-        least = least_limit(low_c, high_c) * 1e6
+        least = math.ceil(least_limit(low_c, high_c) * 1e7) / 10  # upward, so that the limit named is accepted
         raise LawError(
             f"{text!r}: no AT cut stays within ±{limit * 1e6:g} ppm from {low_c:g} to {high_c:g} °C; "
             f"the least possible is ±{least:.1f} ppm"
@@ -108,15 +127,15 @@ def _fork(text: str, si_unit: str) -> Law | None:
     if text.lower() == "fork":
         return ForkLaw((0.026e-6, 0.044e-6), (20.0, 30.0), "fork")
     found = re.fullmatch(
-        rf"fork\s*-({_NUMBER})\s*(?:±({_NUMBER}))?\s*ppm/K(?:²|2|\^2)"
-        rf"(?:\s+({_NUMBER})\s*(?:±({_NUMBER}))?\s*(?:°\s*C|C))?",
+        rf"fork\s*-({_SIZE})\s*(?:±({_SIZE}))?\s*ppm/K(?:²|2|\^2)"
+        rf"(?:\s+({_NUMBER})\s*(?:±({_SIZE}))?\s*(?:°\s*C|C))?",
         text,
         re.I,
     )
     if found is None:
         raise LawError(f"{text!r} is no tuning-fork law; write fork, or fork -0.035 ±0.009 ppm/K² 25 ±5 °C")
-    beta, spread = float(found[1]) * 1e-6, abs(float(found[2] or 0)) * 1e-6
-    turnover, width = (25.0, 5.0) if found[3] is None else (float(found[3]), abs(float(found[4] or 0)))
+    beta, spread = float(found[1]) * 1e-6, float(found[2] or 0) * 1e-6
+    turnover, width = (25.0, 5.0) if found[3] is None else (float(found[3]), float(found[4] or 0))
     if spread >= beta:
         raise LawError(f"{text!r}: the spread of the curvature must be smaller than the curvature")
     return ForkLaw((beta - spread, beta + spread), (turnover - width, turnover + width), text)

@@ -53,7 +53,10 @@ class Split:
 
 @dataclass(frozen=True, slots=True)
 class Normal:
-    """Normal, the tolerance being `sigmas` standard deviations; cut at the tolerance, or open."""
+    """Normal, the tolerance being `sigmas` standard deviations; cut at the tolerance, or open.
+
+    Unequal bounds: half the units on each side of the typical value, each half with its own standard deviation.
+    """
 
     sigmas: float = 3.0
     cut: bool = True
@@ -136,7 +139,8 @@ def is_min_typ_max(shape: Shape) -> bool:
 def parse_shape(text: str) -> Shape:
     """The shape that a text names; ShapeError with the accepted texts otherwise. "measured" needs its column and is
     made by whoever holds it."""
-    words = re.sub(r"[\s_-]+", " ", text.strip().lower()).split()
+    # a hyphen joins words ("normal-open"); before a number it is a sign, and no number here may be negative
+    words = re.sub(r"[\s_]+|-(?=[a-z])", " ", text.strip().lower()).split()
     name, number = " ".join(w for w in words if not _is_number(w)), [float(w) for w in words if _is_number(w)]
     simple: dict[str, Shape] = {
         "uniform": Uniform(), "triangular": Triangular(), "fixed": Fixed(), "min/typ/max": Split(), "split": Split(),
@@ -147,6 +151,10 @@ def parse_shape(text: str) -> Shape:
         return Normal(number[0] if number else 3.0, cut=name == "normal")
     if name == "hollow" and len(number) <= 1 and (not number or 0 < number[0] < 1):
         return Hollow(number[0] if number else 0.4)
+    if name == "measured":
+        raise ShapeError(
+            f"{text!r} needs measured values: write it in the Shape of one role, and the values in the sheet Measured"
+        )
     raise ShapeError(f"{text!r} is no shape; write one of: {ACCEPTED}")
 
 
