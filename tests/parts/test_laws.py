@@ -242,3 +242,19 @@ def test_frequency_limits_of_a_stability():
 def test_a_wrong_sign_of_the_cut_angle_is_seen():
     # negative control: at 85 °C the curve of −1.7′ is 2 · 5.08e-6 · (1.7/60) · 60 = 17.3 ppm off
     assert abs(at_curve(85, -1.7 / 60) * 1e6 - 13.20160) > 10
+
+
+SCRAPS = ["AT", "fork", "±", "-", "+", "30", "0", "1e5", ".5", " ", "ppm", "/K", "K²", "°C", "..", "-40", "85", "25",
+          "mV", "UV", "Hz", "%", "X7R", "C0G", "table", "a", "'", "²", "٣", "１", "(", "\\", "\n", ","]  # fmt: skip
+
+
+@given(st.lists(st.sampled_from(SCRAPS), max_size=9).map("".join))
+def test_any_text_is_a_law_or_a_refusal(text):
+    try:
+        law = parse_law(text, si_unit="V", tables={"a": [(0, -1e-3), (25, 0.0), (50, 1e-3)]})
+    except LawError as error:
+        assert str(error)
+        return
+    if law is not None:
+        drawn = {name: np.array([0.5]) for name in law.coefficients}
+        assert np.all(np.isfinite(law.change(60.0, drawn)))

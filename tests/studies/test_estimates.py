@@ -122,6 +122,16 @@ def test_tango_without_discordant_units():
     assert (found.low, found.high) == pytest.approx((-z2 / (100 + z2), z2 / (100 + z2)), abs=1e-9)
 
 
+def test_tango_where_every_unit_is_gained():
+    # b = n, c = 0: the restricted estimate is q = (1 − δ)/2, the score √(n (1 − δ)/(1 + δ)) (closed form)
+    z2 = stats.norm.ppf(0.975) ** 2
+    found = tango(10, 0, 10)
+    assert found.low == pytest.approx((10 - z2) / (10 + z2), abs=1e-9)
+    assert found.high == 1.0
+    mirrored = tango(0, 10, 10)
+    assert (mirrored.low, mirrored.high) == pytest.approx((-1.0, -found.low), abs=1e-9)
+
+
 def test_t_interval_matches_scipy():
     values = np.random.default_rng(3).normal(size=16)
     expected = stats.t.interval(0.95, 15, loc=values.mean(), scale=stats.sem(values))
