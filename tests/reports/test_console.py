@@ -162,7 +162,7 @@ def test_runs_of_designators():
 def test_a_study_shows_each_role_with_its_cell():
     text = flat(shown(print_study, tone_study()))
     assert "tide_tone_1khz · Wien bridge · digest 3fa9c1d2" in text
-    assert "1 kHz, −3.00 % to +3.00 %; margin at least 1.02; yield target 99 %" in text
+    assert "1 kHz, −3 % to +3 %; margin at least 1.02; yield target 99 %" in text
     assert "RF R3 22 kΩ ±1 % uniform — guaranteed BOM!C6" in text
 
 

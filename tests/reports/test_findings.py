@@ -39,6 +39,13 @@ def test_a_failing_study_says_so_with_its_reason_and_its_way_out():
     )
 
 
+def test_a_single_way_of_failing_is_not_counted_twice():
+    a = tone_assessment(outcomes={"good": UNITS - FAILING, "no_start": FAILING})
+    assert summarise(a).deciding[0] == (
+        "Of 50,000 simulated units 1,010 fail, all in one way: they do not start."
+    )
+
+
 def test_yield_and_range_are_the_exact_intervals_and_the_sets_extremes():
     # 1 − 1010/50000 = 0.9798; Clopper–Pearson at 1 − 0.05/4 by scipy.stats.beta inside `yield_estimate`'s own tests;
     # the sets: 1 − 2205/20480 = 0.89233…, 1 − 9/20480 = 0.99956…
@@ -136,7 +143,7 @@ def test_requirements_tell_what_each_costs_alone():
     assert rows == [
         ("Start-up", "on the intended mode", "10", "within target"),
         ("Start-up margin", "at least 1.02", "25", "within target"),
-        ("Frequency", "−3.00 % to +3.00 % of 1 kHz", "975", "misses alone"),
+        ("Frequency", "−3 % to +3 % of 1 kHz", "975", "misses alone"),
         ("All together: joint yield", "at least 99 %", "1,010", "does not meet"),
     ]
 
@@ -183,13 +190,15 @@ def test_model_error_is_the_prediction_against_the_bench():
 def test_an_off_centre_population_is_told_to_move_first():
     study = tone_study(frequency_low_hz=990.0, frequency_high_hz=1050.0)  # middle 1020, medians around 1001
     assert summarise(tone_assessment(study)).next_steps[0] == (
-        "Centre the frequency first: the medians over all corners have their middle at +0.24 % from the target. Other "
-        "nominal values cost nothing."
+        "Centre the frequency first: the medians over all corners have their middle at +0.24 %, the limits theirs at "
+        "+2.00 %. Other nominal values cost nothing."
     )
 
 
 def test_failing_units_that_disagree_with_the_variance_ranking_are_pointed_out():
     a = tone_assessment()
+    named = replace(a.failure_share[0], part="C1 Cm")  # a part with several roles is named with its role
+    assert "It does not lead" not in summarise(replace(a, failure_share=(named,))).deciding[-1]
     share = replace(a.failure_share[0], part="R4", cause="temperature", mean_shift_sd=1.25)
     assert summarise(replace(a, failure_share=(share,))).deciding[-1] == (
         "Among failing units R4 (temperature) stands out: its draws lie 1.25 standard deviations on the high side of "

@@ -51,8 +51,8 @@ def _centring(a: Assessment) -> str:
         return ""
     scale = Deviation.of(design)
     return (
-        f"Centre the frequency first: the medians over all corners have their middle at {scale.text(middle)} from the "
-        "target. Other nominal values cost nothing."
+        f"Centre the frequency first: the medians over all corners have their middle at {scale.text(middle)}, the "
+        f"limits theirs at {scale.text(middle - off)}. Other nominal values cost nothing."
     )
 
 

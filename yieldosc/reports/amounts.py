@@ -48,6 +48,8 @@ def bare_points(difference: Estimate) -> str:
 
 def share_text(index: Estimate) -> str:
     """A Sobol index as a share of variance: "38 % (36 % to 40 %)"; never more digits than whole per cent allow."""
+    if index.high < 0.0005:
+        return "below 0.1 %"
     decimals = min(decimals_for((index.high - index.low) * 50), 1)
     estimate, low, high = (f"{100 * v:.{decimals}f}" for v in (index.estimate, index.low, index.high))
     return f"{_plain(estimate)} % ({_plain(low)} % to {_plain(high)} %)"
@@ -101,6 +103,10 @@ class Deviation:
             return "—"
         number = signed(f"{self.value(frequency_hz):.{self.decimals}f}")
         return f"{number} {self.unit}" if unit else number
+
+    def limit_text(self, frequency_hz: float) -> str:
+        """A limit as its author wrote it, as far as doubles tell: "−100 ppm"."""
+        return f"{signed(f'{self.value(frequency_hz):.6g}')} {self.unit}"
 
 
 def margin_text(margin: float | None) -> str:

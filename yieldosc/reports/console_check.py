@@ -119,7 +119,7 @@ def print_study(study: Study, console: Console) -> None:
     design = study.design
     scale = Deviation.of(design)
     console.print(line(f"{study.name} · {study.circuit.title} · digest {study.digest[:8]}", "bold"))
-    low, high = scale.text(design.frequency_low_hz), scale.text(design.frequency_high_hz)
+    low, high = scale.limit_text(design.frequency_low_hz), scale.limit_text(design.frequency_high_hz)
     temperatures = ", ".join(f"{t:g}" for t in design.temperatures_c)
     target = "no yield target" if design.yield_target is None else f"yield target {percent(design.yield_target)}"
     console.print(line(f"{format_quantity(scale.target_hz, 'Hz', 9)}, {low} to {high}; margin at least "

@@ -32,6 +32,9 @@ def how_units_fail(a: Assessment) -> str:
     if not failing:
         none = clopper_pearson(0, units, a.yield_.confidence)
         return f"None of {units:,} simulated units failed: the failing share is {rate_text(none)}, not zero."
+    if len(failing) == 1:
+        ((name, count),) = failing.items()
+        return f"Of {units:,} simulated units {count:,} fail, all in one way: they {SHOWS[name]}."
     parts = [f"{n:,} {SHOWS[name]}" for name, n in sorted(failing.items(), key=lambda item: -item[1])]
     return f"Of {units:,} simulated units {sum(failing.values()):,} fail: {listed(parts)}."
 
@@ -99,7 +102,7 @@ def failing_units_sentence(a: Assessment) -> str:
         f"{abs(first.mean_shift_sd):.2f} standard deviations on the {side} side of those of all units."
     )
     ranked = {line.part for r in a.rankings.values() for line in leaders(r)}
-    if ranked and first.part not in ranked:
+    if ranked and not any(first.part == name or first.part.startswith(f"{name} ") for name in ranked):
         text += " It does not lead the variance: what spreads the output most is not what fails units most."
     return text
 

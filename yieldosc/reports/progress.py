@@ -21,8 +21,8 @@ def progress_bar(*, quiet: bool, label: str = "simulating") -> Iterator[Advance]
         yield _nothing
         return
     columns = (
-        TextColumn("{task.description}"), BarColumn(bar_width=40), TaskProgressColumn(), TimeElapsedColumn(),
-        TextColumn("left"), TimeRemainingColumn(),
+        TextColumn("{task.description}"), BarColumn(bar_width=40), TaskProgressColumn(), TextColumn("elapsed"),
+        TimeElapsedColumn(), TextColumn("left"), TimeRemainingColumn(),
     )  # fmt: skip
     with Progress(*columns, console=console, transient=True) as progress:
         task = progress.add_task(label, total=None)

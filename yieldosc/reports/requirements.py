@@ -74,11 +74,11 @@ def percent(fraction: float) -> str:
 
 
 def limit_text(a: Assessment, requirement: Requirement) -> str:
-    """ "−3.00 % to +3.00 % of 1 kHz", "at least 1.05", "at most 50 ms"."""
+    """ "−3 % to +3 % of 1 kHz", "at least 1.05", "at most 50 ms"."""
     low, high, unit = requirement.low, requirement.high, requirement.unit
     if requirement.attribute == "frequency_hz" and low is not None and high is not None:
         scale = Deviation.of(a.study.design)
-        return f"{scale.text(low)} to {scale.text(high)} of {format_quantity(scale.target_hz, 'Hz', 7)}"
+        return f"{scale.limit_text(low)} to {scale.limit_text(high)} of {format_quantity(scale.target_hz, 'Hz', 7)}"
     bounds = []
     if low is not None:
         bounds.append(f"at least {_bound(low, unit)}")
