@@ -41,9 +41,7 @@ def test_a_failing_study_says_so_with_its_reason_and_its_way_out():
 
 def test_a_single_way_of_failing_is_not_counted_twice():
     a = tone_assessment(outcomes={"good": UNITS - FAILING, "no_start": FAILING})
-    assert summarise(a).deciding[0] == (
-        "Of 50,000 simulated units 1,010 fail, all in one way: they do not start."
-    )
+    assert summarise(a).deciding[0] == ("Of 50,000 simulated units 1,010 fail, all in one way: they do not start.")
 
 
 def test_yield_and_range_are_the_exact_intervals_and_the_sets_extremes():

@@ -167,10 +167,15 @@ def test_inputs_carry_their_text_and_cell(written):
 
 
 def test_worst_units_show_every_part_value(written):
-    rows = [[cell.value for cell in row] for row in written["Worst units"].iter_rows(min_row=4)]
-    assert rows[0][:7] == ["Unit", "Outcome", "Corner", "Frequency", "Margin", "R1 [kΩ]", "C1 [nF]"]
-    assert rows[1][:3] == [17, "no start", "-20 °C"]
-    assert rows[1][5:7] == [pytest.approx(15.879), pytest.approx(10.1)]  # +0.5 % of 15.8 kΩ, +1 % of 10 nF
+    sheet = written["Worst units"]
+    rows = {row[0].value: row for row in sheet.iter_rows(min_row=4) if row[0].value}
+    heading = [cell.value for cell in sheet[4]]
+    assert heading[1:] == ["Typical", "Unit 17", "Unit 402", "Unit 9"]
+    assert rows["Outcome"][2].value == "no start" and rows["Corner"][2].value == "-20 °C"
+    assert rows["R1"][2].value == pytest.approx(15.879)  # +0.5 % of 15.8 kΩ
+    assert rows["C1"][2].value == pytest.approx(10.1)  # +1 % of 10 nF
+    assert rows["C1"][2].number_format == '#,##0.000" nF"'
+    assert {p.role for p in tone_study().parameters} <= set(rows)
 
 
 def test_a_failed_write_leaves_nothing(tmp_path, monkeypatch):

@@ -10,7 +10,7 @@ from yieldosc.reports.requirements import percent
 from yieldosc.studies.results import Assessment, RivalResult, Tighter
 
 OFF_CENTRE = 0.2  # of the half-width of the limits: less is not worth a change of values
-DOUBTFUL = ("typical", "simulated", "assumed")
+MOST_MEANING = 80  # characters; longer ones are named and stand on the sheet of assumptions
 START_OUTCOMES = ("no_bias", "no_start", "low_margin", "slow_start")
 
 
@@ -117,10 +117,8 @@ def _worst_rival(a: Assessment) -> str:
     worst: RivalResult = min(rivals, key=lambda r: r.yield_.estimate)
     if worst.yield_.estimate >= target:
         return ""
-    return (
-        f"Find out whether this holds, for it would miss the target: {worst.meaning} (yield "
-        f"{bare_percent(worst.yield_)})."
-    )
+    meaning = worst.meaning if len(worst.meaning) <= MOST_MEANING else f"the set '{worst.name}'"
+    return f"Find out whether this holds, for it would miss the target: {meaning} (yield {bare_percent(worst.yield_)})."
 
 
 def pedigree_counts(a: Assessment) -> dict[str, int]:

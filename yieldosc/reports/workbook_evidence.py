@@ -27,7 +27,7 @@ def extremes(book: Workbook, a: Assessment) -> None:
     page = Page.new(
         book, "Extremes", "Three bands: extreme value, root-sum-square, simulated",
         f"Frequency as deviation from {format_quantity(scale.target_hz, 'Hz', 9)} in {scale.unit}. Only extreme value "
-        "is a bound, and only where every shape is bounded.",
+        "is a bound, and only where every shape is bounded.", landscape=False,
     )  # fmt: skip
     headings = ("Temperature", "Extreme, low", "Extreme, high", "Root-sum-square, low", "Root-sum-square, high",
                 "Simulated, low", "Simulated, high", "Remark")  # fmt: skip
@@ -144,21 +144,22 @@ def worst_units(book: Workbook, a: Assessment) -> None:
         book, "Worst units", "Single simulated boards: the worst of each kind of failure, and those nearest to a limit",
         "Part values at 25 °C, new. Frequency (deviation from the target) and margin at the corner named.",
     )  # fmt: skip
-    scales = [(p, *scaled_unit(p.typical, p.unit)) for p in a.study.parameters]
-    headings = [
-        "Unit",
-        "Outcome",
-        "Corner",
-        "Frequency",
-        "Margin",
-        *(f"{p.role} [{u}]" if u else p.role for p, _, u in scales),
-    ]
+    units = a.worst_units
     deviation = with_unit(scale.decimals + 1, scale.unit, signed=True)
-    formats = ["0", None, None, deviation, "0.0000", *(with_unit(decimals_of(p.typical * k), "") for p, k, _ in scales)]
     rows: list[list[Value]] = [
-        [u.number, u.outcome.replace("_", " "), u.corner.text, scale.value(u.frequency_hz), u.startup_margin,
-         *(u.values[p.role] * k if p.role in u.values else None for p, k, _ in scales)]
-        for u in a.worst_units
-    ]  # fmt: skip
-    page.table(headings, rows, formats)
+        ["Outcome", "", *(u.outcome.replace("_", " ") for u in units)],
+        ["Corner", "", *(u.corner.text for u in units)],
+        ["Frequency", "", *(scale.value(u.frequency_hz) for u in units)],
+        ["Margin", "", *(u.startup_margin for u in units)],
+    ]
+    formats: list[str | None] = [None, None, deviation, "0.0000"]
+    for p in a.study.parameters:
+        factor, si_unit = scaled_unit(p.typical, p.unit)
+        rows.append([p.role, p.typical * factor, *(_scaled(u.values.get(p.role), factor) for u in units)])
+        formats.append(with_unit(decimals_of(p.typical * factor), si_unit))
+    page.table(["", "Typical", *(f"Unit {u.number}" for u in units)], rows, formats, formats_by_row=True)
     page.finish()
+
+
+def _scaled(value: float | None, factor: float) -> float | None:
+    return None if value is None else value * factor

@@ -95,14 +95,17 @@ class Page:
         formats: Sequence[str | None],
         *,
         freeze: bool = True,
+        formats_by_row: bool = False,
     ) -> tuple[int, int]:
-        """A table; returns its first and last row of data. The first table's heading row is frozen and repeated."""
+        """A table; returns its first and last row of data. The first table's heading row is frozen, and repeated on
+        every printed page. formats: one per column, or one per row."""
         top = self.row
         for column, name in enumerate(headings, start=1):
             head(put(at(self.sheet, top, column), name))
             self._widen(column, "x" * max(*map(len, name.split(" ")), len(name) // 2, 1))
         for offset, values in enumerate(rows, start=1):
-            for column, (value, number_format) in enumerate(zip(values, formats, strict=True), start=1):
+            own = [formats[offset - 1]] * len(values) if formats_by_row else formats
+            for column, (value, number_format) in enumerate(zip(values, own, strict=True), start=1):
                 cell = put(at(self.sheet, top + offset, column), value, number_format)
                 cell.border = Border(bottom=RULE)
                 side = "right" if isinstance(value, int | float) else "left"
@@ -133,7 +136,9 @@ class Page:
 
     def finish(self) -> None:
         """Column widths, the printed area, and heights of rows whose text wraps, which no spreadsheet computes."""
-        if len(self.headings) == 1:  # one table's headings would mislead over another's columns
+        if (
+            len(self.headings) == 1 and not self.sheet.row_breaks.brk
+        ):  # one table's headings would mislead over another's columns
             (top,) = self.headings.values()
             self.sheet.print_title_rows = f"{top}:{top}"
         last = get_column_letter(max(self.widths, default=8))
