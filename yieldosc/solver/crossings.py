@@ -87,8 +87,13 @@ def real_roots(split: Split, found: ComplexArray) -> tuple[Array, Array]:
     return x, slope
 
 
-def newton(split: Split, x: Array, *, steps: int = 12) -> tuple[Array, NDArray[np.bool_], Array]:
-    """Root of F near x (n,): the root, whether it converged to rounding, and F' there.
+TO_ROUNDING = 1e-9  # quadratic convergence: a relative step this small leaves an error far below rounding
+
+
+def newton(
+    split: Split, x: Array, *, steps: int = 12, settle: float = TO_ROUNDING
+) -> tuple[Array, NDArray[np.bool_], Array]:
+    """Root of F near x (n,): the root, whether it converged (last relative step below `settle`), and F' there.
 
     A settled unit stands still while others move on, so that its digits do not depend on the rest of its block.
     """
@@ -100,8 +105,7 @@ def newton(split: Split, x: Array, *, steps: int = 12) -> tuple[Array, NDArray[n
             step = np.where(settled, 0.0, f / steep)
             slope = np.where(settled, slope, steep)
             x = x - step
-            # quadratic convergence: a step below 1e-9 leaves an error far below rounding
-            settled = settled | (np.abs(step) <= 1e-9 * np.abs(x))
+            settled = settled | (np.abs(step) <= settle * np.abs(x))
             if settled.all():
                 break
         good = settled & np.isfinite(x) & (x > 0)

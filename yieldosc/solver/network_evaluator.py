@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Circuit, Derived
 from yieldosc.circuits.network import Network, network
-from yieldosc.solver.crossings import Split, newton, real_crossings
+from yieldosc.solver.crossings import TO_ROUNDING, Split, newton, real_crossings
 from yieldosc.solver.exact import Modes, modes
 from yieldosc.solver.growth import growth_rate, only_pair_growth
 from yieldosc.solver.polynomials import roots
@@ -29,6 +29,9 @@ from yieldosc.solver.sturm import positive_roots
 
 Array = NDArray[np.float64]
 Mask = NDArray[np.bool_]
+ROUGHLY = 1e-5  # relative step at which a root is known well enough that limits nothing
+APART = 1 + 1e-4  # roots nearer than this may be one root that two of them were led to
+NEAR = 1.02  # a rough crossing within this ratio of the actual gain is a question for the exact path
 AUDIT_TOLERANCE = 1e-6  # relative difference in margin between the two paths
 
 
@@ -141,7 +144,8 @@ class NetworkEvaluator:
         followed: list[Array] = []
         for k, tracked in enumerate(ref.tracked + ref.idle):
             ratio = (design / ref.design) ** 2 if k == ref.intended else ref.prediction(tracked, part.symbols)
-            x, good, slope = newton(split, tracked.x * ratio)
+            limiting = k in (ref.intended, ref.leaves) and k != ref.far
+            x, good, slope = newton(split, tracked.x * ratio, settle=TO_ROUNDING if limiting else ROUGHLY)
             followed.append(x)
             gain = split.gain(x)
             with np.errstate(invalid="ignore"):
@@ -159,7 +163,7 @@ class NetworkEvaluator:
         doubt |= positive_roots(split.polynomial()) != len(followed)
         with np.errstate(invalid="ignore"):
             for lower, higher in pairwise(ref.order):
-                doubt |= ~(followed[lower] < followed[higher])
+                doubt |= ~(followed[lower] * APART < followed[higher])
             for earlier, later in pairwise(gains):
                 doubt |= ~(earlier < later)
             expected, real_poles = self._expected(part, ref, gains)
@@ -172,7 +176,7 @@ class NetworkEvaluator:
             doubt |= self._other_growing(size, ref, gains)
             if ref.far is not None:
                 # whose crossing this is was not settled by counting; it must not come near enough to limit the margin
-                doubt |= gains[ref.far] * gains[ref.intended] <= size * size
+                doubt |= gains[ref.far] * gains[ref.intended] <= NEAR * size * size
         block.status = np.where(block.grows, Status.STARTS, Status.NO_START).astype(np.int8)
         return block, doubt
 
@@ -194,7 +198,7 @@ class NetworkEvaluator:
         risky = np.zeros(len(size), dtype=bool)
         for k, (tracked, gain) in enumerate(zip(ref.tracked, gains, strict=True)):
             if k != ref.intended and tracked.direction > 0:
-                risky |= gain < size
+                risky |= gain < NEAR * size
         return risky
 
     def _modes(
@@ -224,8 +228,10 @@ class NetworkEvaluator:
         with np.errstate(invalid="ignore", divide="ignore"):
             ratio[certain] = np.abs(found.lower[certain] / block.lower[rows[certain]] - 1)
             differs = certain & ~(ratio <= AUDIT_TOLERANCE)
-            both = np.isfinite(found.upper) | np.isfinite(block.upper[rows])
-            differs |= certain & both & ~(np.abs(found.upper / block.upper[rows] - 1) <= AUDIT_TOLERANCE)
+            # an upper limit matters where it, and not the lower one, sets the margin
+            upper = block.upper[rows]
+            limits = np.minimum(np.abs(found.upper), np.abs(upper)) <= NEAR * part.g[rows] ** 2 / np.abs(found.lower)
+            differs |= certain & limits & ~(np.abs(found.upper / upper - 1) <= AUDIT_TOLERANCE)
         write = rows[doubt[rows] | differs]
         keep = doubt[rows] | differs
         status = self._exact_status(part, found, rows)
