@@ -178,6 +178,8 @@ def test_one_unit_with_its_units():
     dead = shown(print_unit, circuit.evaluate({**values, "RF": 19e3}))
     assert "outcome           no_start            does not start\n" in dead
     assert "growth rate       —" in dead
+    assert "start-up margin   0.96667 " in dead  # (1 + 1.9)/3
+    assert "other modes       none                no other mode grows\n" in dead
 
 
 @pytest.mark.parametrize("name", registry.names())

@@ -47,15 +47,15 @@ def _rows(unit: Unit) -> list[tuple[str, str, str]]:
         rows.append(("overdriven", "yes", "the level lies beyond what the model of the limiter covers"))
     found = [f for f in unit.other_modes_hz if isinstance(f, float)]
     modes = [format_quantity(f, "Hz", 6) if f else "latches (0 Hz)" for f in found]
-    rows.append(("other modes", ", ".join(modes) or "none", "that grow too" if modes else "grow"))
+    rows.append(("other modes", ", ".join(modes) or "none", "grow too" if modes else "no other mode grows"))
     return rows
 
 
 def _figure(value: object, si_unit: str | None, digits: int = DIGITS) -> str:
     if value is None:
         return "—"
-    if si_unit == "1/s":
-        return f"{_number(value):.{digits}g} 1/s"
+    if si_unit in (None, "1/s"):  # no prefix: a margin of 0.93 is not "930 m"
+        return f"{_number(value):.{digits}g} {si_unit or ''}".rstrip()
     return format_quantity(_number(value), si_unit, digits)
 
 
