@@ -150,6 +150,9 @@ def test_alike_parts_share_a_line():
         "not read ±1 % — R7 9",
         "not fitted 4.7 kΩ ±1 % — R8 4",
         "Findings: 1 warning, 2 notes",
+        "warning: x",
+        "note: y",
+        "note: z",
     ]
 
 

@@ -13,6 +13,7 @@ from yieldosc.parts.parameter import Kind, Parameter
 from yieldosc.parts.shapes import is_min_typ_max
 from yieldosc.quantities import format_quantity
 from yieldosc.reports.amounts import Deviation
+from yieldosc.reports.console_findings import print_findings
 from yieldosc.reports.requirements import percent
 from yieldosc.reports.terminal import heading, line, one_line, plain_table
 from yieldosc.sheets.bomline import BomLine
@@ -24,7 +25,7 @@ NOT_READ = "not read"
 
 
 def print_check(lines: Sequence[BomLine], findings: Sequence[Finding], console: Console) -> None:
-    """Parts grouped by kind, alike ones on one line, smallest value first; then how many findings of each level."""
+    """Parts grouped by kind, alike ones on one line, smallest value first; then all findings."""
     fitted = [part for part in lines if part.fitted]
     console.print(line(f"{len(lines)} parts read, {len(fitted)} fitted", "bold"))
     console.print()
@@ -35,7 +36,7 @@ def print_check(lines: Sequence[BomLine], findings: Sequence[Finding], console: 
         _group(kind, [part for part in fitted if part.kind == kind], table)
     _group("not fitted", [part for part in lines if not part.fitted], table)
     console.print(table)
-    _count(findings, console)
+    _all_findings(findings, console)
 
 
 def _group(title: str, parts: Sequence[BomLine], table: Table) -> None:
@@ -104,7 +105,7 @@ def _closed(run: Sequence[tuple[str, int]]) -> list[str]:
     return words if len(words) < 3 else [f"{words[0]}–{words[-1]}"]
 
 
-def _count(findings: Sequence[Finding], console: Console) -> None:
+def _all_findings(findings: Sequence[Finding], console: Console) -> None:
     counts = [
         f"{n} {level}{'' if n == 1 else 's'}"
         for level in ("error", "warning", "note")
@@ -112,6 +113,7 @@ def _count(findings: Sequence[Finding], console: Console) -> None:
     ]
     console.print()
     console.print(line("Findings: " + (", ".join(counts) if counts else "none"), "bold"))
+    print_findings(findings, console)
 
 
 def print_study(study: Study, console: Console) -> None:
