@@ -47,7 +47,7 @@ def matches(body: str, output: str) -> bool:
     """True when the lines shown stand in the output in this order, without gaps except at "…"."""
     pieces = [piece.strip("\n") for piece in re.split(rf"^{LEFT_OUT}$", body, flags=re.M)]
     pattern = r"\A" + r"(?:.*\n)*?".join(re.escape(piece + "\n" if piece else "") for piece in pieces)
-    return re.match(pattern + r"\Z", output) is not None or re.match(pattern + r"\Z", output.strip("\n") + "\n") is not None
+    return any(re.match(pattern + r"\Z", text) for text in (output, output.strip("\n") + "\n"))
 
 
 def folder_with_examples(folder: Path) -> Path:

@@ -128,7 +128,9 @@ def _arrays(circuit: Circuit, values: Mapping[str, ArrayLike]) -> tuple[dict[str
     sizes = {array.size for array in given.values() if array.ndim}
     if len(sizes) > 1 or any(array.ndim > 1 for array in given.values()):
         problems.append(
-            Finding("error", "shapes-differ", f"arrays must be one-dimensional and of equal length; found {sorted(sizes)}")
+            Finding(
+                "error", "shapes-differ", f"arrays must be one-dimensional and of equal length; found {sorted(sizes)}"
+            )
         )
     if problems:
         raise InputError(problems)

@@ -64,7 +64,9 @@ def _problems(options: Mapping[str, str], present: frozenset[str]) -> list[str]:
     if ground != "base" and "C3" in present and "CC" in present:
         problems.append("with C3 the tank needs no coupling capacitor: remove CC")
     if ground == "collector" and options["bias"] == "collector":
-        problems.append("bias = collector with the collector at the supply is the same as RB1 from VCC: use bias = divider")
+        problems.append(
+            "bias = collector with the collector at the supply is the same as RB1 from VCC: use bias = divider"
+        )
     if "LCH_dcr" in present and "LCH" not in present:
         problems.append("LCH_dcr without LCH: give the choke, or remove its resistance")
     return problems

@@ -41,4 +41,7 @@ def noise_gain(symbols: dict[str, Array], rf: Array) -> Array:
     return 1 + rf / symbols["RG"]
 
 
-GAIN_ROLES = (resistor("RF", "feedback resistor, output to inverting input"), resistor("RG", "inverting input to ground"))
+GAIN_ROLES = (
+    resistor("RF", "feedback resistor, output to inverting input"),
+    resistor("RG", "inverting input to ground"),
+)

@@ -8,8 +8,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-import numpy as np
-
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
 from yieldosc.circuits.crystal import (
     CRYSTAL_ROLES,
@@ -60,7 +58,7 @@ def design_frequency(values: Values) -> Array:
     """The crystal with the load that the board and the stage present [Hz]."""
     c1 = _sum(values, "C1", "CS1", "Cin")
     c2 = _sum(values, "C2", "CS2") + (0.0 if "RS_series" in values else values["Cout"])
-    load = c1 * c2 / (c1 + c2) + values["Cfb"] + (values["CX"] if "CX" in values else 0.0)
+    load = c1 * c2 / (c1 + c2) + values["Cfb"] + values.get("CX", 0.0)
     return loaded_frequency_hz(values, load)
 
 

@@ -48,9 +48,8 @@ def build(name: str, options: Mapping[str, str] | None = None, present: Iterable
     known = {role.name: role for role in made.roles(chosen)}
     given = set(present)
     problems = [f"{made.name} has no role {role!r} with these options" for role in sorted(given - set(known))]
-    problems += [
-        f"role {role.name} is missing: {role.meaning}" for role in known.values() if role.required and role.name not in given
-    ]
+    missing = [role for role in known.values() if role.required and role.name not in given]
+    problems += [f"role {role.name} is missing: {role.meaning}" for role in missing]
     given |= {role.name for role in known.values() if role.default is not None}
     try:
         circuit = made.build(chosen, frozenset(given & set(known)))

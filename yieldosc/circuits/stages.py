@@ -67,7 +67,15 @@ _BJT_ROLES = (
 )
 
 
-def _bjt(values: Values, temperature_c: float, own_law: frozenset[str], rfeed: Array | float, rdc: Array | float, *, bias: str) -> Bias:
+def _bjt(
+    values: Values,
+    temperature_c: float,
+    own_law: frozenset[str],
+    rfeed: Array | float,
+    rdc: Array | float,
+    *,
+    bias: str,
+) -> Bias:
     rise = temperature_c - ROOM_C
     hfe = values["hFE"] if "hFE" in own_law else values["hFE"] * (1 + 0.005 * rise)
     vbe = values["VBE"] if "VBE" in own_law else values["VBE"] - 2.0e-3 * rise

@@ -97,7 +97,7 @@ def leakage_symbol(branch: Branch) -> str:
     return f"{branch.name} leakage"
 
 
-def contribution(branch: Branch) -> Contribution:
+def contribution(branch: Branch) -> Contribution:  # noqa: PLR0911 -- one return per kind of branch reads best
     """Stamps and polynomials of a branch; op-amp and gain rows have their own rule in `network`."""
     names = branch.symbols
     match branch.kind:

@@ -30,7 +30,7 @@ def parse(words: Sequence[str]) -> argparse.Namespace:
 def _parser() -> Parser:
     parser = Parser(
         prog="yieldosc",
-        description="Production yield of oscillator circuits, from the BOM's tolerances to a workbook that can be signed.",
+        description="Production yield of oscillators, from the BOM's tolerances to a workbook that can be signed.",
         epilog="example: yieldosc assess bom_examples/tide_tone_1khz.xlsx",
     )
     parser.add_argument("--version", action="version", version=f"yieldosc {version('yieldosc')}")
@@ -77,7 +77,9 @@ def _unit(sub: Sub) -> None:
         "evaluate one unit: frequency, start-up margin, outcome, growth rate, other modes",
         "unit wien_bridge R1=10k C1=10n R2=10k C2=10n RF=20k5 RG=10k GBW=3MHz",
     )
-    parser.add_argument("target", metavar="CIRCUIT|STUDY", help="a circuit's name, or a study whose nominal unit is meant")
+    parser.add_argument(
+        "target", metavar="CIRCUIT|STUDY", help="a circuit's name, or a study whose nominal unit is meant"
+    )
     parser.add_argument("values", nargs="*", metavar="ROLE=VALUE", help="values as people write them: R1=4k7 C1=10n")
     parser.add_argument(
         "--option", action="append", default=[], metavar="KEY=VALUE", help="a choice that the circuit offers"

@@ -3,18 +3,18 @@
 from __future__ import annotations
 
 import argparse
-import sys
 from pathlib import Path
 
+from yieldosc.circuits import registry
+from yieldosc.circuits.circuit import CircuitError
 from yieldosc.cli import files
 from yieldosc.cli.streams import Streams
 from yieldosc.cli.words import options_of, unit_values, whole_number
-from yieldosc.circuits import registry
-from yieldosc.circuits.circuit import CircuitError
 from yieldosc.errors import Finding, InputError, refusal
 from yieldosc.quantities import QuantityError, parse_quantity
 from yieldosc.reports import console as pages
 from yieldosc.reports.progress import progress_bar
+from yieldosc.reports.workbook import write_workbook
 from yieldosc.sheets.bom import read_bom
 from yieldosc.sheets.draft import write_draft
 from yieldosc.sheets.opening import open_book
@@ -136,11 +136,8 @@ def assess(arguments: argparse.Namespace, streams: Streams) -> int:
     study = load_study(Path(arguments.study))
     directory = files.result_directory(arguments.output, study_name=study.name, digest=study.digest)
     files.claim_directory(directory, digest=study.digest, force=arguments.force)
-    quiet = arguments.quiet or streams.silent and not sys.stderr.isatty()
-    with progress_bar(quiet=quiet) as advance:
+    with progress_bar(quiet=arguments.quiet) as advance:
         result = run_assessment(study, units=units, seed=seed, workers=workers, progress=advance)
-    from yieldosc.reports.workbook import write_workbook
-
     content = assessment_dict(result)
     workbook = directory / f"{files.plain_name(study.name)}{files.WORKBOOK_SUFFIX}"
     files.write_through(workbook, lambda temporary: write_workbook(result, temporary))

@@ -29,7 +29,7 @@ def write_through(path: Path, write: Callable[[Path], None]) -> None:
     temporary = Path(name)
     try:
         write(temporary)
-        os.chmod(temporary, 0o666 & ~_umask())
+        temporary.chmod(0o666 & ~_umask())
         temporary.replace(path)
     except OSError as error:
         raise refusal(

@@ -18,13 +18,13 @@ class BomLine:
     value: float | None  # ohms, farads, henries, hertz
     si_unit: str | None  # "Ω", "F", "H", "Hz"
     tolerance: tuple[float, float] | None
-    temperature_law: str | None  # text in the notation of the Roles sheet: "C0G", "X7R", "±100 ppm/K", "±30 ppm -40..85 °C"
+    temperature_law: str | None  # in the notation of the Roles sheet: "C0G", "±100 ppm/K", "AT ±30 ppm -40..85 °C"
     load_f: float | None = None
     esr_ohm: float | None = None
     fitted: bool = True
     part_number: str | None = None
     scope: str | None = None  # board or section that the row stands in
-    place: Place = Place()
+    place: Place = field(default_factory=Place)
     source_text: str = ""  # the row's cells, joined
     decoded: tuple[str, ...] = ()  # which of the fields were read from the part number only
     given: Mapping[str, Given] = field(default_factory=dict)  # "value", "tolerance", "temperature_law", …

@@ -37,7 +37,7 @@ class BoundsReader:
         self.given: dict[str, Given] = {}
         self.measured = False
 
-    def read(self) -> Bounds | None:
+    def read(self) -> Bounds | None:  # noqa: PLR0911 -- each way to state a spread returns its own bounds
         if self.row is None:
             return self._default()
         before = len(self.problems.findings)
@@ -200,8 +200,8 @@ class BoundsReader:
         part = f" ({self.line.designator})" if self.line is not None else ""
         self.problems.error(
             "tolerance-missing",
-            f"{self.role.name}{part} has no tolerance: it is asked for, never assumed; write it in the Tolerance column "
-            "of Roles or of the BOM, give Min and Max, or give the shape fixed",
+            f"{self.role.name}{part} has no tolerance: it is asked for, never assumed; write it in the Tolerance "
+            "column of Roles or of the BOM, give Min and Max, or give the shape fixed",
             self.row.place,
         )
 

@@ -173,7 +173,7 @@ class DesignSheet:
     options: dict[str, tuple[str, Place]] = field(default_factory=dict)
     values: dict[str, Any] = field(default_factory=dict)
     items: dict[str, Item] = field(default_factory=dict)
-    place: Place = Place()
+    place: Place = field(default_factory=Place)
 
     def place_of(self, name: str) -> Place:
         return self.items[name].value.place if name in self.items else self.place

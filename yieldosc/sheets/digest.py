@@ -5,6 +5,8 @@ from __future__ import annotations
 import hashlib
 import json
 
+import numpy as np
+
 from yieldosc.parts.parameter import Parameter
 from yieldosc.parts.shapes import Measured
 from yieldosc.study import Study
@@ -26,7 +28,8 @@ def digest_of(study: Study) -> str:
 def _parameter(p: Parameter) -> dict[str, object]:
     law = None
     if p.law is not None:
-        law = [p.law.text, [p.law.change(t, dict.fromkeys(p.law.coefficients, 0.25)) for t in (-20.0, 60.0)]]  # type: ignore[misc]
+        quarter = dict.fromkeys(p.law.coefficients, np.array([0.25]))
+        law = [p.law.text, [float(np.ravel(p.law.change(t, quarter))[0]) for t in (-20.0, 60.0)]]
     return {
         "role": p.role, "part": p.part, "trait": p.trait, "unit": p.unit,
         "low": p.low, "typical": p.typical, "high": p.high, "shape": p.shape.text,

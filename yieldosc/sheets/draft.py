@@ -8,6 +8,7 @@ from pathlib import Path
 
 from openpyxl import Workbook
 from openpyxl.styles import Alignment, Font, PatternFill
+from openpyxl.utils import get_column_letter
 from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.worksheet import Worksheet
 
@@ -82,9 +83,9 @@ def _fill(sheet: Worksheet, rows: list[tuple[str, ...]]) -> None:
 
 
 def _widths(sheet: Worksheet) -> None:
-    for column in sheet.columns:
-        longest = max(len(str(cell.value)) for cell in column) if column else 0
-        sheet.column_dimensions[column[0].column_letter].width = min(max(10, longest + 2), WIDEST)
+    for number, column in enumerate(sheet.iter_cols(), start=1):
+        longest = max(len(str(cell.value)) for cell in column)
+        sheet.column_dimensions[get_column_letter(number)].width = min(max(10, longest + 2), WIDEST)
     sheet.freeze_panes = "A2"
 
 

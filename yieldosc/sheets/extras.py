@@ -40,7 +40,8 @@ def _read(entry: Entry, si_unit: str, name: str, problems: Problems, *, bare: bo
         return entry.number
     if entry.number is not None:
         problems.error(
-            "bare-number", f'{name} is the bare number {entry.number:g}; write "{entry.number:g} ppm" or "{entry.number:g} %"',
+            "bare-number",
+            f'{name} is the bare number {entry.number:g}; write "{entry.number:g} ppm" or "{entry.number:g} %"',
             entry.place,
         )  # fmt: skip
         return None

@@ -88,7 +88,7 @@ class ParameterMaker:
             self.problems.error(
                 "not-fitted", f"{role.name} names {name}, which the BOM marks as not fitted", entry.place
             )
-        wrong_kind = role.kind in PASSIVE and line.kind != role.kind and line.kind != "other"
+        wrong_kind = role.kind in PASSIVE and line.kind not in (role.kind, "other")
         passive_for_active = role.kind in ("transistor", "ic") and line.kind in PASSIVE
         if wrong_kind or passive_for_active:
             self.problems.error(
@@ -99,7 +99,8 @@ class ParameterMaker:
         elif role.main and line.value is not None and line.si_unit not in (None, role.unit):
             self.problems.error(
                 "wrong-unit",
-                f"{role.name} is in {role.unit}, but the BOM gives {name} as {format_quantity(line.value, line.si_unit)}",
+                f"{role.name} is in {role.unit}, but the BOM gives {name} as "
+                f"{format_quantity(line.value, line.si_unit)}",
                 entry.place,
             )
         return line
@@ -157,13 +158,8 @@ class ParameterMaker:
         place, text = (None, None) if entry is None else (entry.place, entry.written)
         if text is None and line is not None and role.main and line.temperature_law is not None:
             text, place = line.temperature_law, line.place
-            if role.kind == "crystal":
-                text = f"AT {text}"
-                self.problems.add(
-                    "warning", "crystal-law-assumed",
-                    f"{role.name}: the BOM gives {line.temperature_law} over temperature; an AT cut is assumed; "
-                    "write the law in Roles", place,
-                )  # fmt: skip
+            if role.kind == "crystal" and not self._known_cut(role, text, place):
+                return None
         if text is None:
             return None
         try:
@@ -173,6 +169,25 @@ class ParameterMaker:
             return None
         self._in_range(role, law, place)
         return law
+
+    def _known_cut(self, role: Role, text: str, place: Place | None) -> bool:
+        """A crystal's ppm over temperature from the BOM: an AT cut is assumed and said; any other cut is asked for."""
+        if not text.startswith("AT "):
+            self.problems.error(
+                "crystal-cut-unknown",
+                f"{role.name}: the BOM gives {text} over temperature, but not the cut; write the law in Roles, "
+                "for example fork or AT ±30 ppm -40..85 °C",
+                place,
+            )
+            return False
+        self.problems.add(
+            "warning",
+            "crystal-law-assumed",
+            f"{role.name}: the BOM gives {text.removeprefix('AT ')} over temperature; an AT cut is assumed; "
+            "write the law in Roles",
+            place,
+        )
+        return True
 
     def _in_range(self, role: Role, law: Law | None, place: Place | None) -> None:
         low, high = self.range_c

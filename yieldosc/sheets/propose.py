@@ -38,7 +38,9 @@ def propose(roles: Sequence[Role], lines: Sequence[BomLine], circuit: str) -> li
     return made
 
 
-def _for_role(role: Role, lines: Sequence[BomLine], used: dict[str, str], circuit: str) -> Proposal:
+def _for_role(  # noqa: PLR0911 -- one return per sort of role reads best
+    role: Role, lines: Sequence[BomLine], used: dict[str, str], circuit: str
+) -> Proposal:
     if role.kind == "crystal":
         return _crystal(role, lines)
     if role.kind in ("transistor", "ic"):

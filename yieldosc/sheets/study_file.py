@@ -137,7 +137,8 @@ def _circuit(sheet: DesignSheet, rows: Mapping[str, RoleRow], problems: Problems
     for name, row in rows.items():
         if name not in known:
             problems.error(
-                "unknown-role", f"{family.name} has no role {name} with these options; its roles are {', '.join(known)}",
+                "unknown-role",
+                f"{family.name} has no role {name} with these options; its roles are {', '.join(known)}",
                 row.place,
             )  # fmt: skip
         elif known[name].condition and known[name].unit == "V":
@@ -209,8 +210,10 @@ def _note_pedigrees(rows: Mapping[str, RoleRow], problems: Problems) -> None:
     silent = [name for name, row in rows.items() if row.cell("Source") is None and name != "CL"]
     if silent:
         problems.add(
-            "note", "pedigree-assumed",
-            f"no Source for {', '.join(silent)}: counted as assumed; a verdict then holds on that condition", Place("Roles"),
+            "note",
+            "pedigree-assumed",
+            f"no Source for {', '.join(silent)}: counted as assumed; a verdict then holds on that condition",
+            Place("Roles"),
         )  # fmt: skip
 
 

@@ -58,7 +58,7 @@ def _items(grid: Grid, problems: Problems) -> list[Item]:
     for c, cell in enumerate(grid.rows[heading]):
         for name in DESIGN_COLUMNS:
             if folded(cell.text) == folded(name):
-                columns[name] = c  # type: ignore[assignment]
+                columns[name] = c
     items = []
     for r in range(heading + 1, len(grid.rows)):
         entries = {

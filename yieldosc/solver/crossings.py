@@ -136,7 +136,8 @@ def real_crossings(a: Poly, b: Poly, sign: Array) -> tuple[Array, Array, NDArray
     low_a, low_b = ([poly[k] if k < len(poly) else zero for k in range(top)] for poly in (a, b))
     ends = []
     for pa, pb, omega in ((low_a, low_b, 0.0), (low_a[::-1], low_b[::-1], np.inf)):
-        if not np.any((np.sign(pa[0]) * np.sign(pb[0])) * sign < 0):  # the usual case: this end coefficient never changes its sign
+        # the usual case: this end coefficient never changes its sign
+        if not np.any((np.sign(pa[0]) * np.sign(pb[0])) * sign < 0):
             ends.append((np.full_like(zero, omega), np.full_like(zero, np.nan), np.zeros(len(zero), dtype=np.int64)))
             continue
         with np.errstate(divide="ignore", invalid="ignore"):

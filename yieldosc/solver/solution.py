@@ -41,7 +41,7 @@ class Solution:
     distortion: Array | None = None
     drive_w: Array | None = None
     resistance_ratio: Array | None = None  # −R/ESR at a crystal's terminals
-    control_reach: Array | None = None  # critical gain over gain at full control; below 1 the level control is at its stop
+    control_reach: Array | None = None  # critical gain over gain at full control; below 1 the control is at its stop
     overdriven: NDArray[np.bool_] | None = None
     audited: int = 0
     disagreeing: int = 0
