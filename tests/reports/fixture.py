@@ -252,3 +252,17 @@ def flawless_assessment():
         ),
         failure_share=(),
     )  # fmt: skip
+
+
+def bare_assessment():
+    """One temperature, no start-up question, a corner without any frequency, nothing ranked, no rival, no failure."""
+    a = flawless_assessment()
+    first = a.corners[0]
+    nan = float("nan")
+    nothing = Distribution(mean=nan, sd=nan, min=nan, max=nan, q001=nan, q50=nan, q999=nan)
+    unasked = replace(first, margin=None, startup_failures=None, startup_rate=None)
+    dead = replace(unasked, frequency_hz=nothing, corner=replace(first.corner, age_years=10.0))
+    return replace(
+        a, corners=(unasked, dead), rankings={}, rivals=a.rivals[:1], bands=(), tighter=(), worst_units=(),
+        verdict="not proven", conditions=(), findings=(), cautions=(),
+    )  # fmt: skip

@@ -9,7 +9,7 @@ from dataclasses import replace
 import pytest
 from rich.cells import cell_len
 
-from tests.reports.fixture import flawless_assessment, tone_assessment, tone_study
+from tests.reports.fixture import bare_assessment, flawless_assessment, tone_assessment, tone_study
 from yieldosc.circuits import registry
 from yieldosc.errors import Finding, Place
 from yieldosc.reports.console import (
@@ -105,6 +105,12 @@ def test_a_corner_without_any_gain_does_not_hide_the_others():
     assert row.frequency_q001_hz == a.corners[1].frequency_hz.q001
     assert row.frequency_q50_hz == a.corners[1].frequency_hz.q50
     assert row.frequency_q999_hz == a.corners[1].frequency_hz.q999
+
+
+def test_an_assessment_with_little_in_it_is_shown_too():
+    text = shown(print_assessment, bare_assessment())
+    assert "nan" not in text
+    assert "no other set of assumptions differs from the declared one" in flat(text)
 
 
 def test_hostile_text_reaches_no_terminal():

@@ -8,7 +8,7 @@ from pathlib import Path
 import pytest
 from openpyxl import Workbook, load_workbook
 
-from tests.reports.fixture import flawless_assessment, tone_assessment, tone_study
+from tests.reports.fixture import bare_assessment, flawless_assessment, tone_assessment, tone_study
 from yieldosc.errors import Finding, Place
 from yieldosc.reports.findings import summarise
 from yieldosc.reports.scales import decimals_of, scaled_unit, with_unit
@@ -94,6 +94,13 @@ def test_the_sign_off_page_prints_on_one_page(written):
     assert max(width / 13.7 / 7.3, height / 72 / 10.4) < 1.5
     for who in ("Prepared", "Checked", "Approved", "Name", "Date", "Signature"):
         assert who in texts(sheet)
+
+
+def test_many_open_points_still_leave_a_readable_page(tmp_path):
+    findings = tuple(Finding("warning", "w", f"{n} " + "something is doubtful " * 9) for n in range(40))
+    sheet = make_workbook(replace(tone_assessment(), findings=findings)).worksheets[0]
+    assert sum(sheet.row_dimensions[r].height or 15.0 for r in range(1, sheet.max_row + 1)) / 72 / 10.4 < 1.5
+    assert "•  and 34 more, on the sheet 'Import findings'" in texts(sheet)  # 2 conditions and 40 warnings, 8 shown
 
 
 def test_every_page_is_one_page_wide_and_numbered(written):
@@ -205,6 +212,14 @@ def test_the_result_is_itself_the_study(tmp_path):
         assert first[key] == second[key], key
 
 
+def test_an_assessment_with_little_in_it_is_written_too(tmp_path):
+    write_workbook(bare_assessment(), tmp_path / "x.xlsx")
+    book = load_workbook(tmp_path / "x.xlsx")
+    assert book.sheetnames[: len(OWN)] == OWN
+    assert "—" in texts(book["Temperatures"])
+    assert not [cell for cell in cells(book) if isinstance(cell.value, str) and "nan" in cell.value.lower().split()]
+
+
 def test_scales_of_columns():
     assert scaled_unit(10e-9, "F") == (pytest.approx(1e9), "nF")
     assert scaled_unit(15.8e3, "Ω") == (pytest.approx(1e-3), "kΩ")
@@ -216,6 +231,7 @@ def test_scales_of_columns():
 def test_axes_end_at_round_numbers():
     assert rounded_axis(-4.78, 5.61) == (-6, 6, 2)
     assert rounded_axis(0, 313) == (0, 350, 50)
+    assert rounded_axis(25, 25) == (20, 30, 5)
 
 
 def test_lines_of_wrapped_text():

@@ -99,4 +99,5 @@ def rounded_axis(low: float, high: float) -> tuple[float, float, float]:
     extent = (high - low) or abs(high) or 1.0
     power = 10.0 ** math.floor(math.log10(extent / 4))
     step = next(power * m for m in (1, 2, 5, 10) if extent / (power * m) <= 8)
-    return math.floor(low / step) * step, math.ceil(high / step) * step, step
+    first, last = math.floor(low / step) * step, math.ceil(high / step) * step
+    return (first, last, step) if last > first else (first - step, last + step, step)

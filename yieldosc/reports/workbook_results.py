@@ -15,12 +15,13 @@ from yieldosc.reports.scales import with_unit
 from yieldosc.reports.temperatures import caption, limited_frequency, temperature_lines
 from yieldosc.reports.terminal import one_line
 from yieldosc.reports.workbook_charts import BLUE, GREY, ORANGE, RED, add_line, bars, lines, span
-from yieldosc.reports.workbook_page import ROW_CM, Page, Value
+from yieldosc.reports.workbook_page import ROW_CM, Page, Value, at, ink, put
 from yieldosc.studies.digits import percent_text
 from yieldosc.studies.results import Assessment, CornerResult, Distribution, Ranking, RankLine
 
 SHARE = "0.0%"
 FIRST_ROWS = 12
+FAINT = "FFB0BCC4"
 OUTLINE_COLUMN = 24  # where a chart's own numbers stand, beyond the printed area
 MOST_BARS = 12
 CHART_ROWS = 22
@@ -133,8 +134,8 @@ def _frequency_chart(page: Page, a: Assessment, first: int, last: int) -> None:
     limits = [scale.value(a.study.design.frequency_low_hz), scale.value(a.study.design.frequency_high_hz)]
     ends = (rows[0].temperature_c, rows[-1].temperature_c)
     for i, (limit, name) in enumerate(zip(limits, ("lower limit", "upper limit"), strict=True)):
-        at = _outline(page, OUTLINE_COLUMN + 4 * i, first, [(end, limit) for end in ends], name)
-        add_line(chart, name, *at, RED, dashed=True)
+        points = _outline(page, OUTLINE_COLUMN + 4 * i, first, [(end, limit) for end in ends], name)
+        add_line(chart, name, *points, RED, dashed=True)
     values = [scale.value(f) for t in rows for f in (t.frequency_q001_hz, t.frequency_q999_hz)]
     span(chart, ends, [*(v for v in values if math.isfinite(v)), *limits])
     chart.width = page.width_cm
@@ -149,8 +150,8 @@ def _margin_chart(page: Page, a: Assessment, first: int, last: int) -> None:
         add_line(chart, name, x, Reference(sheet, min_col=column, min_row=first, max_row=last), colour, marks=True)
     least = a.study.design.least_margin
     ends = (rows[0].temperature_c, rows[-1].temperature_c)
-    at = _outline(page, OUTLINE_COLUMN + 8, first, [(end, least) for end in ends], "least margin")
-    add_line(chart, "least margin", *at, RED, dashed=True)
+    points = _outline(page, OUTLINE_COLUMN + 8, first, [(end, least) for end in ends], "least margin")
+    add_line(chart, "least margin", *points, RED, dashed=True)
     margins = [m for t in rows for m in (t.margin_min, t.margin_q001) if m is not None]
     span(chart, ends, [*margins, least])
     chart.width = page.width_cm
@@ -187,14 +188,14 @@ def frequency_spread(book: Workbook, a: Assessment) -> None:
     page.row += SPREAD_ROWS
     for i, (corner, colour) in enumerate(zip(chosen, (BLUE, ORANGE), strict=False)):
         d = limited_frequency(corner)
-        at = _outline(page, OUTLINE_COLUMN + 4 * i, start, _steps(d, scale), corner.corner.text)
-        add_line(chart, corner.corner.text, *at, colour)
+        points = _outline(page, OUTLINE_COLUMN + 4 * i, start, _steps(d, scale), corner.corner.text)
+        add_line(chart, corner.corner.text, *points, colour)
         spans += [scale.value(d.edges[0]), scale.value(d.edges[-1])]
         top = max(top, *d.counts)
     limits = [scale.value(a.study.design.frequency_low_hz), scale.value(a.study.design.frequency_high_hz)]
     for i, (limit, name) in enumerate(zip(limits, ("lower limit", "upper limit"), strict=True)):
-        at = _outline(page, OUTLINE_COLUMN + 8 + 4 * i, start, [(limit, 0.0), (limit, float(top))], name)
-        add_line(chart, name, *at, RED, dashed=True)
+        points = _outline(page, OUTLINE_COLUMN + 8 + 4 * i, start, [(limit, 0.0), (limit, float(top))], name)
+        add_line(chart, name, *points, RED, dashed=True)
     span(chart, [*spans, *limits], [0.0, float(top)])
     _bars_table(page, chosen, scale)
     chart.width, chart.height = page.width_cm, 12
@@ -237,10 +238,10 @@ def _outline(
 ) -> tuple[Reference, Reference]:
     """Numbers that only a chart needs, to the right of the printed area."""
     sheet = page.sheet
-    sheet.cell(row, column).value = f"chart: {name}"
+    put(at(sheet, row, column), f"numbers of the chart: {name}").font = ink(colour=FAINT)
     for i, (x, y) in enumerate(points, start=1):
-        sheet.cell(row + i, column).value = x
-        sheet.cell(row + i, column + 1).value = y
+        put(at(sheet, row + i, column), x).font = ink(colour=FAINT)
+        put(at(sheet, row + i, column + 1), y).font = ink(colour=FAINT)
     first, last = row + 1, row + len(points)
     return (
         Reference(sheet, min_col=column, min_row=first, max_row=last),
