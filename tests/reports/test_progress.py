@@ -24,8 +24,18 @@ def test_nothing_is_written_when_piped_or_quiet(stream, quiet, monkeypatch):
     assert stream.getvalue() == ""
 
 
+def test_no_animation_with_no_color(monkeypatch):
+    monkeypatch.setenv("TERM", "xterm-256color")
+    monkeypatch.setenv("NO_COLOR", "1")
+    monkeypatch.setattr(sys, "stderr", Terminal())
+    with progress_bar(quiet=False) as advance:
+        advance(1, 10)
+    assert sys.stderr.getvalue() == ""
+
+
 def test_a_watched_run_shows_its_share_and_leaves_no_bar(monkeypatch):
     monkeypatch.setenv("TERM", "xterm-256color")
+    monkeypatch.delenv("NO_COLOR", raising=False)
     monkeypatch.setattr(sys, "stderr", Terminal())
     with progress_bar(quiet=False) as advance:
         advance(5, 10)

@@ -17,7 +17,7 @@ Advance = Callable[[int, int], None]  # (done, total); the total may grow
 def progress_bar(*, quiet: bool, label: str = "simulating") -> Iterator[Advance]:
     """A callback for the studies. The bar vanishes at the end, an interrupted one too."""
     console = make_console(sys.stderr)
-    if quiet or not console.is_terminal or console.is_dumb_terminal:
+    if quiet or console.color_system is None:  # no terminal, or one that asked for no colour and no animation
         yield _nothing
         return
     columns = (

@@ -77,7 +77,7 @@ def _index_row(line: RankLine) -> list[Value]:
     return [
         one_line(line.part), line.total.estimate, line.total.low, line.total.high,
         line.first_order.estimate, line.first_order.low, line.first_order.high, line.mean_total.estimate,
-        "" if line.per_percent is None else per_percent_text(line.per_percent),
+        "" if not line.per_percent else per_percent_text(line.per_percent),
     ]  # fmt: skip
 
 
