@@ -188,7 +188,7 @@ def read_design(items: list[Item], place: Place, problems: Problems) -> DesignSh
         if name not in sheet.items:
             problems.error("missing-item", f'Design has no item "{name}"; add it', place)
     for name, item in sheet.items.items():
-        if name in ITEMS:
+        if name in ITEMS and not item.value.blank:
             field_name, reader = ITEMS[name]
             value = reader(item, problems)
             if value is not None:

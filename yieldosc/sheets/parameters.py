@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
+import numpy as np
+
 from yieldosc.circuits.circuit import Circuit, Role
 from yieldosc.errors import Place
 from yieldosc.parts.ceramic import Class2Law, default_ageing
@@ -108,6 +110,8 @@ class ParameterMaker:
     def _parameter(self, role: Role, row: RoleRow | None) -> Parameter | None:
         before = len(self.problems.findings)
         line = None if row is None else self._line(role, row)
+        if any(f.code == "unknown-part" for f in self.problems.findings[before:]):
+            return None  # its value and tolerance cannot be told
         bounds = BoundsReader(role, row, line, self.default_shape, self.problems).read()
         if bounds is not None and row is not None:
             bounds = self._measured(role, row, bounds)
@@ -191,6 +195,8 @@ class ParameterMaker:
 
     def _in_range(self, role: Role, law: Law | None, place: Place | None) -> None:
         low, high = self.range_c
+        if law is not None and not law.absolute and low is not None and high is not None:
+            self._stays_positive(role, law, (low, high), place)
         if law is None or law.range_c is None or low is None or high is None:
             return
         if low < law.range_c[0] or high > law.range_c[1]:
@@ -200,6 +206,20 @@ class ParameterMaker:
                 f"{low:g} to {high:g} °C; narrow the study or give another law",
                 place,
             )
+
+    def _stays_positive(self, role: Role, law: Law, range_c: tuple[float, float], place: Place | None) -> None:
+        """A law that takes the whole value away inside the study's range describes no part."""
+        ends = [np.full(1, u) for u in (0.0, 1.0)]
+        for temperature_c in range_c:
+            changes = [float(np.min(law.change(temperature_c, dict.fromkeys(law.coefficients, u)))) for u in ends]
+            if min(changes) <= -1:
+                self.problems.error(
+                    "law-impossible",
+                    f"{role.name}: {law.text} would leave nothing of the value at {temperature_c:g} °C; check its sign "
+                    "and its unit",
+                    place,
+                )
+                return
 
     def _pair(self, role: Role, row: RoleRow | None, column: str) -> tuple[float, float]:
         entry = None if row is None else row.cell(column)

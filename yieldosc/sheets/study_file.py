@@ -73,6 +73,8 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
     check_design(sheet, problems)
     rows = sort_rows(tables.rows, problems)
     reading = _bom(book, problems)
+    if not rows and not problems.fatal:
+        problems.error("no-roles", "the sheet Roles has no rows; give each role of the circuit a row", Place("Roles"))
     circuit = _circuit(sheet, rows, problems)
     if circuit is None:
         return None
@@ -131,8 +133,11 @@ def _circuit(sheet: DesignSheet, rows: Mapping[str, RoleRow], problems: Problems
         chosen = registry.complete_options(family.name, options)
     except CircuitError as error:
         for text in error.problems:
-            problems.error("circuit", text, place)
+            option = next((name for name in options if f" {name} " in f"{text} " or f"'{name}'" in text), None)
+            problems.error("circuit", text, place if option is None else sheet.options[option][1])
         return None
+    if not rows:
+        return None  # the missing sheet or rows are an error already
     known = {role.name: role for role in family.roles(chosen)}
     for name, row in rows.items():
         if name not in known:
