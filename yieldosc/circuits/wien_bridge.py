@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
+from yieldosc.circuits.limits import limiter_assumption, limiter_option, limiter_problems, rail_roles
 from yieldosc.circuits.opamp import OPAMP_ROLES, opamp_branches, opamp_symbols, output_node
 from yieldosc.circuits.roles import capacitor, device, resistor
 
@@ -40,7 +41,7 @@ MOST_F_OVER_GBW = 1 / 20
 
 
 def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
-    return ROLES
+    return (*ROLES, *rail_roles(options))
 
 
 def _derive(values: Values, temperature_c: float, own_law: frozenset[str]) -> Derived:
@@ -80,6 +81,10 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         raise CircuitError(["a stabiliser in series with RG needs both RS_start and RS_full; give the missing one"])
     if lamp and "RF_full" in present:
         raise CircuitError(["RS_start/RS_full and RF_full are two stabilisers; keep the one that the board has"])
+    stabilised = bool(lamp) or "RF_full" in present
+    problems = limiter_problems(options, present, stabilised=stabilised)
+    if problems:
+        raise CircuitError(problems)
     q = output_node(present)
     branches = (
         Branch("R1", "R", ("o", "n"), ("R1",)),
@@ -90,12 +95,12 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         Branch("RG", "R", ("m", "gnd"), ("RG",)),
         *opamp_branches(present, plus="p", minus="m"),
     )
-    stabilised = bool(lamp) or "RF_full" in present
+    level = "a stabiliser holds the level" if stabilised else "no stabiliser: the level is limited by clipping"
     return Circuit(
         name="wien_bridge",
         title="Wien bridge",
         options=dict(options),
-        roles=tuple(r for r in ROLES if r.name in present),
+        roles=tuple(r for r in roles(options) if r.name in present),
         branches=branches,
         gain_symbol="RF",
         derive=_derive,
@@ -108,11 +113,11 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         schematic=SCHEMATIC,
         assumptions=(
             "op-amp: one pole at GBW, input currents and offset left out",
-            "a stabiliser holds the level" if stabilised else "no stabiliser: the level is limited by clipping",
+            limiter_assumption(options, undeclared=level),
         ),
         recipe=("wien_bridge", tuple(sorted(options.items())), tuple(sorted(present))),
     )
 
 
-OPTIONS: tuple[Option, ...] = ()
+OPTIONS: tuple[Option, ...] = (limiter_option("agc", "clip"),)
 FAMILY = Family(name="wien_bridge", title="Wien bridge", options=OPTIONS, roles=roles, build=build)

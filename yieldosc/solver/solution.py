@@ -23,6 +23,30 @@ class Status(IntEnum):
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Settling:
+    """How the settled frequencies of n units were found, and how far the quick way was off where it was checked.
+
+    limiter: clip, tanh, exp or agc; method: "fitted shift", "full" (harmonic balance of every unit) or "no shift"
+    (below 1 ppm of the limits' width on a sample); tolerance: relative, of the frequency, by the method used.
+    checked: units solved in full beside the quick way; residual: largest relative difference in frequency among them;
+    largest_shift: largest |settled/first − 1| of these; full: units solved in full because no fit held them; capped:
+    the frequency still moved at the most harmonics allowed; fell_back: the residual missed the tolerance, so that all
+    units were solved in full.
+    """
+
+    limiter: str
+    method: str
+    tolerance: float
+    checked: int = 0
+    residual: float = 0.0
+    largest_shift: float = 0.0
+    full: int = 0
+    capped: int = 0
+    not_converged: int = 0
+    fell_back: bool = False
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Solution:
     """Arrays of length n. Frequencies are finite wherever a gain exists, margins too; see circuits and population.
 
@@ -43,6 +67,7 @@ class Solution:
     resistance_ratio: Array | None = None  # −R/ESR at a crystal's terminals
     control_reach: Array | None = None  # critical gain over gain at full control; below 1 the control is at its stop
     overdriven: NDArray[np.bool_] | None = None
+    settling: Settling | None = None
     audited: int = 0
     disagreeing: int = 0
     exact: int = 0  # units solved by the exact path because the count of growing poles differed
