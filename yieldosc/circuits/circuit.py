@@ -92,6 +92,23 @@ class Derived:
     no_bias: NDArray[np.bool_] | None = None
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Direct:
+    """What a circuit without a network says of n units: arrays (n,), None where it does not apply.
+
+    latches: never switches back, so that there is no oscillation; duty: share of a period at the high level;
+    distortion: harmonics over the fundamental; amplitude_v: peak fundamental; phase_deg: of the fundamental, against
+    the square wave's.
+    """
+
+    frequency_hz: Array
+    latches: NDArray[np.bool_]
+    duty: Array | None = None
+    amplitude_v: Array | None = None
+    distortion: Array | None = None
+    phase_deg: Array | None = None
+
+
 @dataclass(frozen=True, kw_only=True)
 class Circuit:
     """A built circuit. `derive(values, temperature_c, own_law)` turns role values (n,) into branch symbols (n,);
@@ -102,13 +119,16 @@ class Circuit:
     options: Mapping[str, str]
     roles: tuple[Role, ...]  # those that are present, defaults included
     branches: tuple[Branch, ...]
-    gain_symbol: str
+    gain_symbol: str  # empty where `direct` answers: such a circuit has no branches and no start-up question
     derive: Callable[[Values, float, frozenset[str]], Derived]
     design_frequency: Callable[[Values], Array]  # the closed form at the unit's own values [Hz]
     closed_form: str
     band: Callable[[Values], tuple[Array, Array]] | None = None  # centre [Hz] and half-width in |ln f|; None: ln 2
     gain_of: Callable[[Mapping[str, Array], Array], Array] | None = None  # (symbols, g) → gain; its ratio is the margin
     control_reach: Callable[[Mapping[str, Array], Values, Array], Array] | None = None  # (symbols, values, g_c) → reach
+    direct: Callable[[Values, float], Direct] | None = None  # (values, temperature_c): formulas in place of a network
+    crystal_arm: tuple[str, str, str] | None = None  # symbols (Lm, Cm, Rm) of the arm that it is meant to run on
+    fixed_gain: bool = False  # other active rows beside the gain element: poles may grow before it does anything
     not_assessable: Callable[[Values, Array], NDArray[np.bool_]] | None = None  # (values, frequency_hz) → outside range
     range_text: str = ""
     schematic: str = ""

@@ -1,6 +1,6 @@
-"""Colpitts, and Clapp with C3: one coil, a capacitive tap, a three-terminal stage in one of three grounds.
+"""Colpitts and Clapp: tank L, C1, C2 around one stage.
 
-f = 1/(2π√(L C1C2/(C1+C2))), with C3 in series: 1/C = 1/C1 + 1/C2 + 1/C3.
+f = 1/(2π√(L C)), C = CP + C1C2/(C1+C2); with C3 in series: 1/(C − CP) = 1/C1 + 1/C2 + 1/C3.
 """
 
 from __future__ import annotations
@@ -10,79 +10,104 @@ from collections.abc import Mapping
 import numpy as np
 from numpy.typing import NDArray
 
+from yieldosc.circuits import opamp
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
-from yieldosc.circuits.roles import capacitor, coil_resistance, inductor
+from yieldosc.circuits.colpitts_drawings import SCHEMATICS
+from yieldosc.circuits.roles import capacitor, coil_resistance, device, inductor, resistor
 from yieldosc.circuits.stages import (
-    EMITTER_ROLES,
+    BIAS_OPTION,
     FEED_ROLES,
+    Resistance,
     Stage,
-    bjt,
+    bias_problems,
+    chosen_stage,
     emitter_branches,
-    emitter_resistance_ohm,
+    emitter_problems,
+    emitter_roles,
     feed_branches,
+    feed_problems,
     feed_resistance_ohm,
+    outside_range,
     stage_branches,
+    stage_derive,
+    stage_option,
+    total_ohm,
 )
 
 OPTIONS = (
-    Option("ground", ("emitter", "base", "collector"), "which terminal is at signal ground"),
-    Option("stage", ("bjt",), "the active part"),
-    Option("bias", ("divider", "collector"), "RB1 and RB2 from VCC, or RB1 from the collector"),
+    Option("ground", ("emitter", "base", "collector"), "which terminal (source, gate, drain) is at signal ground"),
+    stage_option("bjt", "jfet", "mosfet", "opamp"),
+    BIAS_OPTION,
 )
 TANK_ROLES = (
     inductor("L", "tank coil"),
     coil_resistance("L_dcr", "L"),
+    capacitor("CP", "across L", optional=True),
     capacitor("C3", "in series with L (Clapp)", optional=True),
-    capacitor("C1", "tap, output side (emitter ground: c–gnd; base: c–e; collector: b–e)"),
-    capacitor("C2", "tap, input side (emitter ground: m–gnd; base: e–gnd; collector: e–gnd)"),
+    capacitor("C1", "tap, output side (emitter ground: c–gnd; base: c–e; collector: b–e; opamp: o–gnd)"),
+    capacitor("C2", "tap, input side (emitter ground: m–gnd; base: e–gnd; collector: e–gnd; opamp: g–gnd)"),
 )
 COUPLING = capacitor("CC", "coupling from the tank to b; absent with C3", optional=True)
 BASE_BYPASS = capacitor("CB", "base by-pass to ground")
-MOST_F_OVER_FT = 1 / 10
+AMPLIFIER_ROLES = (
+    device("RO", "Ω", "output resistance of the op-amp, with any resistor outside its feedback loop", kind="ic"),
+    resistor("RIN", "tank to inverting input"),
+    opamp.FEEDBACK_ROLE,
+    opamp.GBW_ROLE,
+)
 
 
 def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
-    stage = bjt(options["bias"])
+    if options["stage"] == "opamp":
+        return (*TANK_ROLES, *AMPLIFIER_ROLES)
+    stage = chosen_stage(options)
     ground = options["ground"]
     extra = {"emitter": (COUPLING,), "base": (BASE_BYPASS,), "collector": (COUPLING,)}[ground]
     load = tuple(r for r in FEED_ROLES if ground != "collector" or r.name == "RL")
-    return (*TANK_ROLES, *extra, *EMITTER_ROLES, *load, *stage.roles)
+    return (*TANK_ROLES, *extra, *emitter_roles(stage), *load, *stage.roles)
 
 
-def _problems(options: Mapping[str, str], present: frozenset[str]) -> list[str]:
+def _problems(options: Mapping[str, str], present: frozenset[str], stage: Stage) -> list[str]:
     ground = options["ground"]
-    problems = []
+    first = stage.emitter[0]
+    common, _, output = stage.terminals
+    problems = bias_problems(options)
     feed = {"RC", "LCH"} & present
     if ground == "emitter" and not feed:
-        problems.append("the collector has no DC path: give RC, LCH or both")
+        problems.append(f"the {output} has no DC path: give RC, LCH or both")
     if ground == "base" and "C3" in present and not feed:
         problems.append("with C3 the coil carries no DC: give RC, LCH or both as the feed of c")
-    if ground in ("base", "collector") and "RE" not in present:
-        problems.append(f"ground = {ground} needs RE: it carries the emitter's DC current")
-    if ground != "base" and "C3" not in present and "CC" not in present:
-        problems.append("without C3 the coil would short the base bias: give CC")
+    if ground in ("base", "collector") and first not in present:
+        problems.append(f"ground = {ground} needs {first}: it carries the {common}'s DC current")
+    # a field-effect gate may rest on the coil at DC ground; a base would lose its bias, a drain's supply would reach it
+    grounded_gate = ground == "collector" and stage.name != "bjt"
+    if ground != "base" and "C3" not in present and "CC" not in present and not grounded_gate:
+        problems.append(f"without C3 the coil would short the {stage.terminals[1]} bias: give CC")
     if ground != "base" and "C3" in present and "CC" in present:
         problems.append("with C3 the tank needs no coupling capacitor: remove CC")
     if ground == "collector" and options["bias"] == "collector":
         problems.append(
             "bias = collector with the collector at the supply is the same as RB1 from VCC: use bias = divider"
         )
-    if "LCH_dcr" in present and "LCH" not in present:
-        problems.append("LCH_dcr without LCH: give the choke, or remove its resistance")
-    return problems
+    return problems + feed_problems(present) + emitter_problems(stage, present, bypass=ground == "emitter")
 
 
 def _tank(top: str, bottom: str, present: frozenset[str]) -> tuple[Branch, ...]:
     coil = ("L", "L_dcr") if "L_dcr" in present else ("L",)
-    if "C3" not in present:
-        return (Branch("L", "L", (top, bottom), coil),)
-    return (Branch("L", "L", (top, "l"), coil), Branch("C3", "C", ("l", bottom), ("C3",)))
+    foot = "l" if "C3" in present else bottom
+    rows = [Branch("L", "L", (top, foot), coil)]
+    if "CP" in present:
+        rows.append(Branch("CP", "C", (top, foot), ("CP",)))
+    if "C3" in present:
+        rows.append(Branch("C3", "C", ("l", bottom), ("C3",)))
+    return tuple(rows)
 
 
 def _table(options: Mapping[str, str], present: frozenset[str], stage: Stage) -> tuple[Branch, ...]:
     ground = options["ground"]
     b = "b" if "CC" in present or ground == "base" else "m"
-    e, emitter = emitter_branches(present, bypass=ground == "emitter")
+    e, emitter = emitter_branches(present, bypass=ground == "emitter", stage=stage)
+    c = "gnd" if ground == "collector" else "c"
     if ground == "emitter":
         rows = (
             *_tank("c", "m", present),
@@ -90,7 +115,6 @@ def _table(options: Mapping[str, str], present: frozenset[str], stage: Stage) ->
             Branch("C2", "C", ("m", "gnd"), ("C2",)),
             *feed_branches(present),
         )
-        c = "c"
     elif ground == "base":
         rows = (
             *_tank("c", "gnd", present),
@@ -99,7 +123,6 @@ def _table(options: Mapping[str, str], present: frozenset[str], stage: Stage) ->
             Branch("CB", "C", ("b", "gnd"), ("CB",)),
             *feed_branches(present),
         )
-        c = "c"
     else:
         rows = (
             *_tank("m", "gnd", present),
@@ -107,55 +130,49 @@ def _table(options: Mapping[str, str], present: frozenset[str], stage: Stage) ->
             Branch("C2", "C", (e, "gnd"), ("C2",)),
             *((Branch("RL", "R", (e, "gnd"), ("RL",)),) if "RL" in present else ()),
         )
-        c = "gnd"
     coupling = (Branch("CC", "C", ("m", "b"), ("CC",)),) if "CC" in present else ()
     return (*rows, *coupling, *emitter, *stage_branches(stage, b, c, e))
 
 
 def design_frequency(values: Values) -> Array:
-    """1/(2π√(L C)), C the series connection of C1, C2 and C3 [Hz]."""
+    """1/(2π√(L C)), C the capacitance that the coil sees [Hz]."""
     inverse = 1 / values["C1"] + 1 / values["C2"]
     if "C3" in values:
         inverse = inverse + 1 / values["C3"]
-    return np.asarray(np.sqrt(inverse / values["L"]) / (2 * np.pi))
-
-
-def _not_assessable(values: Values, frequency_hz: Array) -> NDArray[np.bool_]:
-    with np.errstate(invalid="ignore"):
-        return np.asarray(frequency_hz > values["fT"] * MOST_F_OVER_FT)
+    seen = 1 / inverse + values["CP"] if "CP" in values else 1 / inverse
+    return np.asarray(1 / (2 * np.pi * np.sqrt(values["L"] * seen)))
 
 
 def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     """The branch table for the roles that are present."""
-    problems = _problems(options, present)
+    if options["stage"] == "opamp":
+        return _build_opamp(options, present)
+    stage = chosen_stage(options)
+    problems = _problems(options, present, stage)
     if problems:
         raise CircuitError(problems)
-    stage = bjt(options["bias"])
     branches = _table(options, present, stage)
     coil_feeds = options["ground"] == "base" and "C3" not in present
-    part_names = {name for row in branches for name in row.symbols} - set(stage.symbols) - {"feed_series"}
 
-    def derive(values: Values, temperature_c: float, own_law: frozenset[str]) -> Derived:
-        rfeed = values.get("L_dcr", np.float64(0.0)) if coil_feeds else feed_resistance_ohm(values)
-        bias = stage.solve(values, temperature_c, own_law, rfeed, emitter_resistance_ohm(values))
-        symbols = {name: values[name] for name in part_names}
-        if "LCH" in values:
-            symbols["feed_series"] = np.asarray(feed_resistance_ohm(values))
-        return Derived(symbols | bias.symbols, bias.no_bias)
+    def rfeed(values: Values) -> Resistance:
+        return total_ohm(values, "L_dcr") if coil_feeds else feed_resistance_ohm(values)
 
-    name = "Clapp" if "C3" in present else "Colpitts"
+    def outside(values: Values, frequency_hz: Array) -> NDArray[np.bool_]:
+        return outside_range(stage, values, frequency_hz)
+
+    kind = "Clapp" if "C3" in present else "Colpitts"
     return Circuit(
         name="colpitts",
-        title=f"{name}, {options['ground']} at signal ground",
+        title=f"{kind}, {_terminal(options['ground'], stage)} at signal ground",
         options=dict(options),
         roles=tuple(r for r in roles(options) if r.name in present),
         branches=branches,
         gain_symbol="gm",
-        derive=derive,
+        derive=stage_derive(stage, branches, rfeed=rfeed),
         design_frequency=design_frequency,
-        closed_form="f = 1/(2π√(L·C)), 1/C = 1/C1 + 1/C2 (+ 1/C3)",
-        not_assessable=_not_assessable,
-        range_text="f below fT/10 (the stage's input is one capacitance)",
+        closed_form=CLOSED_FORM,
+        not_assessable=outside,
+        range_text=stage.range_text,
         assumptions=stage.assumptions,
         supply_role=stage.supply_role,
         schematic=SCHEMATICS[options["ground"]],
@@ -163,28 +180,46 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-SCHEMATICS = {
-    "emitter": """
-      VCC ─[RC]─[LCH]─┬─ c ──── L ──[C3]── m ──[CC]── b
-                      │                    │
-                      C1                   C2          e ──RE──[RE2 ∥ CE]── gnd
-                      │                    │
-                     gnd                  gnd
-""",
-    "base": """
-      c ──┬── L ──[C3]── gnd      b ──CB── gnd
-          C1
-          ├── e ──RE──[RE2]── gnd
-          C2
-          │
-         gnd
-""",
-    "collector": """
-      c at the supply      m ── L ──[C3]── gnd      m ──[CC]── b
-      b ──C1──┬── e ──RE── gnd
-              C2
-              │
-             gnd
-""",
-}
+def _terminal(ground: str, stage: Stage) -> str:
+    return stage.terminals[("emitter", "base", "collector").index(ground)]
+
+
+def _build_opamp(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
+    """Inverting amplifier: RO q–o, C1 o–gnd, L o–g, C2 g–gnd, RIN g–m, RF q–m."""
+    problems = bias_problems(options)
+    if options["ground"] != "emitter":
+        problems.append(f"ground = {options['ground']} is a transistor's; stage = opamp inverts: leave the option out")
+    if problems:
+        raise CircuitError(problems)
+    branches = (
+        *_tank("o", "g", present),
+        Branch("C1", "C", ("o", "gnd"), ("C1",)),
+        Branch("C2", "C", ("g", "gnd"), ("C2",)),
+        Branch("RIN", "R", ("g", "m"), ("RIN",)),
+        *opamp.inverting_branches(present),
+    )
+    parts = {name for row in branches for name in row.symbols} - {"tau"}
+
+    def derive(values: Values, temperature_c: float, own_law: frozenset[str]) -> Derived:
+        return Derived({name: values[name] for name in parts} | opamp.opamp_symbols(values))
+
+    return Circuit(
+        name="colpitts",
+        title=f"{'Clapp' if 'C3' in present else 'Colpitts'} around an inverting op-amp",
+        options=dict(options),
+        roles=tuple(r for r in roles(options) if r.name in present),
+        branches=branches,
+        gain_symbol="RF",
+        derive=derive,
+        design_frequency=design_frequency,
+        closed_form=CLOSED_FORM,
+        not_assessable=opamp.outside_gbw,
+        range_text=opamp.RANGE_TEXT,
+        assumptions=(opamp.ASSUMPTION, "no stabiliser: the level is limited by clipping"),
+        schematic=SCHEMATICS["opamp"],
+        recipe=("colpitts", tuple(sorted(options.items())), tuple(sorted(present))),
+    )
+
+
+CLOSED_FORM = "f = 1/(2π√(L·C)), C = CP + Cs, 1/Cs = 1/C1 + 1/C2 (+ 1/C3)"
 FAMILY = Family(name="colpitts", title="Colpitts and Clapp", options=OPTIONS, roles=roles, build=build)

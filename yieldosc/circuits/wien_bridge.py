@@ -8,11 +8,18 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 import numpy as np
-from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
 from yieldosc.circuits.limits import limiter_assumption, limiter_option, limiter_problems, rail_roles
-from yieldosc.circuits.opamp import OPAMP_ROLES, opamp_branches, opamp_symbols, output_node
+from yieldosc.circuits.opamp import (
+    ASSUMPTION,
+    OPAMP_ROLES,
+    RANGE_TEXT,
+    opamp_branches,
+    opamp_symbols,
+    output_node,
+    outside_gbw,
+)
 from yieldosc.circuits.roles import capacitor, device, resistor
 
 SCHEMATIC = """
@@ -37,7 +44,6 @@ ROLES = (
     device("RF_full", "Ω", "RF at full control (diodes or thermistor across RF)", optional=True, kind="any"),
     *OPAMP_ROLES,
 )
-MOST_F_OVER_GBW = 1 / 20
 
 
 def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
@@ -65,13 +71,6 @@ def _reach(symbols: Mapping[str, Array], values: Values, critical_rf: Array) -> 
     """Critical gain over gain at full control: 1 or more where the stabiliser can hold the level."""
     full = values.get("RF_full", values["RF"]) / (values["RG"] + values.get("RS_full", np.float64(0.0)))
     return _noise_gain(symbols, critical_rf) / (1 + full)
-
-
-def _not_assessable(values: Values, frequency_hz: Array) -> NDArray[np.bool_]:
-    if "GBW" not in values:
-        return np.zeros(np.shape(frequency_hz), dtype=bool)
-    with np.errstate(invalid="ignore"):
-        return np.asarray(frequency_hz > values["GBW"] * MOST_F_OVER_GBW)
 
 
 def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
@@ -108,11 +107,11 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         closed_form="f = 1/(2π√(R1·C1·R2·C2)); starts when 1 + RF/(RG + RS_start) exceeds 1 + R1/R2 + C2/C1",
         gain_of=_noise_gain,
         control_reach=_reach if stabilised else None,
-        not_assessable=_not_assessable,
-        range_text="f below GBW/20 (single-pole op-amp model)",
+        not_assessable=outside_gbw,
+        range_text=RANGE_TEXT,
         schematic=SCHEMATIC,
         assumptions=(
-            "op-amp: one pole at GBW, input currents and offset left out",
+            ASSUMPTION,
             limiter_assumption(options, undeclared=level),
         ),
         recipe=("wien_bridge", tuple(sorted(options.items())), tuple(sorted(present))),
