@@ -10,6 +10,7 @@ import json
 import os
 import sys
 from collections.abc import Sequence
+from itertools import pairwise
 
 from yieldosc.cli.arguments import parse
 from yieldosc.cli.streams import Streams
@@ -45,7 +46,7 @@ def main(argv: Sequence[str] | None = None) -> int:
 
 def _json_target(words: Sequence[str]) -> str | None:
     """Where JSON goes, known before the command line is understood, so that its errors can be JSON too."""
-    for word, following in zip(words, [*words[1:], ""], strict=True):
+    for word, following in pairwise([*words, ""]):
         if word == "--json":
             return following
         if word.startswith("--json="):

@@ -21,7 +21,12 @@ class Parser(argparse.ArgumentParser):
 def parse(words: Sequence[str]) -> argparse.Namespace:
     """The parsed command line; `run` is the function that carries it out."""
     parser = _parser()
-    arguments = parser.parse_args(list(words))
+    arguments, rest = parser.parse_known_args(list(words))
+    if rest and hasattr(arguments, "values") and not any(word.startswith("-") for word in rest):
+        arguments.values = [*arguments.values, *rest]  # ROLE=VALUE words may stand after an option
+        rest = []
+    if rest:
+        raise refusal("command", f"unrecognized arguments: {' '.join(rest)}; see yieldosc --help")
     if not hasattr(arguments, "run"):
         raise refusal("command", "a command is needed; see yieldosc --help")
     return arguments
