@@ -135,7 +135,8 @@ def _roles(sheet: Worksheet, roles: tuple[Role, ...], proposals: list[Proposal],
         if _left_out(role, proposal):
             continue
         r += 1
-        open_cells += _role(sheet, r, role, proposal, lines.get(proposal.part or ""))
+        owner = by_role["FL"] if role.name == "CL" and "FL" in by_role else proposal  # a load is a figure of the crystal
+        open_cells += _role(sheet, r, role, proposal, lines.get(owner.part or ""))
     _choices(sheet, "L", PEDIGREES, r)
     _widths(sheet)
     return open_cells
@@ -170,6 +171,8 @@ def _role(sheet: Worksheet, r: int, role: Role, proposal: Proposal, line: BomLin
         load = None if line is None else line.load_f
         if load is None:
             leave_open("Typ", "load capacitance")
+        else:
+            _write(sheet, r, COLUMNS.index("Typ") + 1, format_quantity(load, "F"))
     elif not role.main:
         for column in ("Min", "Typ", "Max"):
             leave_open(column, column.lower())
