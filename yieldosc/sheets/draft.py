@@ -135,7 +135,8 @@ def _roles(sheet: Worksheet, roles: tuple[Role, ...], proposals: list[Proposal],
         if _left_out(role, proposal):
             continue
         r += 1
-        owner = by_role["FL"] if role.name == "CL" and "FL" in by_role else proposal  # a load is a figure of the crystal
+        # a load is a figure of the crystal
+        owner = by_role["FL"] if role.name == "CL" and "FL" in by_role else proposal
         open_cells += _role(sheet, r, role, proposal, lines.get(owner.part or ""))
     _choices(sheet, "L", PEDIGREES, r)
     _widths(sheet)
