@@ -108,3 +108,19 @@ def test_cautions(make_study, shared):
             "93 %, the others lie outside."
         )
     assert remarks.cautions(lots if shared else None) == tuple(expected)
+
+
+@pytest.mark.parametrize(
+    ("low", "high", "text"),
+    [
+        (1.0, 1.0, "in more than nine of ten simulated lots of 256 units none failed"),
+        (0.0, 0.0, "in more than nine of ten simulated lots of 256 units none was good"),
+        (0.5, 1.0, "nine lots in ten yield from 50 % to all of 256 units, the others lie outside"),
+        (0.0, 0.5, "nine lots in ten yield from none of 256 units to 50 %, the others lie outside"),
+    ],
+)
+def test_lots_never_read_all_or_nothing(low, high, text):
+    lots = Lots(lots=1024, units_per_lot=256, q05=low, q50=0.8, q95=high, share_below_target=None)
+    assert remarks.cautions(lots)[-1] == (
+        f"Parts of a reel are alike: the interval describes the pooled rate; {text}."
+    )

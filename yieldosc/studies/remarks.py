@@ -151,8 +151,17 @@ def cautions(shared: Lots | None) -> tuple[str, ...]:
         "The interval covers sampling only; the range over the sets tried shows what assumptions do, and is no bound.",
     ]
     if shared is not None:
-        made.append(
-            "Parts of a reel are alike: the interval describes the pooled rate; nine lots in ten yield from "
-            f"{100 * shared.q05:.3g} % to {100 * shared.q95:.3g} %, the others lie outside."
-        )
+        made.append(f"Parts of a reel are alike: the interval describes the pooled rate; {_lots_text(shared)}.")
     return tuple(made)
+
+
+def _lots_text(shared: Lots) -> str:
+    """How lots spread, without a count that reads 0 % or 100 %."""
+    size = f"{shared.units_per_lot:,} units"
+    if shared.q05 >= 1:
+        return f"in more than nine of ten simulated lots of {size} none failed"
+    if shared.q95 <= 0:
+        return f"in more than nine of ten simulated lots of {size} none was good"
+    low = f"{100 * shared.q05:.3g} %" if shared.q05 > 0 else f"none of {size}"
+    high = f"{100 * shared.q95:.3g} %" if shared.q95 < 1 else f"all of {size}"
+    return f"nine lots in ten yield from {low} to {high}, the others lie outside"
