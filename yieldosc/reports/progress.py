@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import sys
+import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 
@@ -10,6 +11,7 @@ from rich.progress import BarColumn, Progress, TaskProgressColumn, TextColumn, T
 
 from yieldosc.reports.terminal import make_console
 
+REDRAWN_EVERY_S = 0.1
 Advance = Callable[[int, int], None]  # (done, total); the total may grow
 
 
@@ -24,11 +26,17 @@ def progress_bar(*, quiet: bool, label: str = "simulating") -> Iterator[Advance]
         TextColumn("{task.description}"), BarColumn(bar_width=40), TaskProgressColumn(), TextColumn("elapsed"),
         TimeElapsedColumn(), TextColumn("left"), TimeRemainingColumn(),
     )  # fmt: skip
-    with Progress(*columns, console=console, transient=True) as progress:
+    # drawn from the callback, not by a thread of its own: with a second thread workers could not be forked
+    with Progress(*columns, console=console, transient=True, auto_refresh=False) as progress:
         task = progress.add_task(label, total=None)
+        drawn = 0.0
 
         def advance(done: int, total: int) -> None:
+            nonlocal drawn
             progress.update(task, completed=done, total=total)
+            if time.monotonic() - drawn > REDRAWN_EVERY_S:
+                drawn = time.monotonic()
+                progress.refresh()
 
         yield advance
 
