@@ -4,11 +4,38 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 
-from yieldosc.circuits import colpitts, pierce, wien_bridge
+from yieldosc.circuits import (
+    colpitts,
+    crystal_colpitts,
+    crystal_common_base,
+    hartley,
+    phase_shift,
+    pierce,
+    quadrature,
+    schmitt_rc,
+    square_to_sine,
+    timer_astable,
+    twin_t,
+    wien_bridge,
+)
 from yieldosc.circuits.circuit import Circuit, CircuitError, Family
 
 FAMILIES: dict[str, Family] = {
-    module.FAMILY.name: module.FAMILY for module in (wien_bridge, colpitts, pierce)
+    module.FAMILY.name: module.FAMILY
+    for module in (
+        wien_bridge,
+        phase_shift,
+        twin_t,
+        quadrature,
+        colpitts,
+        hartley,
+        pierce,
+        crystal_colpitts,
+        crystal_common_base,
+        timer_astable,
+        schmitt_rc,
+        square_to_sine,
+    )
 }
 
 

@@ -63,6 +63,9 @@ class Solution:
     upper_ratio: Array | None = None
     other_mode_hz: Array | None = None
     distortion: Array | None = None
+    duty: Array | None = None  # share of a period at the high level
+    amplitude_v: Array | None = None  # peak of the fundamental
+    phase_deg: Array | None = None  # of the fundamental, against its source's
     drive_w: Array | None = None
     resistance_ratio: Array | None = None  # −R/ESR at a crystal's terminals
     control_reach: Array | None = None  # critical gain over gain at full control; below 1 the control is at its stop
