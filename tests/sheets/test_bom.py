@@ -12,6 +12,7 @@ from yieldosc.errors import InputError
 from yieldosc.sheets.bom import read_bom, reel_key
 from yieldosc.sheets.bomline import BomLine
 from yieldosc.sheets.grid import EMPTY, Cell, Grid
+from yieldosc.sheets.opening import open_book
 
 
 def one(value: str, description: str = "", designator: str = "R1") -> BomLine:
@@ -308,3 +309,11 @@ def test_long_cells_take_no_long_time(text: str) -> None:
     start = time.monotonic()
     read("Ref|Value|Description|MPN|Qty|Tolerance", "|".join([text] * 6), "R1|1k||||")
     assert time.monotonic() - start < 3.0
+
+
+@pytest.mark.parametrize("text", ["ESR 80R", "ESR 80 Ω max", "80 ohm"])
+def test_a_crystals_resistance_in_any_notation(tmp_path, text):
+    path = tmp_path / "bom.csv"
+    path.write_text(f"Reference,Value,Description\nY1,8MHz,Crystal 8.000 MHz 12pF 20ppm {text}\n", encoding="utf-8")
+    (line,) = read_bom(open_book(path)).lines
+    assert (line.value, line.load_f, line.esr_ohm) == (8e6, 12e-12, 80.0)

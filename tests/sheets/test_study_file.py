@@ -7,6 +7,7 @@ import pytest
 from openpyxl import load_workbook
 
 from tests.sheets.studies import write
+from yieldosc.circuits import registry
 from yieldosc.errors import InputError
 from yieldosc.parts.shapes import Measured, Split
 from yieldosc.sheets.study_file import is_study, load_study
@@ -175,14 +176,14 @@ REFUSED = [
                 "error",
                 "circuit",
                 "Design!B2",
-                "there is no circuit named 'wobble'; the circuits are wien_bridge, colpitts, pierce",
+                f"there is no circuit named 'wobble'; the circuits are {', '.join(registry.names())}",
             )
         ],
     ),
     (
         "option",
         {"design": {"option stage": "bjt"}},
-        [("error", "circuit", "Design!B9", "wien_bridge has no option 'stage'; its options are: none")],
+        [("error", "circuit", "Design!B9", "wien_bridge has no option 'stage'; its options are: limiter")],
     ),
     (
         "supply no role",

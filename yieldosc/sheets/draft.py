@@ -59,7 +59,13 @@ def write_draft(book: Book, *, circuit: str, options: Mapping[str, str], path: P
         for p in proposals
         if p.doubt
     ]
-    return Draft(tuple(proposals), tuple(open_cells), (*reading.findings, *doubts))
+    return Draft(tuple(_worth_telling(roles, proposals)), tuple(open_cells), (*reading.findings, *doubts))
+
+
+def _worth_telling(roles: tuple[Role, ...], proposals: list[Proposal]) -> list[Proposal]:
+    """Proposals for the roles that the draft holds, and optional roles that several parts might play."""
+    by_name = {role.name: role for role in roles}
+    return [p for p in proposals if not _left_out(by_name[p.role], p) or (p.part is None and "are possible" in p.reason)]
 
 
 def _write(sheet: Worksheet, row: int, column: int, text: str, *, fill: PatternFill | None = None) -> None:

@@ -125,7 +125,12 @@ def read_crystal(part: PartFacts, sources: list[Source], ordered: list[Source]) 
     ]
     for source, amount in loads[:1]:
         part.load_f, part.given["load"] = amount.value, Given(amount.text, source.place)
-    resistances = [(s, a) for s in own["esr"] + words for a in s.facts.of("Ω") if a.value >= 1]
+    resistances = [
+        (s, a)
+        for s in own["esr"] + words
+        for a in (*s.facts.of("Ω"), *(b for b in s.facts.bare if b.si_unit == "Ω"))  # "80 Ω" and "80R"
+        if a.value >= 1
+    ]
     for source, amount in resistances[:1]:
         part.esr_ohm, part.given["esr"] = amount.value, Given(amount.text, source.place)
     for source in words:
