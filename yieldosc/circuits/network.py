@@ -152,11 +152,12 @@ def _determinant(matrix: list[list[Entry]]) -> Entry:
                             target[mask] = target.get(mask, 0) + sign * a * b
         states = {c: {m: v for m, v in p.items() if v} for c, p in following.items()}
         if sum(len(p) for p in states.values()) > 40 * MOST_TERMS:
-            raise NetworkError(_too_large())
+            raise NetworkError(too_large())
     return states.get((1 << size) - 1, {})
 
 
-def _too_large() -> str:
+def too_large() -> str:
+    """Why a table of more than MOST_TERMS terms is refused, and what helps."""
     return (
         f"the branch table expands to more than {MOST_TERMS:,} terms; leave out branches that do not matter "
         "at the oscillation frequency, or merge series and parallel parts"
@@ -177,7 +178,7 @@ def _expand(determinant: Entry, placed: list[tuple[int, int, Contribution]]) -> 
         for term, value in poly.items():
             total[term] = total.get(term, 0) + value
         if len(total) > MOST_TERMS:
-            raise NetworkError(_too_large())
+            raise NetworkError(too_large())
     return {term: value for term, value in total.items() if value}
 
 

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
+from typing import Any
 
 from yieldosc.circuits import (
     colpitts,
     crystal_colpitts,
     crystal_common_base,
     hartley,
+    own_circuit,
     phase_shift,
     pierce,
     quadrature,
@@ -87,6 +89,9 @@ def build(name: str, options: Mapping[str, str] | None = None, present: Iterable
     return circuit
 
 
-def rebuild(name: str, options: tuple[tuple[str, str], ...], present: tuple[str, ...]) -> Circuit:
-    """A circuit from its recipe."""
+def rebuild(name: str, *recipe: Any) -> Circuit:
+    """A circuit from its recipe: options and present roles of a family, or rows and design frequency of an own one."""
+    if name == own_circuit.NAME:
+        return own_circuit.build_own(*recipe)
+    options, present = recipe
     return build(name, dict(options), present)
