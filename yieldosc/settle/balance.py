@@ -12,6 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.settle.limiter import Limiter
+from yieldosc.settle.linear import newton_step
 from yieldosc.settle.transfer import Response
 
 Array = NDArray[np.float64]
@@ -19,6 +20,7 @@ ComplexArray = NDArray[np.complex128]
 Mask = NDArray[np.bool_]
 MOST_STEPS = 25
 SETTLED_STEP = 1e-6  # step of shift and amplitudes below which a unit stands still: the next would be its square
+MOST_SAMPLES = 65536
 LARGEST_STEP = 0.3  # in ln ω, and in amplitude over X_1: a longer step is shortened
 
 
@@ -49,9 +51,14 @@ def orders_up_to(most: int, *, odd: bool, mean: bool) -> NDArray[np.int64]:
     return np.arange(0 if mean else 1, most + 1)
 
 
-def samples_for(most: int, limiter: Limiter) -> int:
-    """Points per period: a clipped wave's corners fall between samples, so it needs more of them."""
-    return max(64, 4 * (most + 1)) if limiter.smooth else max(256, 8 * (most + 1))
+def samples_for(most: int, limiter: Limiter, level: Array) -> NDArray[np.int64]:
+    """Points per period (n,), powers of two, for harmonics up to `most` of waves of these amplitudes.
+
+    A clipped wave's corners fall between samples; the harder a limiter is driven, the steeper are its edges.
+    """
+    least = max(64, 4 * (most + 1)) if limiter.smooth else max(256, 8 * (most + 1))
+    wanted = np.clip(limiter.samples_per_level * level, least, MOST_SAMPLES)
+    return np.asarray(2 ** np.ceil(np.log2(wanted)), dtype=np.int64)
 
 
 def spectrum(
@@ -59,12 +66,16 @@ def spectrum(
     x: ComplexArray,
     orders: NDArray[np.int64],
     skew: Array,
-    points: int,
+    points: NDArray[np.int64],
     wanted: NDArray[np.int64],
 ) -> ComplexArray:
-    """U_n of the limiter's output for the wanted orders; peak values, the mean for order 0."""
-    y, _ = limiter.respond(_samples(x, orders, points), skew[:, None])
-    return _harmonics(y, wanted)
+    """U_n of the limiter's output for the wanted orders; peak values, the mean for order 0. points: (n,)."""
+    out = np.empty((len(x), len(wanted)), dtype=np.complex128)
+    for count in np.unique(points):
+        rows = np.flatnonzero(points == count)
+        y, _ = limiter.respond(_samples(x[rows], orders, int(count)), skew[rows, None])
+        out[rows] = _harmonics(y, wanted)
+    return out
 
 
 def _samples(x: ComplexArray, orders: NDArray[np.int64], points: int) -> Array:
@@ -78,11 +89,12 @@ def _harmonics(y: Array, orders: NDArray[np.int64]) -> ComplexArray:
     return np.where(orders == 0, u, 2 * u)
 
 
-def balance(limiter: Limiter, network: Response, start: Wave, skew: Array) -> Wave:
-    """Newton from `start`; units that do not converge keep the last estimate and say so. Cost per step and unit: one
-    solution of a real system of twice the number of harmonics, and three transforms."""
+def balance(limiter: Limiter, network: Response, start: Wave, skew: Array, points: int) -> Wave:
+    """Newton from `start` with so many points per period; units that do not converge keep the last estimate and say so.
+
+    Cost per step and unit: one real system of twice the number of harmonics, and three transforms.
+    """
     n, orders = len(start.x), start.orders
-    points = samples_for(int(orders[-1]), limiter)
     shift, x = start.shift.copy(), start.x.copy()
     converged = np.zeros(n, dtype=bool)
     active = np.arange(n)
@@ -93,7 +105,7 @@ def balance(limiter: Limiter, network: Response, start: Wave, skew: Array) -> Wa
         active, residual, jacobian = active[usable], residual[usable], jacobian[usable]
         if not active.size:
             break
-        step = _solved(jacobian, residual)
+        step = newton_step(jacobian, residual, orders)
         size = np.abs(x[active][:, orders == 1][:, 0])
         length = np.maximum(np.abs(step[:, 0]), np.max(np.abs(step[:, 1:]), axis=1) / size)
         step *= np.minimum(1.0, LARGEST_STEP / np.maximum(length, 1e-300))[:, None]
@@ -105,19 +117,6 @@ def balance(limiter: Limiter, network: Response, start: Wave, skew: Array) -> Wa
         if not active.size:
             break
     return Wave(shift, x, orders, converged)
-
-
-def _solved(jacobian: Array, residual: Array) -> Array:
-    try:
-        return np.asarray(np.linalg.solve(jacobian, residual[:, :, None])[:, :, 0])
-    except np.linalg.LinAlgError:  # one singular unit must not take the others with it
-        step = np.full(residual.shape, np.nan)
-        for unit in range(len(residual)):
-            try:
-                step[unit] = np.linalg.solve(jacobian[unit], residual[unit])
-            except np.linalg.LinAlgError:
-                continue
-        return step
 
 
 def _system(

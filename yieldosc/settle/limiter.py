@@ -24,7 +24,8 @@ class Limiter:
     odd: f(−x) = −f(x), so that only odd harmonics arise (a clipping output loses this with unequal rails);
     mean_fixed: the bias holds the mean of y at 1, whatever the amplitude, and y is divided by the waveform's own mean.
     onset_power: e − 1 to this power is smooth in the amplitude at which the excess gain e is used up.
-    cell_edges: of e − 1, between which a fitted shift is one polynomial; smooth: y has no corners.
+    cell_edges: of e − 1, between which a fitted shift is one polynomial; smooth: y has no corners;
+    samples_per_level: points per period over the amplitude of x that keep its frequency within 10 ppm.
     """
 
     name: str
@@ -33,6 +34,7 @@ class Limiter:
     mean_fixed: bool = False
     onset_power: float = 0.5
     smooth: bool = True
+    samples_per_level: float = 8.0
     cell_edges: tuple[float, ...] = (0.0, 0.1, 0.5, 1.0, 2.0, 4.0, 8.0, 16.0)
 
     def first_amplitude(self, excess: Array) -> Array:
@@ -72,7 +74,7 @@ def _table(limiter: Limiter) -> tuple[Array, Array]:
 _TABLES: dict[str, tuple[Array, Array]] = {}
 
 CLIP_CELLS = (0.0, 0.003, 0.012, 0.05, 0.15, 0.3, 0.5, 0.8, 1.2, 2.0)
-CLIP = Limiter("clip", _clip, odd=True, onset_power=1 / 3, smooth=False, cell_edges=CLIP_CELLS)
+CLIP = Limiter("clip", _clip, odd=True, onset_power=1 / 3, smooth=False, samples_per_level=24.0, cell_edges=CLIP_CELLS)
 TANH = Limiter("tanh", _tanh, odd=True)
-EXP = Limiter("exp", _exp, odd=False, mean_fixed=True)
+EXP = Limiter("exp", _exp, odd=False, mean_fixed=True, samples_per_level=1.0)
 LIMITERS = {limiter.name: limiter for limiter in (CLIP, TANH, EXP)}

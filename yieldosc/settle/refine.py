@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from yieldosc.settle.balance import Wave, balance, orders_up_to
+from yieldosc.settle.balance import Wave, balance, orders_up_to, samples_for
 from yieldosc.settle.limiter import Limiter
 from yieldosc.settle.transfer import Response
 
@@ -52,7 +52,7 @@ def refine(
     odd = not even
     cap = most or (MOST_ODD if odd else MOST_ALL)
     n = len(excess)
-    start = limiter.first_amplitude(excess).astype(np.complex128)[:, None]
+    level = limiter.first_amplitude(excess)
     out = Refined(
         np.zeros(n),
         np.zeros((n, cap + 1), dtype=np.complex128),
@@ -60,12 +60,12 @@ def refine(
         np.zeros(n, dtype=bool),
         np.zeros(n, dtype=bool),
     )
-    out.x[:, 1] = start[:, 0]
+    out.x[:, 1] = level
     rows = np.arange(n)
     for count in _counts(cap):
         orders = orders_up_to(count, odd=odd, mean=not limiter.mean_fixed)
         before = out.shift[rows].copy()
-        _balanced(limiter, network, skew, rows, orders, out)
+        _balanced(limiter, network, skew, rows, orders, samples_for(count, limiter, level[rows]), out)
         moved = np.abs(out.shift[rows] - before)
         still = out.converged[rows] & (moved <= tolerance) & (count > LEAST_COUNT)
         out.capped[rows] = ~still & (count >= cap)
@@ -84,16 +84,24 @@ def _counts(cap: int) -> Iterator[int]:
 
 
 def _balanced(
-    limiter: Limiter, network: Response, skew: Array, rows: NDArray[np.intp], orders: NDArray[np.int64], out: Refined
+    limiter: Limiter,
+    network: Response,
+    skew: Array,
+    rows: NDArray[np.intp],
+    orders: NDArray[np.int64],
+    points: NDArray[np.int64],
+    out: Refined,
 ) -> None:
     """One refinement of some units, written into `out`; in chunks that keep the Jacobians small."""
     size = max(1, CHUNK_NUMBERS // (2 * len(orders)) ** 2)
-    for begin in range(0, len(rows), size):
-        part = rows[begin : begin + size]
-        start = Wave(out.shift[part], out.x[part][:, orders], orders, out.converged[part])
-        found = balance(limiter, network.take(part), start, skew[part])
-        good = part[found.converged]
-        out.shift[good] = found.shift[found.converged]
-        out.x[good[:, None], orders[None, :]] = found.x[found.converged]
-        out.highest[good] = orders[-1]
-        out.converged[part] = found.converged
+    for count in np.unique(points):
+        alike = rows[points == count]
+        for begin in range(0, len(alike), size):
+            part = alike[begin : begin + size]
+            start = Wave(out.shift[part], out.x[part][:, orders], orders, out.converged[part])
+            found = balance(limiter, network.take(part), start, skew[part], int(count))
+            good = part[found.converged]
+            out.shift[good] = found.shift[found.converged]
+            out.x[good[:, None], orders[None, :]] = found.x[found.converged]
+            out.highest[good] = orders[-1]
+            out.converged[part] = found.converged

@@ -121,7 +121,8 @@ def waves(part: Prepared, found: Refined) -> tuple[ComplexArray, ComplexArray]:
     those above the balanced ones are what the wave sends through the network."""
     orders = np.arange(HIGHEST + 1)
     top = found.x.shape[1] - 1
-    u = spectrum(part.limiter, found.x, np.arange(top + 1), part.skew, samples_for(top, part.limiter), orders)
+    points = samples_for(max(top, HIGHEST), part.limiter, part.limiter.first_amplitude(part.excess))
+    u = spectrum(part.limiter, found.x, np.arange(top + 1), part.skew, points, orders)
     s = 1j * np.exp(found.shift)[:, None] * orders
     with np.errstate(divide="ignore", invalid="ignore"):
         x = part.network.at(s) * u
