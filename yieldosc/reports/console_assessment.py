@@ -101,24 +101,35 @@ def _temperatures(a: Assessment, console: Console) -> None:
         "Temperatures",
         f"frequency: deviation from {format_quantity(scale.target_hz, 'Hz', 9)} in {scale.unit}",
     )
-    table = plain_table(
-        ("°C", "right"), ("no start", "right"), ("at most", "right"), ("f 0.1 %", "right"), ("f median", "right"),
-        ("f 99.9 %", "right"), ("margin min", "right"), ("margin 0.1 %", "right"), ("good here", "right"),
-    )  # fmt: skip
-    for row in temperature_lines(a):
-        table.add_row(
-            f"{row.temperature_c:g}".replace("-", "−"),
-            "—" if row.startup_failures is None else f"{row.startup_failures:,}",
-            "—" if row.startup_rate is None else upper_text(row.startup_rate),
-            scale.text(row.frequency_q001_hz, unit=False),
-            scale.text(row.frequency_q50_hz, unit=False),
-            scale.text(row.frequency_q999_hz, unit=False),
-            margin_text(row.margin_min),
-            margin_text(row.margin_q001),
-            bare_percent(row.yield_),
-        )
+    rows = temperature_lines(a)
+    starting = ("no start", "at most") if any(r.startup_rate is not None for r in rows) else ()
+    margins = ("margin min", "margin 0.1 %") if any(r.margin_min is not None for r in rows) else ()
+    distorted = ("dist. median", "dist. 99.9 %") if any(r.distortion_q50 is not None for r in rows) else ()
+    columns = ("°C", *starting, "f 0.1 %", "f median", "f 99.9 %", *margins, *distorted, "good here")
+    table = plain_table(*((name, "right") for name in columns))
+    for row in rows:
+        cells = {
+            "°C": f"{row.temperature_c:g}".replace("-", "−"),
+            "no start": "—" if row.startup_failures is None else f"{row.startup_failures:,}",
+            "at most": "—" if row.startup_rate is None else upper_text(row.startup_rate),
+            "f 0.1 %": scale.text(row.frequency_q001_hz, unit=False),
+            "f median": scale.text(row.frequency_q50_hz, unit=False),
+            "f 99.9 %": scale.text(row.frequency_q999_hz, unit=False),
+            "margin min": margin_text(row.margin_min),
+            "margin 0.1 %": margin_text(row.margin_q001),
+            "dist. median": _distortion(row.distortion_q50),
+            "dist. 99.9 %": _distortion(row.distortion_q999),
+            "good here": bare_percent(row.yield_),
+        }
+        table.add_row(*(cells[name] for name in columns))
     console.print(table)
+    if not margins:
+        console.print(line("no start-up question: this circuit has no growing oscillation, it switches", "dim"))
     console.print(line(caption(a), "dim"))
+
+
+def _distortion(value: float | None) -> str:
+    return "—" if value is None else f"{value * 100:.3g} %"
 
 
 def _bars(ranking: Ranking, name: str, console: Console) -> None:
@@ -144,7 +155,9 @@ def _bars(ranking: Ranking, name: str, console: Console) -> None:
         console.print(text, soft_wrap=True)
     rest = len(ranking.parts) - MOST_PARTS
     if rest > 0:
-        console.print(line(f"  and {rest} more, none above {shown[-1][2]}", "dim"))
+        last = shown[-1][2]
+        none_above = last if last.startswith("below") else f"none above {last}"
+        console.print(line(f"  and {rest} more, {'each ' if last.startswith('below') else ''}{none_above}", "dim"))
 
 
 def _rivals(a: Assessment, console: Console) -> None:

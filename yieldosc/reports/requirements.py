@@ -35,9 +35,13 @@ class RequirementLine:
 def requirement_lines(a: Assessment) -> tuple[RequirementLine, ...]:
     """Starting first, then each limit, then all together. A unit that misses several is counted once, at the first."""
     starting = sum(a.outcomes.get(name, 0) for name in NOT_STARTING)
-    lines = [_line(a, "Start-up", "on the intended mode", starting)]
-    lines += [_line(a, NAMES.get(r.attribute, r.attribute), limit_text(a, r), a.outcomes.get(r.outcome, 0))
-              for r in a.study.requirements]  # fmt: skip
+    asked = any(corner.margin is not None for corner in a.corners)
+    lines = [_line(a, "Start-up" if asked else "Runs", "on the intended mode" if asked else "does not latch", starting)]
+    lines += [
+        _line(a, NAMES.get(r.attribute, r.attribute), limit_text(a, r), a.outcomes.get(r.outcome, 0))
+        for r in a.study.requirements
+        if asked or r.attribute not in ("startup_margin", "startup_s")
+    ]
     target = a.study.design.yield_target
     lines.append(
         RequirementLine(

@@ -24,6 +24,8 @@ class TemperatureLine:
     margin_min: float | None
     margin_q001: float | None
     yield_: Estimate
+    distortion_q50: float | None = None
+    distortion_q999: float | None = None
 
 
 def temperature_lines(a: Assessment) -> tuple[TemperatureLine, ...]:
@@ -56,6 +58,8 @@ def _line(temperature_c: float, here: Sequence[CornerResult], target_hz: float) 
         margin_min=min((m.min for m in margins), default=None),
         margin_q001=min((m.q001 for m in margins), default=None),
         yield_=min((c.yield_ for c in here), key=lambda e: e.estimate),
+        distortion_q50=max((c.distortion.q50 for c in here if c.distortion is not None), default=None),
+        distortion_q999=max((c.distortion.q999 for c in here if c.distortion is not None), default=None),
     )
 
 

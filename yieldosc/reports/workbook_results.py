@@ -107,13 +107,19 @@ def temperatures(book: Workbook, a: Assessment) -> None:
         [
             t.temperature_c, t.startup_failures, "—" if t.startup_rate is None else upper_text(t.startup_rate),
             scale.value(t.frequency_q001_hz), scale.value(t.frequency_q50_hz), scale.value(t.frequency_q999_hz),
-            t.margin_min, t.margin_q001, percent_text(t.yield_),
+            t.margin_min, t.margin_q001, percent_text(t.yield_), t.distortion_q50, t.distortion_q999,
         ]
         for t in temperature_lines(a)
     ]  # fmt: skip
-    headings = ("Temperature", "Units that do not start", "At most", "Frequency, 0.1 % quantile", "Frequency, median",
-                "Frequency, 99.9 % quantile", "Margin, smallest", "Margin, 0.1 % quantile", "Good here")  # fmt: skip
-    formats = ('0.##" °C"', "#,##0", None, *(deviation,) * 3, "0.000", "0.000", None)
+    headings: tuple[str, ...] = (
+                "Temperature", "Units that do not start", "At most", "Frequency, 0.1 % quantile", "Frequency, median",
+                "Frequency, 99.9 % quantile", "Margin, smallest", "Margin, 0.1 % quantile", "Good here",
+                "Distortion, median", "Distortion, 99.9 % quantile")  # fmt: skip
+    formats: tuple[str | None, ...] = (
+        '0.##" °C"', "#,##0", None, *(deviation,) * 3, "0.000", "0.000", None, "0.00%", "0.00%",
+    )  # fmt: skip
+    if all(t.distortion_q50 is None for t in temperature_lines(a)):
+        rows, headings, formats = [row[:-2] for row in rows], headings[:-2], formats[:-2]
     first, last = page.table(headings, rows, formats)
     page.row += 1
     _frequency_chart(page, a, first, last)

@@ -14,7 +14,7 @@ from yieldosc.studies.tally import Histogram, Moments
 
 Array = NDArray[np.float64]
 Counts = NDArray[np.int64]
-ATTRIBUTES = ("frequency_hz", "settled_hz", "startup_margin")
+ATTRIBUTES = ("frequency_hz", "settled_hz", "startup_margin", "distortion")
 PILOT = 4096  # units that fix the histograms' bins
 BINS = 2048
 MOST_NUMBERS = 20_000  # failing units whose numbers are kept

@@ -81,7 +81,7 @@ def slopes(
     solution = bench.solve_values(columns, corner, population.own_law)
     with np.errstate(invalid="ignore", divide="ignore"):
         logs = np.log(np.stack([solution.limit_frequency_hz, solution.startup_margin]))
-    change = (logs[:, 0::2] - logs[:, 1::2]) / (2 * STEP)
+        change = (logs[:, 0::2] - logs[:, 1::2]) / (2 * STEP)
     return {role: (float(change[0, i]), float(change[1, i])) for i, role in enumerate(roles)}
 
 

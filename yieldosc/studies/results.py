@@ -62,6 +62,7 @@ class CornerResult:
     yield_: Estimate
     failing: Mapping[str, int] = field(default_factory=dict)  # outcome → units that show it at this corner
     first_failures: int = 0  # units that no earlier corner of the list failed
+    distortion: Distribution | None = None  # of the output, fractions; None where nothing gives it
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -113,6 +113,7 @@ def _corner(result: CornerResult) -> dict[str, object]:
         "age_years": result.corner.age_years,
         "frequency_hz": _distribution(result.frequency_hz),
         "settled_hz": _distribution(result.settled_hz),
+        "distortion": _distribution(result.distortion),
         "startup": startup,
         "yield": _estimate(result.yield_),
         "failing": dict(result.failing),

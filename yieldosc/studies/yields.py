@@ -143,6 +143,7 @@ def corner_results(
                 corner=corner,
                 frequency_hz=distributions.get("frequency_hz", _nothing()),
                 settled_hz=distributions.get("settled_hz"),
+                distortion=distributions.get("distortion"),
                 startup_failures=dead if asked else None,
                 startup_rate=clopper_pearson(dead, gathered.units, confidence) if asked else None,
                 margin=margin,
