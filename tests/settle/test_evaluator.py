@@ -64,7 +64,7 @@ def test_fitted_shift_agrees_with_the_full_balance(clipped):
     assert np.sqrt(np.mean(apart**2)) < FAST_TOLERANCE / 4
     assert np.max(np.abs(solution.distortion - full.distortion_out)) < 1e-3
     starts = solution.status == Status.STARTS
-    assert np.median(solution.settled_hz[starts] / solution.frequency_hz[starts] - 1) < -5e-3  # there is a shift to fit
+    assert np.median(solution.settled_hz[starts] / solution.frequency_hz[starts] - 1) < -3e-3  # there is a shift to fit
 
 
 def test_units_that_do_not_start_stay_at_their_crossing(clipped):
@@ -126,11 +126,11 @@ def test_a_fit_that_is_off_is_found_out_and_replaced(clipped):
 
 
 def test_units_that_no_fit_holds_are_solved_in_full():
-    """A bridge of R1 = 1.8 R2 lies outside every box that was trained around equal arms."""
+    """A bridge of R1 = 3 R2 and C2 = 3 C1 is far broader than any that was trained around equal arms."""
     circuit, nominal = wien(RF=23e3)
     values = drawn(nominal, 400)
-    values["R1"] = values["R1"] * np.where(np.arange(400) % 4 == 0, 1.8, 1.0)
-    values["RF"] = values["RF"] * np.where(np.arange(400) % 4 == 0, 1.5, 1.0)
+    for role, factor in (("R1", 3.0), ("C2", 3.0), ("RF", 2.9)):
+        values[role] = values[role] * np.where(np.arange(400) % 4 == 0, factor, 1.0)
     solution = make_evaluator(circuit, nominal).solve(values, 25.0)
     started = np.count_nonzero(solution.status[::4] == Status.STARTS)
     assert solution.settling.full >= started > 50
@@ -153,6 +153,7 @@ def test_a_level_control_settles_at_the_crossing():
     circuit, nominal = wien("agc", RS_start=300.0, RS_full=2200.0, RF=22e3, VSAT=None)
     solution = make_evaluator(circuit, nominal).solve(drawn(nominal, 50), 25.0)
     assert (solution.control_reach > 1).all()
+    assert solution.settling.method == "held"
     np.testing.assert_array_equal(solution.settled_hz, solution.frequency_hz)
     np.testing.assert_array_equal(solution.distortion, 0.0)
 

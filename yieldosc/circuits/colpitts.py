@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from yieldosc.circuits import opamp
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
 from yieldosc.circuits.colpitts_drawings import SCHEMATICS
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.roles import capacitor, coil_resistance, device, inductor, resistor
 from yieldosc.circuits.stages import (
     BIAS_OPTION,
@@ -222,4 +223,10 @@ def _build_opamp(options: Mapping[str, str], present: frozenset[str]) -> Circuit
 
 
 CLOSED_FORM = "f = 1/(2π√(L·C)), C = CP + Cs, 1/Cs = 1/C1 + 1/C2 (+ 1/C3)"
-FAMILY = Family(name="colpitts", title="Colpitts and Clapp", options=OPTIONS, roles=roles, build=build)
+FAMILY = with_limiter(
+    Family(name="colpitts", title="Colpitts and Clapp", options=OPTIONS, roles=roles, build=build),
+    "agc",
+    "clip",
+    "tanh",
+    "exp",
+)

@@ -23,6 +23,7 @@ from yieldosc.circuits.crystal import (
     crystal_symbols,
     loaded_frequency_hz,
 )
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.roles import capacitor, resistor
 from yieldosc.circuits.stages import (
     Stage,
@@ -130,4 +131,9 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-FAMILY = Family(name="crystal_colpitts", title="Crystal Colpitts", options=OPTIONS, roles=roles, build=build)
+FAMILY = with_limiter(
+    Family(name="crystal_colpitts", title="Crystal Colpitts", options=OPTIONS, roles=roles, build=build),
+    "agc",
+    "tanh",
+    "exp",
+)

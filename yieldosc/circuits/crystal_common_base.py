@@ -21,6 +21,7 @@ from yieldosc.circuits.crystal import (
     crystal_symbols,
     series_frequency_hz,
 )
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.roles import capacitor, coil_resistance, inductor
 from yieldosc.circuits.stages import (
     FEED_ROLES,
@@ -132,6 +133,11 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-FAMILY = Family(
-    name="crystal_common_base", title="Crystal in a common-base stage", options=OPTIONS, roles=roles, build=build
+FAMILY = with_limiter(
+    Family(
+        name="crystal_common_base", title="Crystal in a common-base stage", options=OPTIONS, roles=roles, build=build
+    ),
+    "agc",
+    "tanh",
+    "exp",
 )

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Family, Option, Role, Values
 from yieldosc.circuits.hartley_drawings import SCHEMATICS
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.roles import capacitor, coil_resistance, inductor
 from yieldosc.circuits.stages import (
     BIAS_OPTION,
@@ -193,4 +194,9 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-FAMILY = Family(name="hartley", title="Hartley", options=OPTIONS, roles=roles, build=build)
+FAMILY = with_limiter(
+    Family(name="hartley", title="Hartley", options=OPTIONS, roles=roles, build=build),
+    "agc",
+    "tanh",
+    "exp",
+)

@@ -1,43 +1,66 @@
-"""What bounds the level of an oscillator, as a declared option, and the rails of an op-amp that clips."""
+"""What bounds the level of an oscillator: an option that a family declares, and the rails of an op-amp that clips."""
 
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 
-from yieldosc.circuits.circuit import Option, Role
+from yieldosc.circuits.circuit import Circuit, CircuitError, Family, Option, Role
 from yieldosc.circuits.roles import device
 
+UNDECLARED = "none"
 _MEANING = {
-    "none": "none: not declared, so no settled frequency",
+    UNDECLARED: "none: not declared, so no settled frequency",
     "agc": "agc: a level control holds the level without distortion",
     "clip": "clip: the output stops at its rails",
     "tanh": "tanh: a differential pair limits its current",
     "exp": "exp: a single bipolar stage with its mean current fixed",
 }
-
-
-def limiter_option(*choices: str) -> Option:
-    """The option `limiter` with the choices that make sense for a stage; undeclared is the default."""
-    every = ("none", *choices)
-    return Option("limiter", every, "what bounds the level. " + "; ".join(_MEANING[choice] for choice in every))
-
-
+_ASSUMED = {
+    "agc": "a level control holds the level without distortion as long as it is not at its stop",
+    "clip": "the level is limited by the output clipping at its rails (no slewing, no recovery time)",
+    "tanh": "the level is limited as by a differential pair, i = I·tanh(gm·v/I); output clipping left out",
+    "exp": "the level is limited by a bipolar junction whose mean current the bias holds; saturation left out",
+}
 RAIL_ROLES = (
     device("VSAT", "V", "largest output voltage, both ways from the mid-supply", optional=True, kind="ic"),
     device("VSAT_high", "V", "largest output voltage upwards, where the two differ", optional=True, kind="ic"),
     device("VSAT_low", "V", "largest output voltage downwards, as a positive number", optional=True, kind="ic"),
 )
+VOLTAGE, BIPOLAR, CURRENT = ("agc", "clip"), ("agc", "tanh", "exp"), ("agc", "tanh")
 
 
-def rail_roles(options: Mapping[str, str]) -> tuple[Role, ...]:
-    """The rails, where the declared limiter may reach them."""
-    return RAIL_ROLES if options.get("limiter", "none") in ("clip", "agc") else ()
+def with_limiter(family: Family, *choices: str) -> Family:
+    """The family with the option `limiter` (undeclared is the default) and, where it may clip, the rails as roles."""
+    every = (UNDECLARED, *choices)
+    option = Option("limiter", every, "what bounds the level. " + "; ".join(_MEANING[choice] for choice in every))
+
+    def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
+        may_clip = options.get("limiter") in ("agc", "clip") and options.get("stage", "opamp") == "opamp"
+        rails = RAIL_ROLES if "clip" in choices and may_clip else ()
+        return (*family.roles(options), *rails)
+
+    def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
+        circuit = family.build(options, present)
+        limiter = options.get("limiter", UNDECLARED)
+        problems = _problems(circuit, limiter, present)
+        if problems:
+            raise CircuitError(problems)
+        given = tuple(role for role in roles(options) if role.name in present)
+        name, chosen, _ = circuit.recipe
+        recipe = (name, chosen, tuple(sorted(present)))
+        return replace(circuit, roles=given, recipe=recipe, assumptions=_assumptions(circuit, limiter))
+
+    return replace(family, options=(*family.options, option), roles=roles, build=build)
 
 
-def limiter_problems(options: Mapping[str, str], present: frozenset[str], *, stabilised: bool = False) -> list[str]:
-    """What is wrong with the limiter and its rails; stabilised: the circuit has a level control among its roles."""
+def _problems(circuit: Circuit, limiter: str, present: frozenset[str]) -> list[str]:
     problems = []
-    if stabilised and options.get("limiter") == "clip":
+    suited = _suited(circuit)
+    if limiter not in (UNDECLARED, *suited):
+        listed = ", ".join((UNDECLARED, *suited))
+        problems.append(f"limiter = {limiter} does not suit this stage; choose one of {listed}")
+    elif circuit.control_reach is not None and limiter == "clip":
         problems.append("a stabiliser holds the level here, so the output does not clip: choose limiter = agc")
     uneven = {"VSAT_high", "VSAT_low"} & present
     if len(uneven) == 1:
@@ -47,12 +70,15 @@ def limiter_problems(options: Mapping[str, str], present: frozenset[str], *, sta
     return problems
 
 
-def limiter_assumption(options: Mapping[str, str], *, undeclared: str) -> str:
-    """The sentence on what bounds the level."""
-    return {
-        "none": undeclared,
-        "agc": "a level control holds the level without distortion as long as it is not at its stop",
-        "clip": "the level is limited by the output clipping at its rails (no slewing, no recovery time)",
-        "tanh": "the level is limited as by a differential pair, i = I·tanh(gm·v/I)",
-        "exp": "the level is limited by a bipolar junction whose mean current the bias holds",
-    }[options.get("limiter", "none")]
+def _suited(circuit: Circuit) -> tuple[str, ...]:
+    """An output voltage clips, a junction is exponential, any controlled current may be a differential pair's."""
+    if any(row.gain_element and row.kind == "transconductance" for row in circuit.branches):
+        return BIPOLAR if circuit.options.get("stage", "bjt") == "bjt" else CURRENT
+    return VOLTAGE
+
+
+def _assumptions(circuit: Circuit, limiter: str) -> tuple[str, ...]:
+    if limiter == UNDECLARED:
+        return circuit.assumptions
+    kept = tuple(text for text in circuit.assumptions if not text.startswith("no stabiliser"))
+    return (*kept, _ASSUMED[limiter])

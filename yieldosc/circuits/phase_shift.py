@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 from yieldosc.circuits import opamp
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
 from yieldosc.circuits.ladder import LADDERS, buffer, ladder_branches, turning_frequency_hz
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.phase_shift_transistor import (
     build_transistor,
     transistor_problems,
@@ -161,4 +162,10 @@ CLOSED_FORM = (
     "equal sections, unloaded: ω = √6/(R·C), 1/(√6·R·C), √(10/7)/(R·C), √(7/10)/(R·C) for lag 3, lead 3, lag 4, lead 4 "
     "(rl: as lead, with L/R for R·C); gain 29 and 18.39; unequal or loaded sections: where the ladder turns 180°"
 )
-FAMILY = Family(name="phase_shift", title="Phase shift", options=OPTIONS, roles=roles, build=build)
+FAMILY = with_limiter(
+    Family(name="phase_shift", title="Phase shift", options=OPTIONS, roles=roles, build=build),
+    "agc",
+    "clip",
+    "tanh",
+    "exp",
+)

@@ -24,6 +24,7 @@ from yieldosc.circuits.crystal import (
     crystal_symbols,
     loaded_frequency_hz,
 )
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.roles import capacitor, coil_resistance, inductor, resistor
 from yieldosc.circuits.stages import (
     BIAS_OPTION,
@@ -182,4 +183,9 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-FAMILY = Family(name="pierce", title="Pierce", options=OPTIONS, roles=roles, build=build)
+FAMILY = with_limiter(
+    Family(name="pierce", title="Pierce", options=OPTIONS, roles=roles, build=build),
+    "agc",
+    "tanh",
+    "exp",
+)

@@ -12,6 +12,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from yieldosc.circuits.circuit import Array, Branch, Circuit, Derived, Family, Option, Role, Values
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.opamp import GBW_ROLE, RANGE_TEXT, opamp_symbols, outside_gbw
 from yieldosc.circuits.roles import capacitor, resistor
 
@@ -83,4 +84,7 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-FAMILY = Family(name="quadrature", title="Quadrature", options=OPTIONS, roles=roles, build=build)
+FAMILY = with_limiter(
+    Family(name="quadrature", title="Quadrature", options=OPTIONS, roles=roles, build=build),
+    "agc",
+)

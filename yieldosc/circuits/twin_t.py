@@ -13,6 +13,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from yieldosc.circuits.circuit import Array, Branch, Circuit, Derived, Family, Option, Role, Values
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.opamp import ASSUMPTION, GBW_ROLE, RANGE_TEXT, outside_gbw
 from yieldosc.circuits.roles import capacitor, resistor
 
@@ -102,4 +103,8 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-FAMILY = Family(name="twin_t", title="Twin-T", options=OPTIONS, roles=roles, build=build)
+FAMILY = with_limiter(
+    Family(name="twin_t", title="Twin-T", options=OPTIONS, roles=roles, build=build),
+    "agc",
+    "clip",
+)

@@ -10,7 +10,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
-from yieldosc.circuits.limits import limiter_assumption, limiter_option, limiter_problems, rail_roles
+from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.opamp import (
     ASSUMPTION,
     OPAMP_ROLES,
@@ -47,7 +47,7 @@ ROLES = (
 
 
 def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
-    return (*ROLES, *rail_roles(options))
+    return ROLES
 
 
 def _derive(values: Values, temperature_c: float, own_law: frozenset[str]) -> Derived:
@@ -81,9 +81,6 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     if lamp and "RF_full" in present:
         raise CircuitError(["RS_start/RS_full and RF_full are two stabilisers; keep the one that the board has"])
     stabilised = bool(lamp) or "RF_full" in present
-    problems = limiter_problems(options, present, stabilised=stabilised)
-    if problems:
-        raise CircuitError(problems)
     q = output_node(present)
     branches = (
         Branch("R1", "R", ("o", "n"), ("R1",)),
@@ -94,12 +91,11 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         Branch("RG", "R", ("m", "gnd"), ("RG",)),
         *opamp_branches(present, plus="p", minus="m"),
     )
-    level = "a stabiliser holds the level" if stabilised else "no stabiliser: the level is limited by clipping"
     return Circuit(
         name="wien_bridge",
         title="Wien bridge",
         options=dict(options),
-        roles=tuple(r for r in roles(options) if r.name in present),
+        roles=tuple(r for r in ROLES if r.name in present),
         branches=branches,
         gain_symbol="RF",
         derive=_derive,
@@ -112,11 +108,15 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         schematic=SCHEMATIC,
         assumptions=(
             ASSUMPTION,
-            limiter_assumption(options, undeclared=level),
+            "a stabiliser holds the level" if stabilised else "no stabiliser: the level is limited by clipping",
         ),
         recipe=("wien_bridge", tuple(sorted(options.items())), tuple(sorted(present))),
     )
 
 
-OPTIONS: tuple[Option, ...] = (limiter_option("agc", "clip"),)
-FAMILY = Family(name="wien_bridge", title="Wien bridge", options=OPTIONS, roles=roles, build=build)
+OPTIONS: tuple[Option, ...] = ()
+FAMILY = with_limiter(
+    Family(name="wien_bridge", title="Wien bridge", options=OPTIONS, roles=roles, build=build),
+    "agc",
+    "clip",
+)

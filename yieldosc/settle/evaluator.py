@@ -10,11 +10,11 @@ from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Circuit
 from yieldosc.settle.fast import Checked, fast, in_full, unshifted
-from yieldosc.settle.prepared import Prepared, prepare
+from yieldosc.settle.prepared import Prepared, level_is_held, prepare
 from yieldosc.settle.settled import undisturbed, write_in_full
 from yieldosc.settle.shift import SPREADS, FittedShift, training_values
 from yieldosc.solver.evaluator import Evaluator
-from yieldosc.solver.solution import Solution, Status
+from yieldosc.solver.solution import Settling, Solution, Status
 
 Array = NDArray[np.float64]
 ROOM_C = 25.0
@@ -68,10 +68,11 @@ class SettlingEvaluator:
     ) -> Solution:
         """See `Evaluator.solve`; a starting unit whose balance does not converge is `undefined`."""
         solution = self.crossing.solve(values, temperature_c, own_law=own_law, growth=growth, audit=audit)
-        live = prepare(
-            self.circuit, values, temperature_c, solution, limiter=self.limiter, own_law=own_law
-        )
-        found = self._settled(live, solution)
+        if level_is_held(self.limiter, solution):
+            found = Checked(undisturbed(solution), Settling(limiter=self.limiter, method="held", tolerance=0.0))
+        else:
+            live = prepare(self.circuit, values, temperature_c, solution, limiter=self.limiter, own_law=own_law)
+            found = self._settled(live, solution)
         settled = found.settled
         lost = settled.not_converged & (solution.status == Status.STARTS)
         return replace(

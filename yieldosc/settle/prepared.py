@@ -77,14 +77,14 @@ def prepare(
     symbols = {k: _full(v, n) for k, v in circuit.derive(values, temperature_c, own_law).symbols.items()}
     live = np.isfinite(solution.frequency_hz) & (solution.status != Status.NO_BIAS)
     if limiter == "agc":
-        live &= _at_stop(solution, n)
+        live &= _at_stop(solution)
         symbols = _with_full_control(circuit, symbols, solution)
     with np.errstate(invalid="ignore"):
         live &= (solution.startup_margin > 1) | (not growing_only)
     rows = np.flatnonzero(live)
     symbols = {k: v[rows] for k, v in symbols.items()}
     crossing_hz = solution.frequency_hz[rows]
-    scale = Scale.of(float(np.median(crossing_hz)) if rows.size else 1.0, symbols, loop.loop.dimensions)
+    scale = Scale.of(float(np.median(crossing_hz)), symbols, loop.loop.dimensions) if rows.size else Scale(1.0, 1.0)
     network = response(loop, symbols, scale, len(rows))
     first = first_harmonic(network, crossing_hz * (2 * np.pi / scale.omega))
     with np.errstate(invalid="ignore"):
@@ -107,12 +107,16 @@ def prepare(
     )
 
 
-def _at_stop(solution: Solution, n: int) -> Mask:
-    reach = solution.control_reach
-    if reach is None:
-        return np.zeros(n, dtype=bool)
+def level_is_held(limiter: str, solution: Solution) -> bool:
+    """A level control that is at its stop in no unit: nothing limits, nothing shifts."""
+    return limiter == "agc" and not _at_stop(solution).any()
+
+
+def _at_stop(solution: Solution) -> Mask:
+    if solution.control_reach is None:
+        return np.zeros(len(solution.frequency_hz), dtype=bool)
     with np.errstate(invalid="ignore"):
-        return reach < 1
+        return np.asarray(solution.control_reach < 1)
 
 
 def _with_full_control(circuit: Circuit, symbols: dict[str, Array], solution: Solution) -> dict[str, Array]:

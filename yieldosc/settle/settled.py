@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Circuit
 from yieldosc.settle.balance import samples_for, spectrum
-from yieldosc.settle.prepared import Prepared, Values, prepare
+from yieldosc.settle.prepared import Prepared, Values, level_is_held, prepare
 from yieldosc.settle.refine import TOLERANCE, Refined, refine
 from yieldosc.solver.solution import Solution
 
@@ -76,8 +76,10 @@ def solve(
     """Harmonic balance of every growing unit. values: role → (n,) or 0-d; solution: of the same units, from the
     circuit's evaluator; limiter: clip, tanh, exp or agc. tolerance: relative move of the frequency when harmonics are
     doubled; most: cap on their number (default 127 where only odd ones arise, else 63)."""
-    live = prepare(circuit, values, temperature_c, solution, limiter=limiter, own_law=own_law)
     out = undisturbed(solution, harmonics=harmonics)
+    if level_is_held(limiter, solution):
+        return out
+    live = prepare(circuit, values, temperature_c, solution, limiter=limiter, own_law=own_law)
     write_in_full(out, live, tolerance=tolerance, most=most)
     return out
 

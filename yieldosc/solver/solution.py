@@ -26,8 +26,9 @@ class Status(IntEnum):
 class Settling:
     """How the settled frequencies of n units were found, and how far the quick way was off where it was checked.
 
-    limiter: clip, tanh, exp or agc; method: "fitted shift", "full" (harmonic balance of every unit) or "no shift"
-    (below 1 ppm of the limits' width on a sample); tolerance: relative, of the frequency, by the method used.
+    limiter: clip, tanh, exp or agc; method: "fitted shift", "full" (harmonic balance of every unit), "no shift" (below
+    1 ppm of the limits' width on a sample) or "held" (by a level control in every unit); tolerance: relative, of the
+    frequency, by the method used.
     checked: units solved in full beside the quick way; residual: largest relative difference in frequency among them;
     largest_shift: largest |settled/first − 1| of these; full: units solved in full because no fit held them; capped:
     the frequency still moved at the most harmonics allowed; fell_back: the residual missed the tolerance, so that all
