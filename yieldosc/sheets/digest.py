@@ -7,6 +7,7 @@ import json
 
 import numpy as np
 
+from yieldosc.circuits import own_circuit
 from yieldosc.parts.parameter import Parameter
 from yieldosc.parts.shapes import Measured
 from yieldosc.study import Study
@@ -14,13 +15,15 @@ from yieldosc.study import Study
 
 def digest_of(study: Study) -> str:
     """Hexadecimal digest of circuit, options, parameters, conditions and design; names and places left out."""
-    content = {
+    content: dict[str, object] = {
         "circuit": study.circuit.name,
         "options": dict(study.circuit.options),
         "parameters": [_parameter(p) for p in sorted(study.parameters, key=lambda p: p.role)],
         "conditions": dict(study.conditions),
         "design": study.design.items(),
     }
+    if study.circuit.name == own_circuit.NAME:
+        content["branches"] = [(b.kind, b.nodes, b.symbols, b.gain_element) for b in study.circuit.branches]
     text = json.dumps(content, sort_keys=True, ensure_ascii=False, separators=(",", ":"), default=list)
     return hashlib.sha256(text.encode()).hexdigest()
 

@@ -92,6 +92,21 @@ def _column(grid: Grid, column: int, name: str, si_unit: str, problems: Problems
     return tuple(values)
 
 
+def branch_rows(book: Book) -> list[dict[str, str]] | None:
+    """The sheet Circuit as rows of heading → text, empty rows left out; None where there is no such sheet."""
+    grid = book.sheet("Circuit")
+    if grid is None:
+        return None
+    headings = [cell.text.strip() for cell in grid.rows[0]] if grid.rows else []
+    made = []
+    for r in range(1, len(grid.rows)):
+        texts = [entry_of(grid.cell(r, c), grid.place(r, c)).written for c in range(len(headings))]
+        row = {heading: text for heading, text in zip(headings, texts, strict=True) if heading and text}
+        if row:
+            made.append(row)
+    return made
+
+
 def unused_sheets(book: Book, used: Sequence[str], problems: Problems) -> None:
     """Contract sheets that this analysis does not read are named, not passed over in silence."""
     for name in ("Grades", "Alternates", "Pilot"):

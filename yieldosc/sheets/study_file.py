@@ -7,14 +7,14 @@ from collections.abc import Mapping
 from dataclasses import replace
 from pathlib import Path
 
-from yieldosc.circuits import registry
+from yieldosc.circuits import own_circuit, registry
 from yieldosc.circuits.circuit import Circuit, CircuitError, Role
 from yieldosc.errors import Finding, InputError, Place, refusal
 from yieldosc.sheets.bom import BomReading, read_bom
 from yieldosc.sheets.design import DesignSheet, check_design, frequency_limits, make_design, read_design, requirements
 from yieldosc.sheets.digest import digest_of
-from yieldosc.sheets.entries import Problems
-from yieldosc.sheets.extras import law_tables, measured_values, unused_sheets
+from yieldosc.sheets.entries import Problems, folded
+from yieldosc.sheets.extras import branch_rows, law_tables, measured_values, unused_sheets
 from yieldosc.sheets.grid import Book
 from yieldosc.sheets.opening import open_book
 from yieldosc.sheets.parameters import ParameterMaker, Sources
@@ -75,7 +75,8 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
     reading = _bom(book, problems)
     if not rows and not problems.fatal:
         problems.error("no-roles", "the sheet Roles has no rows; give each role of the circuit a row", Place("Roles"))
-    circuit = _circuit(sheet, rows, problems)
+    own = folded(sheet.circuit) == folded(own_circuit.NAME)
+    circuit = _own(sheet, book, rows, problems) if own else _circuit(sheet, rows, problems)
     if circuit is None:
         return None
     lines = {line.designator: line for line in reading.lines}
@@ -159,6 +160,43 @@ def _circuit(sheet: DesignSheet, rows: Mapping[str, RoleRow], problems: Problems
         for text in error.problems:
             problems.error("circuit", f"{family.name}: {text}", Place("Roles"))
         return None
+
+
+def _own(sheet: DesignSheet, book: Book, rows: Mapping[str, RoleRow], problems: Problems) -> Circuit | None:
+    """The circuit of the sheet Circuit; the target frequency is its design frequency."""
+    table = branch_rows(book)
+    if table is None:
+        problems.error(
+            "missing-sheet",
+            "own_circuit needs a sheet Circuit with its branches: name, kind, from, to, control+, control-, values, "
+            "gain",
+            Place("Circuit"),
+        )
+        return None
+    for option, (_, place) in sheet.options.items():
+        problems.error("circuit", f"own_circuit has no option {option!r}; its branches are in the sheet Circuit", place)
+    target = sheet.values.get("target_frequency_hz")
+    if target is None or not rows:
+        return None
+    try:
+        circuit = own_circuit.build_own(own_circuit.parse_rows(table), target)
+    except CircuitError as error:
+        for text in error.problems:
+            problems.error("circuit", text, Place("Circuit"))
+        return None
+    known = [role.name for role in circuit.roles]
+    for name, row in rows.items():
+        if name not in known:
+            listed = ", ".join(known)
+            problems.error("unknown-role", f"the branches name no value {name}; they name {listed}", row.place)
+    for name in known:
+        if name not in rows:
+            problems.error(
+                "role-missing",
+                f"the branches name the value {name}, but Roles has no row for it; add it",
+                Place("Roles"),
+            )
+    return None if problems.fatal else circuit
 
 
 def _is_supply(role: Role) -> bool:

@@ -15,7 +15,7 @@ from yieldosc.sheets.roles import COLUMNS, RoleRow
 from yieldosc.sheets.study_tables import StudyTables
 
 MOST_BYTES = 2_000_000
-KEYS = ("bom", "design", "roles", "tables", "measured")
+KEYS = ("bom", "design", "roles", "tables", "measured", "circuit")
 _COLUMN = {folded(name): name for name in COLUMNS}
 
 
@@ -31,7 +31,7 @@ def toml_tables(path: Path, problems: Problems) -> tuple[StudyTables, Book]:
     ]
     rows = _rows(content.get("roles", []), problems, file)
     book = _book(path, content.get("bom"), file)
-    extra = (*_measured(content), *_law_sheets(content))
+    extra = (*_measured(content), *_law_sheets(content), *_branches(content))
     return StudyTables(items, rows, Place("Design")), Book(book.path, "toml", (*book.sheets, *extra))
 
 
@@ -102,6 +102,16 @@ def _measured(content: dict[str, Any]) -> list[Grid]:
         for r in range(max(map(len, lists)))
     ]
     return [Grid("Measured", (head, *body))]
+
+
+def _branches(content: dict[str, Any]) -> list[Grid]:
+    """[[circuit]] tables, one per branch, as the sheet Circuit."""
+    rows = [row for row in content.get("circuit", []) if isinstance(row, dict)]
+    if not rows:
+        return []
+    keys = list(dict.fromkeys(key for row in rows for key in row))
+    head = tuple(Cell("text", key) for key in keys)
+    return [Grid("Circuit", (head, *(tuple(_cell(row.get(key, "")) for key in keys) for row in rows)))]
 
 
 def _law_sheets(content: dict[str, Any]) -> list[Grid]:
