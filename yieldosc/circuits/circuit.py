@@ -149,12 +149,20 @@ class Circuit:
         raise KeyError(name)
 
 
+def _none(options: Mapping[str, str]) -> list[str]:
+    return []
+
+
 @dataclass(frozen=True, kw_only=True)
 class Family:
-    """One file of `circuits`: what it may be built from. `roles(options)` lists every role that can be given."""
+    """One file of `circuits`: what it may be built from. `roles(options)` lists every role that can be given.
+
+    option_problems(options): choices that exclude each other whatever the roles, each with its reason.
+    """
 
     name: str
     title: str
     options: tuple[Option, ...]
     roles: Callable[[Mapping[str, str]], tuple[Role, ...]]
     build: Callable[[Mapping[str, str], frozenset[str]], Circuit]
+    option_problems: Callable[[Mapping[str, str]], list[str]] = _none

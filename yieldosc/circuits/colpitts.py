@@ -22,6 +22,7 @@ from yieldosc.circuits.stages import (
     Stage,
     bias_problems,
     chosen_stage,
+    collector_bias_problems,
     emitter_branches,
     emitter_problems,
     emitter_roles,
@@ -68,11 +69,19 @@ def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
     return (*TANK_ROLES, *extra, *emitter_roles(stage), *load, *stage.roles)
 
 
+def option_problems(options: Mapping[str, str]) -> list[str]:
+    """Choices that exclude each other."""
+    problems = bias_problems(options)
+    if options["stage"] == "opamp" and options["ground"] != "emitter":
+        problems.append(f"ground = {options['ground']} is a transistor's; stage = opamp inverts: leave the option out")
+    return problems + collector_bias_problems(options)
+
+
 def _problems(options: Mapping[str, str], present: frozenset[str], stage: Stage) -> list[str]:
     ground = options["ground"]
     first = stage.emitter[0]
     common, _, output = stage.terminals
-    problems = bias_problems(options)
+    problems = []
     feed = {"RC", "LCH"} & present
     if ground == "emitter" and not feed:
         problems.append(f"the {output} has no DC path: give RC, LCH or both")
@@ -86,10 +95,6 @@ def _problems(options: Mapping[str, str], present: frozenset[str], stage: Stage)
         problems.append(f"without C3 the coil would short the {stage.terminals[1]} bias: give CC")
     if ground != "base" and "C3" in present and "CC" in present:
         problems.append("with C3 the tank needs no coupling capacitor: remove CC")
-    if ground == "collector" and options["bias"] == "collector":
-        problems.append(
-            "bias = collector with the collector at the supply is the same as RB1 from VCC: use bias = divider"
-        )
     return problems + feed_problems(present) + emitter_problems(stage, present, bypass=ground == "emitter")
 
 
@@ -187,11 +192,6 @@ def _terminal(ground: str, stage: Stage) -> str:
 
 def _build_opamp(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     """Inverting amplifier: RO q–o, C1 o–gnd, L o–g, C2 g–gnd, RIN g–m, RF q–m."""
-    problems = bias_problems(options)
-    if options["ground"] != "emitter":
-        problems.append(f"ground = {options['ground']} is a transistor's; stage = opamp inverts: leave the option out")
-    if problems:
-        raise CircuitError(problems)
     branches = (
         *_tank("o", "g", present),
         Branch("C1", "C", ("o", "gnd"), ("C1",)),
@@ -224,7 +224,14 @@ def _build_opamp(options: Mapping[str, str], present: frozenset[str]) -> Circuit
 
 CLOSED_FORM = "f = 1/(2π√(L·C)), C = CP + Cs, 1/Cs = 1/C1 + 1/C2 (+ 1/C3)"
 FAMILY = with_limiter(
-    Family(name="colpitts", title="Colpitts and Clapp", options=OPTIONS, roles=roles, build=build),
+    Family(
+        name="colpitts",
+        title="Colpitts and Clapp",
+        options=OPTIONS,
+        roles=roles,
+        build=build,
+        option_problems=option_problems,
+    ),
     "agc",
     "clip",
     "tanh",

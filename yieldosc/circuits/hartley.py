@@ -21,6 +21,7 @@ from yieldosc.circuits.stages import (
     Stage,
     bias_problems,
     chosen_stage,
+    collector_bias_problems,
     emitter_branches,
     emitter_problems,
     emitter_roles,
@@ -70,19 +71,22 @@ def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
     return (*TANK_ROLES, *CHOSEN[ground], *((SHUNT,) if shunt else ()), *loads, *emitter, *stage.roles)
 
 
+def option_problems(options: Mapping[str, str]) -> list[str]:
+    """Choices that exclude each other."""
+    problems = bias_problems(options)
+    if options["feed"] == "shunt" and options["ground"] != "emitter":
+        ground = options["ground"]
+        problems.append(f"feed = shunt is for ground = emitter; with ground = {ground} leave the option out")
+    return problems + collector_bias_problems(options)
+
+
 def _problems(options: Mapping[str, str], present: frozenset[str], stage: Stage) -> list[str]:
     ground, first = options["ground"], stage.emitter[0]
-    problems = bias_problems(options)
-    if options["feed"] == "shunt" and ground != "emitter":
-        problems.append(f"feed = shunt is for ground = emitter; with ground = {ground} leave the option out")
-    elif options["feed"] == "shunt" and not {"RC", "LCH"} & present:
+    problems = []
+    if options["feed"] == "shunt" and not {"RC", "LCH"} & present:
         problems.append(f"the {stage.terminals[2]} has no DC path: give RC, LCH or both")
     if ground == "base" and first not in present:
         problems.append(f"ground = base needs {first}: it carries the {stage.terminals[0]}'s DC current")
-    if ground == "collector" and options["bias"] == "collector":
-        problems.append(
-            "bias = collector with the collector at the supply is the same as RB1 from VCC: use bias = divider"
-        )
     return problems + feed_problems(present) + emitter_problems(stage, present, bypass=ground != "base")
 
 
@@ -170,7 +174,7 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         return _rfeed(options, values)
 
     def outside(values: Values, frequency_hz: Array) -> NDArray[np.bool_]:
-        return outside_range(stage, values, frequency_hz)
+        return outside_range(stage, values, frequency_hz) | (values["k"] >= 1)
 
     ground = options["ground"]
     terminal = stage.terminals[("emitter", "base", "collector").index(ground)]
@@ -186,7 +190,7 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         design_frequency=design_frequency,
         closed_form="f = 1/(2π√((L1 + L2 + 2M)·C)), M = k·√(L1·L2)",
         not_assessable=outside,
-        range_text=stage.range_text,
+        range_text=f"{stage.range_text}; k below 1",
         assumptions=(*stage.assumptions, "windings in series aiding; their self-capacitance is left out"),
         supply_role=stage.supply_role,
         schematic=SCHEMATICS[drawing],
@@ -195,7 +199,7 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
 
 
 FAMILY = with_limiter(
-    Family(name="hartley", title="Hartley", options=OPTIONS, roles=roles, build=build),
+    Family(name="hartley", title="Hartley", options=OPTIONS, roles=roles, build=build, option_problems=option_problems),
     "agc",
     "tanh",
     "exp",

@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.circuits import opamp
-from yieldosc.circuits.circuit import Array, Branch, Circuit, CircuitError, Derived, Family, Option, Role, Values
+from yieldosc.circuits.circuit import Array, Branch, Circuit, Derived, Family, Option, Role, Values
 from yieldosc.circuits.ladder import LADDERS, buffer, ladder_branches, turning_frequency_hz
 from yieldosc.circuits.limits import with_limiter
 from yieldosc.circuits.phase_shift_transistor import (
@@ -109,15 +109,14 @@ def design_frequency(options: Mapping[str, str], values: Values) -> Array:
     return turning_frequency_hz(ladder, series, shunt, buffered=buffered)
 
 
+def option_problems(options: Mapping[str, str]) -> list[str]:
+    """Choices that exclude each other."""
+    problems = bias_problems(options)
+    return problems if options["stage"] == "opamp" else problems + transistor_problems(options)
+
+
 def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     """The branch table for the roles that are present."""
-    problems = bias_problems(options) if options["stage"] != "opamp" else []
-    if options["stage"] == "opamp" and options["bias"] == "collector":
-        problems.append("bias = collector is a bjt's; stage = opamp has no bias: leave the option out")
-    if options["stage"] != "opamp":
-        problems += transistor_problems(options, present)
-    if problems:
-        raise CircuitError(problems)
     if options["stage"] != "opamp":
         return build_transistor(options, present, roles(options))
     branches = _table(options, present)
@@ -163,7 +162,14 @@ CLOSED_FORM = (
     "(rl: as lead, with L/R for R·C); gain 29 and 18.39; unequal or loaded sections: where the ladder turns 180°"
 )
 FAMILY = with_limiter(
-    Family(name="phase_shift", title="Phase shift", options=OPTIONS, roles=roles, build=build),
+    Family(
+        name="phase_shift",
+        title="Phase shift",
+        options=OPTIONS,
+        roles=roles,
+        build=build,
+        option_problems=option_problems,
+    ),
     "agc",
     "clip",
     "tanh",

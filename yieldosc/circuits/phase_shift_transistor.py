@@ -15,7 +15,6 @@ from yieldosc.circuits.stages import (
     Stage,
     chosen_stage,
     emitter_branches,
-    emitter_problems,
     emitter_resistance_ohm,
     emitter_roles,
     feed_branches,
@@ -44,8 +43,8 @@ def transistor_roles(options: Mapping[str, str]) -> tuple[Role, ...]:
     return (*coupling, feed, *LOADS, *emitter_roles(stage), *stage.roles)
 
 
-def transistor_problems(options: Mapping[str, str], present: frozenset[str]) -> list[str]:
-    """Options and roles that make no circuit."""
+def transistor_problems(options: Mapping[str, str]) -> list[str]:
+    """Choices that need an op-amp."""
     stage = chosen_stage(options)
     problems = []
     if options["buffered"] == "yes":
@@ -55,7 +54,7 @@ def transistor_problems(options: Mapping[str, str], present: frozenset[str]) -> 
             f"ladder = rl is for stage = opamp: with a transistor R1 and L1 would draw the {stage.terminals[2]}'s "
             "DC current to ground"
         )
-    return problems + emitter_problems(stage, present)
+    return problems
 
 
 def _table(options: Mapping[str, str], present: frozenset[str], stage: Stage) -> tuple[Branch, ...]:

@@ -87,8 +87,8 @@ def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
     return (*crystal, *emitter_roles(stage), *FEED_ROLES, *stage.roles)
 
 
-def _problems(options: Mapping[str, str], present: frozenset[str], stage: Stage) -> list[str]:
-    problems = bias_problems(options) + crystal_problems(present)
+def _problems(present: frozenset[str], stage: Stage) -> list[str]:
+    problems = crystal_problems(present)
     if len({"LTRAP", "CTRAP"} & present) == 1 or ("LTRAP_dcr" in present and "LTRAP" not in present):
         problems.append("the overtone trap is LTRAP in series with CTRAP: give both, or neither")
     if stage.name != "inverter":
@@ -150,7 +150,7 @@ def _computed(values: Values) -> dict[str, Array]:
 def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     """The branch table for the roles that are present."""
     stage = chosen_stage(options)
-    problems = _problems(options, present, stage)
+    problems = _problems(present, stage)
     if problems:
         raise CircuitError(problems)
     branches = _table(present, stage)
@@ -184,7 +184,7 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
 
 
 FAMILY = with_limiter(
-    Family(name="pierce", title="Pierce", options=OPTIONS, roles=roles, build=build),
+    Family(name="pierce", title="Pierce", options=OPTIONS, roles=roles, build=build, option_problems=bias_problems),
     "agc",
     "tanh",
     "exp",

@@ -55,7 +55,7 @@ def family(name: str) -> Family:
 
 
 def complete_options(name: str, options: Mapping[str, str]) -> dict[str, str]:
-    """Options with defaults filled in; CircuitError naming every unknown option or choice."""
+    """Options with defaults filled in; CircuitError naming every unknown option or choice, or what excludes what."""
     known = {option.name: option for option in family(name).options}
     problems = []
     for key, choice in options.items():
@@ -67,7 +67,11 @@ def complete_options(name: str, options: Mapping[str, str]) -> dict[str, str]:
             problems.append(f"option {key} of {name} is {choice!r}; choose one of {listed}")
     if problems:
         raise CircuitError(problems)
-    return {key: options.get(key, option.choices[0]) for key, option in known.items()}
+    complete = {key: options.get(key, option.choices[0]) for key, option in known.items()}
+    problems = family(name).option_problems(complete)
+    if problems:
+        raise CircuitError(problems)
+    return complete
 
 
 def build(name: str, options: Mapping[str, str] | None = None, present: Iterable[str] = ()) -> Circuit:

@@ -10,7 +10,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from yieldosc.circuits import schmitt_rc, timer_astable
-from yieldosc.circuits.circuit import Array, Circuit, CircuitError, Direct, Family, Option, Role, Values
+from yieldosc.circuits.circuit import Array, Circuit, Direct, Family, Option, Role, Values
 from yieldosc.circuits.filtering import HIGHEST_HARMONIC, Section, filtered
 from yieldosc.circuits.relaxation import NO_START_QUESTION
 from yieldosc.circuits.roles import capacitor, coil_resistance, inductor, resistor
@@ -107,10 +107,15 @@ def _design_frequency(options: Mapping[str, str], values: Values) -> Array:
     return np.asarray(values["F"])
 
 
+def option_problems(options: Mapping[str, str]) -> list[str]:
+    """Thresholds belong to one source only."""
+    if options["source"] != "schmitt_rc" and options["thresholds"] != "volts":
+        return [f"thresholds belong to source = schmitt_rc; with source = {options['source']} leave the option out"]
+    return []
+
+
 def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     """The circuit for the roles that are present."""
-    if options["source"] != "schmitt_rc" and options["thresholds"] != "volts":
-        raise CircuitError([f"thresholds belong to source = schmitt_rc; with {options['source']} leave the option out"])
     count = int(options["sections"])
     source = {"given": "a square wave", "timer_astable": "a timer", "schmitt_rc": "a Schmitt trigger"}
     return Circuit(
@@ -136,4 +141,11 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
     )
 
 
-FAMILY = Family(name="square_to_sine", title="Square wave to sine", options=OPTIONS, roles=roles, build=build)
+FAMILY = Family(
+    name="square_to_sine",
+    title="Square wave to sine",
+    options=OPTIONS,
+    roles=roles,
+    build=build,
+    option_problems=option_problems,
+)

@@ -4,7 +4,13 @@ Temperature laws are device physics recalled from memory; a law given for a role
 """
 
 from yieldosc.circuits.stages.bjt import bjt
-from yieldosc.circuits.stages.choice import BIAS_OPTION, bias_problems, chosen_stage, stage_option
+from yieldosc.circuits.stages.choice import (
+    BIAS_OPTION,
+    bias_problems,
+    chosen_stage,
+    collector_bias_problems,
+    stage_option,
+)
 from yieldosc.circuits.stages.derived import stage_derive
 from yieldosc.circuits.stages.inverter import INVERTER
 from yieldosc.circuits.stages.jfet import JFET
@@ -48,6 +54,7 @@ __all__ = [
     "bias_problems",
     "bjt",
     "chosen_stage",
+    "collector_bias_problems",
     "emitter_branches",
     "emitter_problems",
     "emitter_resistance_ohm",

@@ -30,3 +30,10 @@ def bias_problems(options: Mapping[str, str]) -> list[str]:
     if options.get("bias") == "collector" and options.get("stage", "bjt") != "bjt":
         return [f"bias = collector is a bjt's; stage = {options['stage']} has its own bias: leave the option out"]
     return []
+
+
+def collector_bias_problems(options: Mapping[str, str]) -> list[str]:
+    """bias = collector where the collector is at signal ground."""
+    if options["ground"] == "collector" and options["bias"] == "collector" and options["stage"] == "bjt":
+        return ["bias = collector with the collector at the supply is the same as RB1 from VCC: use bias = divider"]
+    return []
