@@ -54,7 +54,7 @@ def orders_up_to(most: int, *, odd: bool, mean: bool) -> NDArray[np.int64]:
 def samples_for(most: int, limiter: Limiter, level: Array) -> NDArray[np.int64]:
     """Points per period (n,), powers of two, for harmonics up to `most` of waves of these amplitudes.
 
-    A clipped wave's corners fall between samples; the harder a limiter is driven, the steeper are its edges.
+    The harder a limiter is driven, the steeper are its edges.
     """
     least = max(64, 4 * (most + 1)) if limiter.smooth else max(256, 8 * (most + 1))
     wanted = np.clip(limiter.samples_per_level * level, least, MOST_SAMPLES)
@@ -73,7 +73,10 @@ def spectrum(
     out = np.empty((len(x), len(wanted)), dtype=np.complex128)
     for count in np.unique(points):
         rows = np.flatnonzero(points == count)
-        y, _ = limiter.respond(_samples(x[rows], orders, int(count)), skew[rows, None])
+        samples = _samples(x[rows], orders, int(count))
+        y, _ = limiter.respond(samples, skew[rows, None])
+        if limiter.corners is not None:
+            y = y + limiter.corners(samples, skew[rows, None])
         out[rows] = _harmonics(y, wanted)
     return out
 
@@ -99,24 +102,42 @@ def balance(limiter: Limiter, network: Response, start: Wave, skew: Array, point
     converged = np.zeros(n, dtype=bool)
     active = np.arange(n)
     for _ in range(MOST_STEPS):
-        part = network.take(active)
-        residual, jacobian = _system(limiter, part, shift[active], x[active], orders, skew[active], points)
-        usable = np.isfinite(jacobian).all(axis=(1, 2)) & np.isfinite(residual).all(axis=1)
-        active, residual, jacobian = active[usable], residual[usable], jacobian[usable]
-        if not active.size:
-            break
-        step = newton_step(jacobian, residual, orders)
-        size = np.abs(x[active][:, orders == 1][:, 0])
-        length = np.maximum(np.abs(step[:, 0]), np.max(np.abs(step[:, 1:]), axis=1) / size)
-        step *= np.minimum(1.0, LARGEST_STEP / np.maximum(length, 1e-300))[:, None]
-        shift[active] -= step[:, 0]
-        x[active] -= _unpacked(step, orders)
+        length = _step(limiter, network, shift, x, orders, skew, points, active, corners=False)
         done = length <= SETTLED_STEP
         converged[active[done]] = True
         active = active[~done & np.isfinite(length)]
         if not active.size:
             break
+    if limiter.corners is not None:
+        # once, at the end: it is small, and its own derivative, left out, could keep Newton from settling
+        _step(limiter, network, shift, x, orders, skew, points, np.flatnonzero(converged), corners=True)
     return Wave(shift, x, orders, converged)
+
+
+def _step(
+    limiter: Limiter,
+    network: Response,
+    shift: Array,
+    x: ComplexArray,
+    orders: NDArray[np.int64],
+    skew: Array,
+    points: int,
+    active: NDArray[np.intp],
+    *,
+    corners: bool,
+) -> Array:
+    """One Newton step of the active units, into `shift` and `x`; its length (nan: no step could be made)."""
+    part = network.take(active)
+    residual, jacobian = _system(limiter, part, shift[active], x[active], orders, skew[active], points, corners)
+    step = newton_step(jacobian, residual, orders)
+    size = np.abs(x[active][:, orders == 1][:, 0])
+    length = np.maximum(np.abs(step[:, 0]), np.max(np.abs(step[:, 1:]), axis=1) / size)
+    usable = np.isfinite(length)
+    step *= np.minimum(1.0, LARGEST_STEP / np.maximum(length, 1e-300))[:, None]
+    rows = active[usable]
+    shift[rows] -= step[usable, 0]
+    x[rows] -= _unpacked(step[usable], orders)
+    return np.asarray(length)
 
 
 def _system(
@@ -127,9 +148,13 @@ def _system(
     orders: NDArray[np.int64],
     skew: Array,
     points: int,
+    corners: bool,
 ) -> tuple[Array, Array]:
     """Residuals a_n X_n − b_n U_n as real numbers, and their derivatives by (ln ω, Re X_1, parts of the others)."""
-    y, slope = limiter.respond(_samples(x, orders, points), skew[:, None])
+    samples = _samples(x, orders, points)
+    y, slope = limiter.respond(samples, skew[:, None])
+    if corners and limiter.corners is not None:
+        y = y + limiter.corners(samples, skew[:, None])
     u = _harmonics(y, orders)
     s = 1j * np.exp(shift)[:, None] * orders
     a, da, b, db = network.parts_at(s)

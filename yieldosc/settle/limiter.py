@@ -20,6 +20,7 @@ MOST_EXPONENT = 600.0  # e^x stays finite; the mean is divided out, so only diff
 @dataclass(frozen=True)
 class Limiter:
     """`respond(x, skew)` → y and dy/dx for samples x (n, M); skew (n, 1) is the rails' (high − low)/(high + low).
+    `corners(x, skew)`, where y has some: additions to y that make its sums over samples integrals.
 
     odd: f(−x) = −f(x), so that only odd harmonics arise (a clipping output loses this with unequal rails);
     mean_fixed: the bias holds the mean of y at 1, whatever the amplitude, and y is divided by the waveform's own mean.
@@ -35,7 +36,8 @@ class Limiter:
     onset_power: float = 0.5
     smooth: bool = True
     samples_per_level: float = 8.0
-    cell_edges: tuple[float, ...] = (0.0, 0.1, 0.5, 1.0, 2.0, 4.0, 8.0, 16.0)
+    corners: Callable[[Array, Array], Array] | None = None
+    cell_edges: tuple[float, ...] = (0.0, 0.1, 0.5, 1.0, 2.0, 4.0, 8.0, 16.0, 32.0, 64.0)
 
     def first_amplitude(self, excess: Array) -> Array:
         """Amplitude of a sinusoidal x at which the describing function is 1/excess, interpolated in a table."""
@@ -46,6 +48,26 @@ class Limiter:
 def _clip(x: Array, skew: Array) -> tuple[Array, Array]:
     low, high = skew - 1, skew + 1
     return np.clip(x, low, high), ((x > low) & (x < high)).astype(np.float64)
+
+
+def _clip_corners(x: Array, skew: Array) -> Array:
+    """What sums over samples of a clipped wave miss of its integrals, as additions to the samples beside each corner.
+
+    The trapezoid rule misses J h² B2(θ)/2 at a corner of slope jump J, a fraction θ into a step h, B2 = θ² − θ + 1/6
+    (Euler–Maclaurin with the corner as an end of both pieces).
+    """
+    extra = np.zeros(x.shape)
+    for sign in (1.0, -1.0):
+        rail = np.broadcast_to(skew + sign, (len(x), 1))
+        beyond = sign * x > sign * rail
+        rows, here = np.nonzero(beyond != np.roll(beyond, -1, axis=1))
+        following = (here + 1) % x.shape[1]
+        first, second = x[rows, here], x[rows, following]
+        theta = (rail[rows, 0] - first) / (second - first)
+        corner = -sign * np.abs(second - first) / 2 * (theta * theta - theta + 1 / 6)
+        extra[rows, here] += corner * (1 - theta)
+        extra[rows, following] += corner * theta
+    return extra
 
 
 def _tanh(x: Array, skew: Array) -> tuple[Array, Array]:
@@ -74,7 +96,16 @@ def _table(limiter: Limiter) -> tuple[Array, Array]:
 _TABLES: dict[str, tuple[Array, Array]] = {}
 
 CLIP_CELLS = (0.0, 0.003, 0.012, 0.05, 0.15, 0.3, 0.5, 0.8, 1.2, 2.0)
-CLIP = Limiter("clip", _clip, odd=True, onset_power=1 / 3, smooth=False, samples_per_level=24.0, cell_edges=CLIP_CELLS)
+CLIP = Limiter(
+    "clip",
+    _clip,
+    odd=True,
+    onset_power=1 / 3,
+    smooth=False,
+    samples_per_level=12.0,
+    corners=_clip_corners,
+    cell_edges=CLIP_CELLS,
+)
 TANH = Limiter("tanh", _tanh, odd=True)
 EXP = Limiter("exp", _exp, odd=False, mean_fixed=True, samples_per_level=1.0)
 LIMITERS = {limiter.name: limiter for limiter in (CLIP, TANH, EXP)}

@@ -16,6 +16,7 @@ Array = NDArray[np.float64]
 Mask = NDArray[np.bool_]
 TOLERANCE = 20e-6
 FIRST_COUNT = 3
+CLIMB_STEPS = 12
 LEAST_COUNT = 7  # below this two answers may agree by accident
 MOST_ODD, MOST_ALL = 127, 63
 CHUNK_NUMBERS = 250_000  # of the Jacobians of one chunk of units: they stay in the cache
@@ -64,15 +65,49 @@ def refine(
     rows = np.arange(n)
     for count in _counts(cap):
         orders = orders_up_to(count, odd=odd, mean=not limiter.mean_fixed)
-        before = out.shift[rows].copy()
-        _balanced(limiter, network, skew, rows, orders, samples_for(count, limiter, level[rows]), out)
-        moved = np.abs(out.shift[rows] - before)
+        points = samples_for(count, limiter, level)
+        before = out.shift.copy()
+        _balanced(limiter, network, skew, rows, orders, points, out)
+        if count == FIRST_COUNT:
+            _climb(limiter, network, excess, skew, np.flatnonzero(~out.converged), orders, points, out)
+            rows = np.flatnonzero(out.converged)  # a unit that even this does not find is given up
+        moved = np.abs(out.shift[rows] - before[rows])
         still = out.converged[rows] & (moved <= tolerance) & (count > LEAST_COUNT)
         out.capped[rows] = ~still & (count >= cap)
         rows = rows[~still]
         if not rows.size:
             break
     return out
+
+
+def _climb(
+    limiter: Limiter,
+    network: Response,
+    excess: Array,
+    skew: Array,
+    rows: NDArray[np.intp],
+    orders: NDArray[np.int64],
+    points: NDArray[np.int64],
+    out: Refined,
+) -> None:
+    """Units that the describing function leads nowhere: follow the wave up from a gain where it is a sinusoid."""
+    if not rows.size:
+        return
+    last: Array = np.ones(len(rows))
+    out.x[rows] = 0.0
+    for step in range(1, CLIMB_STEPS + 1):
+        now = excess[rows] ** (step / CLIMB_STEPS)
+        amplitude = limiter.first_amplitude(now)
+        if step == 1:
+            out.x[rows, 1] = amplitude
+        else:
+            out.x[rows] *= (amplitude / limiter.first_amplitude(last))[:, None]
+        weaker = network.take(rows).with_gain(now / excess[rows])
+        part = Refined(*(getattr(out, name)[rows] for name in Refined.__slots__))
+        _balanced(limiter, weaker, skew[rows], np.arange(len(rows)), orders, points[rows], part)
+        for name in Refined.__slots__:
+            getattr(out, name)[rows] = getattr(part, name)
+        last = now
 
 
 def _counts(cap: int) -> Iterator[int]:
@@ -94,8 +129,8 @@ def _balanced(
 ) -> None:
     """One refinement of some units, written into `out`; in chunks that keep the Jacobians small."""
     size = max(1, CHUNK_NUMBERS // (2 * len(orders)) ** 2)
-    for count in np.unique(points):
-        alike = rows[points == count]
+    for count in np.unique(points[rows]):
+        alike = rows[points[rows] == count]
         for begin in range(0, len(alike), size):
             part = alike[begin : begin + size]
             start = Wave(out.shift[part], out.x[part][:, orders], orders, out.converged[part])
