@@ -63,7 +63,10 @@ def test_range_of_the_bipolar_stage():
     assert [Status(x) for x in s.status] == [Status.STARTS, Status.NOT_ASSESSABLE, Status.NO_BIAS]
 
 
-@pytest.mark.parametrize("name", list(SAMPLES))
+SWITCHING = ("timer_astable", "schmitt_rc", "square_to_sine")  # no growing oscillation, so no margin
+
+
+@pytest.mark.parametrize("name", [name for name in SAMPLES if name not in SWITCHING])
 def test_margin_and_outcome_say_the_same(name):
     sample = SAMPLES[name]
     s = solve(name, sample.options, draw(sample.values, 300, 0.6, seed=9), sample.values, 25.0)

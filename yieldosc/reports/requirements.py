@@ -77,6 +77,9 @@ def percent(fraction: float) -> str:
     return f"{fraction * 100:.10g} %"
 
 
+SHARES = ("distortion",)  # attributes that are read in per cent
+
+
 def limit_text(a: Assessment, requirement: Requirement) -> str:
     """ "−3 % to +3 % of 1 kHz", "at least 1.05", "at most 50 ms"."""
     low, high, unit = requirement.low, requirement.high, requirement.unit
@@ -87,7 +90,8 @@ def limit_text(a: Assessment, requirement: Requirement) -> str:
     if low is not None:
         bounds.append(f"at least {_bound(low, unit)}")
     if high is not None:
-        bounds.append(f"at most {_bound(high, unit)}")
+        text = percent(high) if requirement.attribute in SHARES else _bound(high, unit)
+        bounds.append(f"at most {text}")
     return " and ".join(bounds) or "none"
 
 

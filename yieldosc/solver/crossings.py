@@ -6,6 +6,7 @@ A pair enters the right half plane (for rising |g|) where sign(g) F'(x) < 0: dif
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -91,10 +92,11 @@ TO_ROUNDING = 1e-9  # quadratic convergence: a relative step this small leaves a
 
 
 def newton(
-    split: Split, x: Array, *, steps: int = 12, settle: float = TO_ROUNDING
+    split: Split, x: Array, *, steps: int = 12, settle: float = TO_ROUNDING, known: Sequence[Array] = ()
 ) -> tuple[Array, NDArray[np.bool_], Array]:
     """Root of F near x (n,): the root, whether it converged (last relative step below `settle`), and F' there.
 
+    Roots `known` already are divided out (Maehly 1954), so that a rough start is not led to one of them again.
     A settled unit stands still while others move on, so that its digits do not depend on the rest of its block.
     """
     settled = np.zeros(np.shape(x), dtype=bool)
@@ -102,7 +104,10 @@ def newton(
     with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         for _ in range(steps):
             f, steep = split.condition(x)
-            step = np.where(settled, 0.0, f / steep)
+            pull = steep
+            for other in known:
+                pull = pull - f / (x - other)
+            step = np.where(settled, 0.0, f / pull)
             slope = np.where(settled, slope, steep)
             x = x - step
             settled = settled | (np.abs(step) <= settle * np.abs(x))

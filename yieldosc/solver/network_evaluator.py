@@ -142,10 +142,12 @@ class NetworkEvaluator:
         gains: list[Array] = []
         doubt = np.zeros(n, dtype=bool)
         followed: list[Array] = []
+        centre, half = self._band(values, design, ref.scale, n)
         for k, tracked in enumerate(ref.tracked + ref.idle):
             ratio = (design / ref.design) ** 2 if k == ref.intended else ref.prediction(tracked, part.symbols)
             limiting = k in (ref.intended, ref.leaves) and k != ref.far
-            x, good, slope = newton(split, tracked.x * ratio, settle=TO_ROUNDING if limiting else ROUGHLY)
+            settle = TO_ROUNDING if limiting else ROUGHLY
+            x, good, slope = newton(split, tracked.x * ratio, settle=settle, known=followed)
             followed.append(x)
             gain = split.gain(x)
             with np.errstate(invalid="ignore"):
@@ -154,10 +156,12 @@ class NetworkEvaluator:
                     continue
                 doubt |= ~good | (gain * sign <= 0) | ((sign * slope < 0) != (tracked.direction > 0))
             gains.append(np.abs(gain))
-            if k == ref.intended:
-                centre, half = self._band(values, design, ref.scale, n)
+            if k == ref.intended or ref.in_band is not None:
                 with np.errstate(invalid="ignore", divide="ignore"):
-                    doubt |= ~(np.abs(np.log(x / (centre * centre))) <= 2 * half)
+                    inside = np.abs(np.log(x / (centre * centre))) <= 2 * half
+                doubt |= ~inside if k == ref.intended or ref.in_band is None else inside != ref.in_band[k]
+            if k == ref.intended:
+                with np.errstate(invalid="ignore"):
                     block.omega = np.sqrt(x)
         # a root of F that the reference does not have may limit the gain from above without a pole more or less at g
         doubt |= positive_roots(split.polynomial()) != len(followed)

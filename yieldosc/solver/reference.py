@@ -18,6 +18,7 @@ from yieldosc.solver.sturm import positive_roots
 Array = NDArray[np.float64]
 
 
+NARROW = 0.05  # half-width in |ln f| of a band that only a crystal's pair can lie in
 FAR = 4.0  # how far beyond limiting the margin an untold crossing of the reference must lie, as a ratio
 WEAK = 1e-3  # d ln x / d ln symbol below which a symbol is left out of the prediction
 
@@ -49,6 +50,7 @@ class Reference:
     idle: tuple[Tracked, ...] = ()
     far: int | None = None  # the first crossing whose pair counting cannot tell, too far away to limit the margin
     order: tuple[int, ...] = ()
+    in_band: tuple[bool, ...] | None = None  # of the tracked: membership where a narrow band tells the pairs apart
 
     def prediction(self, root: Tracked, symbols: Mapping[str, Array]) -> Array:
         """First-order ratio x/x_reference of a root for units with these symbols."""
@@ -91,7 +93,9 @@ def make_reference(
         inside = np.abs(np.log(found.crossings.omega[0, pairs] / centre[0])) <= half[0]
     entering = np.flatnonzero(member & (direction == 1))
     leaving = np.flatnonzero(member & (direction == -1))
-    far = _first_uncountable(direction, member)
+    # a crystal's pair cannot leave its narrow band, and nothing else can enter it: the band tells whose crossing it is
+    by_band = circuit.band is not None and bool(half[0] < NARROW) and bool(np.array_equal(inside, member))
+    far = None if by_band else _first_uncountable(direction, member)
     gains = np.abs(found.crossings.gain[0, pairs])
     simple = (
         np.count_nonzero(inside & (direction == 1)) == 1
@@ -112,7 +116,10 @@ def make_reference(
     leaves = int(leaving[0]) if leaving.size else None
     order = tuple(int(k) for k in np.argsort(every))
     idle = tuple(followed[len(x) :])
-    return Reference(scale, extended, float(design[0]), tracked, int(entering[0]), leaves, True, idle, far, order)
+    in_band = tuple(bool(m) for m in member) if by_band else None
+    return Reference(
+        scale, extended, float(design[0]), tracked, int(entering[0]), leaves, True, idle, far, order, in_band
+    )
 
 
 def _positive_roots(split: Split, crossings: Array) -> tuple[Array, bool]:
