@@ -168,7 +168,7 @@ def all_crossings(a: Poly, b: Poly, sign: Array) -> tuple[Crossings, ComplexArra
     omega = np.where(wanted, np.sqrt(x), np.nan)
     real_omega, real_gain, real_direction = real_crossings(a, b, sign)
     return (
-        _ordered(
+        ordered(
             np.concatenate([omega, np.where(np.isfinite(real_gain), real_omega, np.nan)], axis=1),
             np.concatenate([np.where(wanted, gain, np.nan), real_gain], axis=1),
             np.concatenate([np.where(wanted, enters, 0), real_direction], axis=1),
@@ -178,9 +178,10 @@ def all_crossings(a: Poly, b: Poly, sign: Array) -> tuple[Crossings, ComplexArra
     )
 
 
-def _ordered(
+def ordered(
     omega: Array, gain: Array, direction: NDArray[np.int64], poles: NDArray[np.int64]
 ) -> Crossings:
+    """Crossings (n, c) sorted by |g_c|, nan last."""
     order = np.argsort(np.where(np.isnan(gain), np.inf, np.abs(gain)), axis=1, kind="stable")
     return Crossings(
         np.take_along_axis(omega, order, axis=1),

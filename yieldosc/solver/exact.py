@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from yieldosc.solver.crossings import Crossings, Split, all_crossings
 from yieldosc.solver.follow import follow
 from yieldosc.solver.polynomials import ComplexArray, Poly
+from yieldosc.solver.start import with_start
 
 Array = NDArray[np.float64]
 Mask = NDArray[np.bool_]
@@ -39,13 +40,22 @@ class Modes:
     nearest_x: ComplexArray
     nearest_gain: ComplexArray
     growing_poles: NDArray[np.int64]  # by counting crossings below g
+    start: Array  # (m,) gain that marks poles which grow without the gain element; nan where there are none
 
 
-def modes(a: Poly, b: Poly, g: Array, design: Array, centre: Array, half: Array) -> Modes:
-    """Crossings, pair membership and growth of m units; design, centre: ω in scaled variables; half: in |ln ω|."""
+def modes(
+    a: Poly, b: Poly, g: Array, design: Array, centre: Array, half: Array, *, fixed_gain: bool = False
+) -> Modes:
+    """Crossings, pair membership and growth of m units; design, centre: ω in scaled variables; half: in |ln ω|.
+
+    fixed_gain: other active rows may make poles grow at g = 0; counting starts from those.
+    """
     sign = np.sign(g)
     crossings, f_roots = all_crossings(a, b, sign)
-    intended, found = _intended(crossings, design, centre, half)
+    start = np.full(len(g), np.nan)
+    if fixed_gain:
+        crossings, start = with_start(a, crossings, g)
+    intended, found = _intended(crossings, design, centre, half, start)
     members = _members(a, b, crossings, intended, found)
     omega, lower, upper = _window(crossings, members, g)
     with np.errstate(invalid="ignore"):
@@ -55,16 +65,19 @@ def modes(a: Poly, b: Poly, g: Array, design: Array, centre: Array, half: Array)
     nearest_x, nearest_gain = _nearest(Split.of(a, b), f_roots, design)
     count = np.sum(np.where(below, crossings.direction * crossings.poles, 0), axis=1)
     return Modes(
-        crossings, members, found, omega, lower, upper, grows, other_omega, other_gain, nearest_x, nearest_gain, count
-    )
+        crossings, members, found, omega, lower, upper, grows, other_omega, other_gain, nearest_x, nearest_gain, count,
+        start,
+    )  # fmt: skip
 
 
-def _intended(cr: Crossings, design: Array, centre: Array, half: Array) -> tuple[NDArray[np.intp], Mask]:
+def _intended(
+    cr: Crossings, design: Array, centre: Array, half: Array, start: Array
+) -> tuple[NDArray[np.intp], Mask]:
     """Column of the entering pair crossing nearest to the design frequency, inside the band."""
     with np.errstate(divide="ignore", invalid="ignore"):
         inside = np.abs(np.log(cr.omega / centre[:, None])) <= half[:, None]
         distance = np.abs(np.log(cr.omega / design[:, None]))
-    usable = inside & (cr.direction == 1) & (cr.poles == 2)
+    usable = inside & (cr.direction == 1) & (cr.poles == 2) & (cr.gain != start[:, None])
     distance = np.where(usable, distance, np.inf)
     column = np.argmin(distance, axis=1)
     return column, usable.any(axis=1)

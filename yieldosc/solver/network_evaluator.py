@@ -17,11 +17,13 @@ from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Circuit, Derived
 from yieldosc.circuits.network import Network, network
+from yieldosc.solver.competition import first_known, loses, sum_at_gain
 from yieldosc.solver.crossings import TO_ROUNDING, Split, newton, real_crossings
 from yieldosc.solver.exact import Modes, modes
 from yieldosc.solver.growth import growth_rate, only_pair_growth
 from yieldosc.solver.polynomials import roots
 from yieldosc.solver.reference import Reference, make_reference
+from yieldosc.solver.resistance import resistance_ratio
 from yieldosc.solver.routh import growing_poles
 from yieldosc.solver.scaled import Scale, Scaled, bias_substitute, scaled
 from yieldosc.solver.solution import Solution, Status
@@ -211,7 +213,7 @@ class NetworkEvaluator:
         a, b, g = part.take(rows)
         design = _full(self.circuit.design_frequency(values), n) * (2 * np.pi / ref.scale.omega)
         centre, half = self._band(values, design, ref.scale, n)
-        return modes(a, b, g, design[rows], centre[rows], half[rows])
+        return modes(a, b, g, design[rows], centre[rows], half[rows], fixed_gain=self.circuit.fixed_gain)
 
     def _exact(
         self,
@@ -245,7 +247,7 @@ class NetworkEvaluator:
         block.status[write] = status[keep]
         with np.errstate(invalid="ignore"):
             other = np.where(np.isinf(found.other_omega), 0.0, found.other_omega)
-        block.other_omega[write] = _first_known(other, found.other_gain)[keep]
+        block.other_omega[write] = first_known(other, found.other_gain)[keep]
         return int(np.count_nonzero(differs))
 
     def _exact_status(self, part: Scaled, found: Modes, rows: NDArray[np.intp]) -> NDArray[np.int8]:
@@ -254,8 +256,8 @@ class NetworkEvaluator:
         status = np.where(found.grows, Status.STARTS, np.where(other, Status.WRONG_MODE, Status.NO_START))
         rivals = np.flatnonzero(found.grows & other)
         if rivals.size:
-            status[rivals] = np.where(_loses(a, b, g, found, rivals), Status.WRONG_MODE, Status.STARTS)
-        poles = roots(_sum_at_gain(a, b, g))
+            status[rivals] = np.where(loses(a, b, g, found, rivals), Status.WRONG_MODE, Status.STARTS)
+        poles = roots(sum_at_gain(a, b, g))
         with np.errstate(invalid="ignore"):
             right = np.count_nonzero(poles.real > 0, axis=1)
             delicate = (np.abs(poles.real) <= 1e-9 * np.abs(poles)).any(axis=1)
@@ -299,11 +301,18 @@ class NetworkEvaluator:
             status=status.astype(np.int8),
             growth_per_s=block.growth * ref.scale.omega,
             critical_gain=critical,
+            resistance_ratio=self._resistance_ratio(part, ref, frequency),
             control_reach=None if reach is None else reach(part.symbols, values, critical),
             upper_ratio=upper,
             other_mode_hz=block.other_omega * hz,
             overdriven=block.overdriven,
         )
+
+    def _resistance_ratio(self, part: Scaled, ref: Reference, frequency_hz: Array) -> Array | None:
+        if self.circuit.crystal_arm is None:
+            return None
+        omega = frequency_hz * (2 * np.pi / ref.scale.omega)
+        return resistance_ratio(self.network, ref.scale, part.symbols, self.circuit.crystal_arm, omega, part.g)
 
     def _margin(self, block: _Block, part: Scaled, ref: Reference) -> tuple[Array, Array]:
         """g/g_c and g_h/g in the circuit's own gain (K of an op-amp stage), the smaller is the margin."""
@@ -328,43 +337,8 @@ class NetworkEvaluator:
         return margin, upper
 
 
-def _loses(a: list[Array], b: list[Array], g: Array, found: Modes, rows: NDArray[np.intp]) -> Mask:
-    """The intended mode grows, but another grows faster and needs less than twice its critical gain's reach."""
-    pa, pb = [c[rows] for c in a], [c[rows] for c in b]
-    own, _ = growth_rate(pa, pb, found.omega[rows], found.lower[rows], g[rows])
-    lost = np.zeros(rows.size, dtype=bool)
-    for k in range(found.other_omega.shape[1]):
-        omega, gain = found.other_omega[rows, k], found.other_gain[rows, k]
-        live = np.flatnonzero(~np.isnan(omega))
-        if live.size:
-            rate, _ = growth_rate([c[live] for c in pa], [c[live] for c in pb], omega[live], gain[live], g[rows][live])
-            close = np.abs(found.lower[rows][live]) > 0.5 * np.abs(gain[live])
-            lost[live] |= (rate > own[live]) & close
-    return lost
-
-
-def _first_known(omega: Array, gain: Array) -> Array:
-    """ω of the other growing mode with the lowest critical gain; nan where there is none."""
-    size = np.where(np.isnan(gain), np.inf, np.abs(gain))
-    column = np.argmin(size, axis=1)
-    return np.where(np.isfinite(size.min(axis=1)), omega[np.arange(len(column)), column], np.nan)
-
-
-def _sum_at_gain(a: list[Array], b: list[Array], g: Array) -> list[Array]:
-    size = max(len(a), len(b))
-    out = []
-    for k in range(size):
-        if k >= len(b):
-            out.append(a[k])
-        elif k >= len(a):
-            out.append(g * b[k])
-        else:
-            out.append(a[k] + g * b[k])
-    return out
-
-
 def _at_gain(part: Scaled) -> list[Array]:
-    return _sum_at_gain(part.a, part.b, part.g)
+    return sum_at_gain(part.a, part.b, part.g)
 
 
 def _empty(n: int) -> _Block:

@@ -80,10 +80,10 @@ def make_reference(
         middle, width = circuit.band(unit)
         centre = np.reshape(middle, (1,)) * 2 * np.pi / scale.omega
         half = np.reshape(width, (1,))
-    found = modes(part.a, part.b, part.g, design, centre, half)
+    found = modes(part.a, part.b, part.g, design, centre, half, fixed_gain=circuit.fixed_gain)
     extended = network.extended(symbols)
     empty = Reference(scale, extended, float(design[0]), (), 0, None, False)
-    if not found.found[0]:
+    if not found.found[0] or np.isfinite(found.start[0]):
         return empty
     pairs = np.flatnonzero(np.isfinite(found.crossings.gain[0]) & (found.crossings.poles[0] == 2))
     x = found.crossings.omega[0, pairs] ** 2
