@@ -74,6 +74,9 @@ def _better_grade(a: Assessment) -> str:
     )
 
 
+FREE_VALUES = ("R", "C", "L")  # traits whose nominal value a designer chooses; a crystal's or a device's is bought
+
+
 def _reaches(a: Assessment, best: Tighter) -> str:
     target = a.study.design.yield_target
     if target is None:
@@ -89,7 +92,8 @@ def _start_up(a: Assessment) -> str:
     ranking = a.rankings.get("margin")
     if ranking is None or not any(a.outcomes.get(name) for name in START_OUTCOMES):
         return ""
-    moved = [line for line in ranking.parts if line.per_percent]
+    chosen = {p.part for p in a.study.parameters if p.trait in FREE_VALUES}
+    moved = [line for line in ranking.parts if line.per_percent and line.part in chosen]
     if not moved:
         return ""
     first = max(moved, key=lambda line: abs(line.per_percent or 0.0))
