@@ -17,7 +17,8 @@ Mask = NDArray[np.bool_]
 TOLERANCE = 20e-6
 FIRST_COUNT = 3
 CLIMB_STEPS = 12
-LEAST_COUNT = 7  # below this two answers may agree by accident
+LEAST_COUNT = 7
+ACCIDENT = 20.0  # moves fall four- to tenfold with each doubling
 MOST_ODD, MOST_ALL = 127, 63
 CHUNK_NUMBERS = 250_000  # of the Jacobians of one chunk of units: they stay in the cache
 
@@ -63,6 +64,7 @@ def refine(
     )
     out.x[:, 1] = level
     rows = np.arange(n)
+    moved_before = np.full(n, np.inf)
     for count in _counts(cap):
         orders = orders_up_to(count, odd=odd, mean=not limiter.mean_fixed)
         points = samples_for(count, limiter, level)
@@ -71,8 +73,11 @@ def refine(
         if count == FIRST_COUNT:
             _climb(limiter, network, excess, skew, np.flatnonzero(~out.converged), orders, points, out)
             rows = np.flatnonzero(out.converged)  # a unit that even this does not find is given up
-        moved = np.abs(out.shift[rows] - before[rows])
-        still = out.converged[rows] & (moved <= tolerance) & (count > LEAST_COUNT)
+        moved = np.abs(out.shift - before)
+        # two unlike waves may agree by accident: a small move counts after one that was not large
+        calm = out.converged & (moved <= tolerance) & (moved_before <= ACCIDENT * tolerance)
+        still = calm[rows] & (count > LEAST_COUNT)
+        moved_before = moved
         out.capped[rows] = ~still & (count >= cap)
         rows = rows[~still]
         if not rows.size:

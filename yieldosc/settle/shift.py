@@ -89,7 +89,7 @@ class FittedShift:
         found = refine(
             units.limiter, units.network, units.excess, units.skew, even=units.even, tolerance=TOLERANCE / 4
         )
-        good = np.flatnonzero(found.converged & ~found.capped)
+        good = np.flatnonzero(found.converged)  # a cap that is reached at this tolerance may do for the fit's own
         if len(good) < 0.8 * count:
             return None
         units, table = units.take(good), _table(units, figures(found.shift, *waves(units, found)))[good]
