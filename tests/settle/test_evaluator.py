@@ -10,6 +10,7 @@ from tests.settle.tables import circuit_of, tank
 from yieldosc.circuits import registry
 from yieldosc.evaluators import make_evaluator
 from yieldosc.settle import fast as fast_module
+from yieldosc.settle.crossing import FirstHarmonic
 from yieldosc.settle.evaluator import SettlingEvaluator
 from yieldosc.settle.fast import FEWEST, fast
 from yieldosc.settle.prepared import prepare
@@ -147,6 +148,15 @@ def test_a_unit_without_convergence_is_undefined(monkeypatch):
     assert set(solution.status) == {Status.UNDEFINED}
     assert solution.settling.not_converged == 8
     assert np.isfinite(solution.settled_hz).all()
+
+
+def test_a_growing_unit_whose_loop_is_not_found_is_undefined(monkeypatch):
+    circuit, nominal = wien(RF=23e3)
+    lost = FirstHarmonic(np.array([np.nan, 1.0]), np.array([np.nan, 0.9]))
+    monkeypatch.setattr("yieldosc.settle.prepared.first_harmonic", lambda network, omega: lost)
+    solution = make_evaluator(circuit, nominal).solve(drawn(nominal, 2), 25.0)
+    assert set(solution.status) == {Status.UNDEFINED}
+    np.testing.assert_array_equal(solution.settled_hz, solution.frequency_hz)
 
 
 def test_a_level_control_settles_at_the_crossing():

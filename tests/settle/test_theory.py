@@ -2,6 +2,8 @@
 
 import numpy as np
 import pytest
+from scipy.optimize import brentq
+from scipy.special import i0, i1
 
 from tests.settle.tables import circuit_of, solved, tank
 from yieldosc.settle.balance import Wave, balance, orders_up_to
@@ -42,15 +44,18 @@ def test_a_bipolar_stage_shifts_with_its_margin():
 
 def test_amplitude_of_a_bipolar_stage_is_a_ratio_of_bessel_functions():
     """Fundamental of e^(x cos t) over its mean: 2 I1(x)/I0(x), x the amplitude in kT/q (Clarke & Hess 1971, from memory).
-    Only at high Q is the input a sinusoid."""
-    special = pytest.importorskip("scipy.special")
-    margin = 3.0
-    found, _ = settled_tank(3000.0, margin, "exp", harmonics=True)
-    x = np.linspace(1e-3, 20, 200_001)
-    level = x[np.argmin(np.abs(2 * special.i1(x) / (x * special.i0(x)) - 1 / margin))]
-    assert EXP.first_amplitude(np.array([margin]))[0] == pytest.approx(level, rel=1e-4)
+    Only at high Q is the input a sinusoid. The tank is input and output at once."""
+    margin, boltzmann_over_charge = 3.0, 8.617333262e-5  # V/K, CODATA 2018 from memory
+    rows, values = tank(3000.0, margin)
+    circuit = circuit_of(rows, "gm", 1 / (2 * np.pi), limiter="exp", extra=("hFE",))
+    arrays, solution = solved(circuit, {**values, "hFE": 100.0})
+    found = solve(circuit, arrays, 25.0, solution, limiter="exp")
+    x = brentq(lambda level: 2 * i1(level) / (level * i0(level)) - 1 / margin, 0.1, 20.0)
+    assert found.amplitude_in_v[0] == pytest.approx(x * boltzmann_over_charge * 298.15, rel=1e-4)
+    assert found.amplitude_out_v[0] == pytest.approx(found.amplitude_in_v[0], rel=1e-9)
     assert found.distortion_in[0] < 1e-3
-    assert np.isnan(found.amplitude_in_v[0])  # no stage, so no scale
+    unscaled, _ = settled_tank(3000.0, margin, "exp")
+    assert np.isnan(unscaled.amplitude_in_v[0])  # no bipolar stage, so no scale
 
 
 @pytest.mark.parametrize("excess", [1.01, 1.2, 2.0, 20.0])

@@ -13,6 +13,7 @@ from yieldosc.settle.fast import Checked, fast, in_full, unshifted
 from yieldosc.settle.prepared import Prepared, level_is_held, prepare
 from yieldosc.settle.settled import undisturbed, write_in_full
 from yieldosc.settle.shift import SPREADS, FittedShift, training_values
+from yieldosc.settle.transfer import limited_loop
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.solver.solution import Settling, Solution, Status
 
@@ -37,11 +38,14 @@ class SettlingEvaluator:
         fitted: bool = True,
     ) -> None:
         """crossing: the evaluator of frequency and margin; limits_width_hz: between the frequency limits: shifts below
-        1 ppm of it are not computed unit by unit; fitted = False: every unit by harmonic balance in full."""
+        1 ppm of it are not computed unit by unit; fitted = False: every unit by harmonic balance in full.
+        NoLimiterError where the declared limiter cannot be found in the circuit."""
         self.circuit = circuit
         self.nominal = {name: float(value) for name, value in nominal.items()}
         self.crossing = crossing
         self.limiter = circuit.options["limiter"]
+        if self.limiter != "agc":
+            limited_loop(circuit)  # a circuit without a model of its limiter is refused before any unit is solved
         self.limits_width_hz = limits_width_hz
         self.fitted = fitted
         self._fit = FittedShift(self._training)

@@ -33,7 +33,7 @@ class Checked:
 
 def in_full(live: Prepared, solution: Solution, *, limiter: str, tolerance: float = TOLERANCE) -> Checked:
     """Every live unit by harmonic balance."""
-    out = undisturbed(solution)
+    out = _blank(live, solution)
     write_in_full(out, live, tolerance=tolerance)
     return Checked(out, _account(out, limiter, "full", tolerance, full=len(live.rows)))
 
@@ -80,32 +80,36 @@ def _checked(
     tolerance: float,
     allowed: float,
 ) -> Checked:
-    out = undisturbed(solution)
+    out = _blank(live, solution)
     guess = predict(live)
     known, unknown = np.flatnonzero(guess.known), np.flatnonzero(~guess.known)
     write(out, live.take(known), _some(guess.figures, known))
     write_in_full(out, live.take(unknown), tolerance=tolerance)
-    sample = known[_sample(len(known))]
-    by_full = undisturbed(solution)
-    write_in_full(by_full, live.take(sample), tolerance=tolerance)
-    rows = live.rows[sample]
-    good = rows[~by_full.not_converged[rows]]
-    residual = float(np.max(np.abs(out.settled_hz[good] / by_full.settled_hz[good] - 1), initial=0.0))
-    shift = float(np.max(np.abs(by_full.settled_hz[good] / by_full.first_hz[good] - 1), initial=0.0))
-    failed = len(good) < len(rows)  # where the balance itself finds nothing, a fit has nothing to stand on
-    if residual > allowed or failed:
+    rows, residual, shift = _measured(out, live.take(known[_sample(len(known))]), solution, tolerance)
+    missed = not residual <= allowed
+    if missed:
         write_in_full(out, live.take(known), tolerance=tolerance)
-    account = _account(out, limiter, method, allowed, full=len(live.rows) if residual > allowed else len(unknown))
-    return Checked(
-        out,
-        replace(
-            account,
-            checked=len(rows),
-            residual=residual,
-            largest_shift=shift,
-            fell_back=residual > allowed or failed,
-        ),
-    )
+    account = _account(out, limiter, method, allowed, full=len(live.rows) if missed else len(unknown))
+    return Checked(out, replace(account, checked=rows, residual=residual, largest_shift=shift, fell_back=missed))
+
+
+def _measured(out: Settled, sample: Prepared, solution: Solution, tolerance: float) -> tuple[int, float, float]:
+    """Units checked, largest relative difference from their full balance, largest shift. The difference is infinite
+    where the balance does not converge: a fit has nothing to stand on there."""
+    full = undisturbed(solution)
+    write_in_full(full, sample, tolerance=tolerance)
+    rows = sample.rows
+    if full.not_converged[rows].any():
+        return len(rows), float("inf"), 0.0
+    residual = np.abs(out.settled_hz[rows] / full.settled_hz[rows] - 1)
+    shift = np.abs(full.settled_hz[rows] / full.first_hz[rows] - 1)
+    return len(rows), float(np.max(residual, initial=0.0)), float(np.max(shift, initial=0.0))
+
+
+def _blank(live: Prepared, solution: Solution) -> Settled:
+    out = undisturbed(solution)
+    out.not_converged[live.lost] = True
+    return out
 
 
 def _sample(count: int) -> NDArray[np.intp]:

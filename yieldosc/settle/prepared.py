@@ -28,6 +28,7 @@ class Prepared:
     even: even harmonics arise; voltage: the limiter bounds a voltage, else a current; rows (m,): which units; first_hz:
     zero-phase frequency of the limited loop; excess: loop gain there; skew: of the rails; in_v, out_v: volts at the
     limiter's input and at the output per unit of x and of the output transfer (nan where the scale is not known).
+    lost: units that grow although the limited loop has no zero-phase frequency with a gain above 1; not among `rows`.
     """
 
     limiter: Limiter
@@ -40,6 +41,7 @@ class Prepared:
     skew: Array
     in_v: Array
     out_v: Array
+    lost: NDArray[np.intp]
 
     def take(self, at: NDArray[np.intp]) -> Prepared:
         """Some of the live units."""
@@ -54,6 +56,7 @@ class Prepared:
             self.skew[at],
             self.in_v[at],
             self.out_v[at],
+            self.lost,
         )
 
 
@@ -70,41 +73,50 @@ def prepare(
     """Units that settle somewhere other than at their crossing: those that grow, and under `agc` only those whose level
     control is at its stop, with the gain that is left there. NoLimiterError where the circuit has no such limiter.
 
-    growing_only = False takes every unit whose loop has a zero-phase frequency, whatever its gain there."""
+    growing_only = False takes every unit whose loop has a zero-phase frequency, whatever its gain there.
+    """
     loop = limited_loop(circuit)
     n = len(solution.frequency_hz)
     model = LIMITERS["clip" if limiter == "agc" else limiter]
+    rows = np.flatnonzero(_live(solution, limiter, growing_only=growing_only))
     symbols = {k: _full(v, n) for k, v in circuit.derive(values, temperature_c, own_law).symbols.items()}
+    if limiter == "agc":
+        symbols = _with_full_control(circuit, symbols, solution)
+    symbols = {k: v[rows] for k, v in symbols.items()}
+    scale = _scale(loop, symbols, solution.frequency_hz[rows])
+    network = response(loop, symbols, scale, len(rows))
+    first = first_harmonic(network, solution.frequency_hz[rows] * (2 * np.pi / scale.omega))
+    found = first.excess > (1 if growing_only else 0)  # nan where there is no zero-phase frequency
+    kept = np.flatnonzero(found)
+    at, omega, gain = rows[kept], first.omega[kept], _input_gain(loop, circuit, symbols)[kept]
+    skew, volts, even = _levels(circuit, loop, model, values, temperature_c, n)
+    return Prepared(
+        limiter=model,
+        even=even or not model.odd,
+        voltage=loop.voltage,
+        rows=at,
+        network=network.take(kept).normalised(omega),
+        first_hz=omega * scale.omega / (2 * np.pi),
+        excess=first.excess[kept],
+        skew=skew[at],
+        in_v=volts[at] / (gain if loop.voltage else 1.0),
+        out_v=volts[at] * (1.0 if loop.voltage else gain * scale.ohm),
+        lost=rows[~found],
+    )
+
+
+def _scale(loop: LimitedLoop, symbols: Mapping[str, Array], crossing_hz: Array) -> Scale:
+    if not crossing_hz.size:
+        return Scale(1.0, 1.0)
+    return Scale.of(float(np.median(crossing_hz)), symbols, loop.loop.dimensions)
+
+
+def _live(solution: Solution, limiter: str, *, growing_only: bool) -> Mask:
     live = np.isfinite(solution.frequency_hz) & (solution.status != Status.NO_BIAS)
     if limiter == "agc":
         live &= _at_stop(solution)
-        symbols = _with_full_control(circuit, symbols, solution)
     with np.errstate(invalid="ignore"):
-        live &= (solution.startup_margin > 1) | (not growing_only)
-    rows = np.flatnonzero(live)
-    symbols = {k: v[rows] for k, v in symbols.items()}
-    crossing_hz = solution.frequency_hz[rows]
-    scale = Scale.of(float(np.median(crossing_hz)), symbols, loop.loop.dimensions) if rows.size else Scale(1.0, 1.0)
-    network = response(loop, symbols, scale, len(rows))
-    first = first_harmonic(network, crossing_hz * (2 * np.pi / scale.omega))
-    with np.errstate(invalid="ignore"):
-        kept = np.flatnonzero(np.isfinite(first.omega) & (first.excess > (1 if growing_only else 0)))
-    omega = first.omega[kept]
-    skew, in_v, out_v, even = _levels(circuit, loop, model, values, temperature_c, n)
-    gain = _input_gain(loop, circuit, symbols)[kept]
-    at = rows[kept]
-    return Prepared(
-        model,
-        even or not model.odd,
-        loop.voltage,
-        at,
-        network.take(kept).normalised(omega),
-        omega * scale.omega / (2 * np.pi),
-        first.excess[kept],
-        skew[at],
-        in_v[at] / (gain if loop.voltage else 1.0),
-        out_v[at] * (1.0 if loop.voltage else gain * scale.ohm),
-    )
+        return np.asarray(live & ((solution.startup_margin > 1) | (not growing_only)))
 
 
 def level_is_held(limiter: str, solution: Solution) -> bool:
@@ -139,26 +151,25 @@ def _input_gain(loop: LimitedLoop, circuit: Circuit, symbols: dict[str, Array]) 
 
 def _levels(
     circuit: Circuit, loop: LimitedLoop, model: Limiter, values: Values, temperature_c: float, n: int
-) -> tuple[Array, Array, Array, bool]:
-    """Skew of the rails, volts per unit of x at the limiter's input and of y at its output, and whether skew may be.
+) -> tuple[Array, Array, bool]:
+    """Skew of the rails, volts for which x is 1 (times K of a voltage limiter), and whether the rails may differ.
 
     A clipping output: the mean rail. A bipolar junction: kT/q, a pair of them: 2 kT/q (i = I tanh(v / 2 V_T)).
     """
     zero, unknown = np.zeros(n), np.full(n, np.nan)
     if model.name == "clip":
         if not loop.voltage:
-            return zero, unknown, unknown, False
+            return zero, unknown, False
         if "VSAT" in values:
-            rail = _full(values["VSAT"], n)
-            return zero, rail, rail, False
+            return zero, _full(values["VSAT"], n), False
         if "VSAT_high" in values and "VSAT_low" in values:
             high, low = _full(values["VSAT_high"], n), _full(values["VSAT_low"], n)
-            return (high - low) / (high + low), (high + low) / 2, (high + low) / 2, True
-        return zero, unknown, unknown, False
+            return (high - low) / (high + low), (high + low) / 2, True
+        return zero, unknown, False
     if circuit.options.get("stage", "bjt") != "bjt" or "hFE" not in values:
-        return zero, unknown, unknown, False
+        return zero, unknown, False
     volts = np.full(n, thermal_voltage_v(temperature_c) * (2.0 if model.name == "tanh" else 1.0))
-    return zero, volts, volts, False
+    return zero, volts, False
 
 
 def _full(value: Array | float, n: int) -> Array:

@@ -55,14 +55,7 @@ def refine(
     cap = most or (MOST_ODD if odd else MOST_ALL)
     n = len(excess)
     level = limiter.first_amplitude(excess)
-    out = Refined(
-        np.zeros(n),
-        np.zeros((n, cap + 1), dtype=np.complex128),
-        np.ones(n, dtype=np.int64),
-        np.zeros(n, dtype=bool),
-        np.zeros(n, dtype=bool),
-    )
-    out.x[:, 1] = level
+    out = _sinusoids(level, cap)
     rows = np.arange(n)
     moved_before = np.full(n, np.inf)
     for count in _counts(cap):
@@ -83,6 +76,13 @@ def refine(
         if not rows.size:
             break
     return out
+
+
+def _sinusoids(level: Array, cap: int) -> Refined:
+    n = len(level)
+    x = np.zeros((n, cap + 1), dtype=np.complex128)
+    x[:, 1] = level
+    return Refined(np.zeros(n), x, np.ones(n, dtype=np.int64), np.zeros(n, dtype=bool), np.zeros(n, dtype=bool))
 
 
 def _climb(

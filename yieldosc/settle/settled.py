@@ -80,6 +80,7 @@ def solve(
     if level_is_held(limiter, solution):
         return out
     live = prepare(circuit, values, temperature_c, solution, limiter=limiter, own_law=own_law)
+    out.not_converged[live.lost] = True
     write_in_full(out, live, tolerance=tolerance, most=most)
     return out
 
