@@ -79,25 +79,23 @@ def prepare(
     n = len(solution.frequency_hz)
     model = LIMITERS["clip" if limiter == "agc" else limiter]
     rows = np.flatnonzero(_live(solution, limiter, growing_only=growing_only))
-    symbols = {k: _full(v, n) for k, v in circuit.derive(values, temperature_c, own_law).symbols.items()}
-    if limiter == "agc":
-        symbols = _with_full_control(circuit, symbols, solution)
+    derived = circuit.derive(values, temperature_c, own_law).symbols
+    symbols = _as_limited(circuit, {k: _full(v, n) for k, v in derived.items()}, limiter, solution)
     symbols = {k: v[rows] for k, v in symbols.items()}
     scale = _scale(loop, symbols, solution.frequency_hz[rows])
     network = response(loop, symbols, scale, len(rows))
     first = first_harmonic(network, solution.frequency_hz[rows] * (2 * np.pi / scale.omega))
     found = first.excess > (1 if growing_only else 0)  # nan where there is no zero-phase frequency
-    kept = np.flatnonzero(found)
-    at, omega, gain = rows[kept], first.omega[kept], _input_gain(loop, circuit, symbols)[kept]
+    at, omega, gain = rows[found], first.omega[found], _input_gain(loop, circuit, symbols)[found]
     skew, volts, even = _levels(circuit, loop, model, values, temperature_c, n)
     return Prepared(
         limiter=model,
         even=even or not model.odd,
         voltage=loop.voltage,
         rows=at,
-        network=network.take(kept).normalised(omega),
+        network=network.take(np.flatnonzero(found)).normalised(omega),
         first_hz=omega * scale.omega / (2 * np.pi),
-        excess=first.excess[kept],
+        excess=first.excess[found],
         skew=skew[at],
         in_v=volts[at] / (gain if loop.voltage else 1.0),
         out_v=volts[at] * (1.0 if loop.voltage else gain * scale.ohm),
@@ -131,10 +129,12 @@ def _at_stop(solution: Solution) -> Mask:
         return np.asarray(solution.control_reach < 1)
 
 
-def _with_full_control(circuit: Circuit, symbols: dict[str, Array], solution: Solution) -> dict[str, Array]:
-    """The gain element at which the stage has the gain of full control, K_c/reach; K is linear in it."""
+def _as_limited(
+    circuit: Circuit, symbols: dict[str, Array], limiter: str, solution: Solution
+) -> dict[str, Array]:
+    """Under `agc` the gain element at which the stage has the gain of full control, K_c/reach; K is linear in it."""
     reach, critical = solution.control_reach, solution.critical_gain
-    if reach is None or critical is None or circuit.gain_of is None:
+    if limiter != "agc" or reach is None or critical is None or circuit.gain_of is None:
         return symbols
     none, one = (circuit.gain_of(symbols, np.full(len(reach), g)) for g in (0.0, 1.0))
     with np.errstate(invalid="ignore", divide="ignore"):
