@@ -66,7 +66,7 @@ def test_audit_disagreement(make_study, ideal_wien):
     )
     assert texts(found, "audit-disagreement") == [
         "1 of 8 audited unit-corners differ by more than 1e-6 in margin between the fast and the exact path "
-        "(one in 1024 is audited)."
+        "(one unit in 512 is audited)."
     ]
 
 

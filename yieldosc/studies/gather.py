@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from yieldosc.solver.solution import Solution, Status
 from yieldosc.studies.judge import GOOD, Codes
-from yieldosc.studies.run import AUDIT_SHARE, Setup, audit_turns, inner_pieces, not_starting
+from yieldosc.studies.run import Setup, audit_mask, inner_pieces, not_starting
 from yieldosc.studies.tally import Histogram, Moments
 
 Array = NDArray[np.float64]
@@ -106,9 +106,9 @@ def _gather_block(setup: Setup, found: Gathered, start: int, size: int) -> None:
     block = setup.block(start, size)
     joint = np.full(size, GOOD, dtype=np.int8)
     alive = np.ones(size, dtype=bool)
-    turns = audit_turns(setup.streams, start, size)
     for c, corner in enumerate(setup.corners):
-        solution = setup.bench.solve(block, corner, audit=turns == c % AUDIT_SHARE)
+        audit = audit_mask(setup.streams, start, size, c, len(setup.corners))
+        solution = setup.bench.solve(block, corner, audit=audit)
         codes = setup.judge.codes(solution)
         found.shown[c] += np.bincount(codes, minlength=CODES)
         failed = codes < GOOD

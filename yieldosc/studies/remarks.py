@@ -93,7 +93,7 @@ def run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> li
                 "warning",
                 "audit-disagreement",
                 f"{gathered.disagreeing} of {gathered.audited} audited unit-corners differ by more than 1e-6 in margin "
-                f"between the fast and the exact path (one in {AUDIT_SHARE} is audited).",
+                f"between the fast and the exact path (one unit in {AUDIT_SHARE} is audited).",
             )
         )
     if outcomes["undefined"]:

@@ -20,7 +20,7 @@ from yieldosc.study import Corner, Study
 Array = NDArray[np.float64]
 QUANTUM = 4096
 INNER = 2 * QUANTUM
-AUDIT_SHARE = 1024  # one unit-corner in so many is solved by both paths
+AUDIT_SHARE = 512  # one unit in so many is solved by both paths, at one corner of each solver block in turn
 _NOT_STARTING = np.array([s in (Status.NO_BIAS, Status.UNDEFINED, Status.NO_START, Status.WRONG_MODE) for s in Status])
 
 
@@ -97,9 +97,14 @@ def inner_pieces(start: int, count: int) -> list[tuple[int, int]]:
     return pieces
 
 
-def audit_turns(streams: Streams, start: int, count: int) -> NDArray[np.int64]:
-    """Each unit's number in 0 … AUDIT_SHARE − 1 (count,): both paths solve it at the corner of that number."""
-    return (uniforms(streams.seed, "audit", "corner", start, count) * AUDIT_SHARE).astype(np.int64)
+def audit_mask(streams: Streams, start: int, count: int, corner: int, corners: int) -> NDArray[np.bool_] | None:
+    """Units of a solver block that both paths solve at this corner (count,); None where it is another corner's turn.
+
+    One corner per block: the exact path costs as much for one unit as for sixteen.
+    """
+    if start // INNER % corners != corner:
+        return None
+    return uniforms(streams.seed, "audit", "unit", start, count) < 1 / AUDIT_SHARE
 
 
 def not_starting(solution: Solution) -> NDArray[np.bool_]:
