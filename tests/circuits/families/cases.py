@@ -41,7 +41,7 @@ PHASE_SHIFT: list[Case] = [
     (
         "phase_shift",
         {"stage": "mosfet", "sections": "4"},
-        {**{k: v for k, v in FOUR.items()}, "CC": 1e-6, "RC": 10e3, **MOSFET, "RS2": 1e3, "CE": 1e-5},
+        {**FOUR, "CC": 1e-6, "RC": 10e3, **MOSFET, "RS2": 1e3, "CE": 1e-5},
     ),
 ]
 OTHERS: list[Case] = [
