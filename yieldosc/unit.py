@@ -12,8 +12,8 @@ from numpy.typing import ArrayLike, NDArray
 from yieldosc.circuits import registry
 from yieldosc.circuits.circuit import Circuit, CircuitError, Family, Option, Role
 from yieldosc.errors import Finding, InputError
+from yieldosc.evaluators import make_evaluator
 from yieldosc.parts.values import nominal_value
-from yieldosc.solver import make_evaluator
 from yieldosc.solver.solution import Solution, Status
 from yieldosc.study import Study
 

@@ -58,7 +58,7 @@ def test_a_circuit_without_level_control_has_no_reach(make_study, ideal_wien):
 
 
 def test_without_a_limiter_the_report_says_what_is_left_out(make_study, ideal_wien):
-    (found,) = settling_findings(Setup.of(make_study(), ideal_wien(), seed=1))
+    (found,) = settling_findings(Setup.of(make_study(), ideal_wien(), seed=1), ())
     assert found.text == (
         "No limiter is declared, so every frequency is a crossing: where the circuit runs when its level is held "
         "without distortion. A stage that clips settles elsewhere, a low-Q RC circuit the more the larger its excess "

@@ -65,8 +65,7 @@ def write_draft(book: Book, *, circuit: str, options: Mapping[str, str], path: P
 def _worth_telling(roles: tuple[Role, ...], proposals: list[Proposal]) -> list[Proposal]:
     """Proposals for the roles that the draft holds, and optional roles that several parts might play."""
     by_name = {role.name: role for role in roles}
-    open_choice = [p.part is None and "are possible" in p.reason for p in proposals]
-    return [p for p, several in zip(proposals, open_choice, strict=True) if several or not _left_out(by_name[p.role], p)]
+    return [p for p in proposals if "are possible" in p.reason or not _left_out(by_name[p.role], p)]
 
 
 def _write(sheet: Worksheet, row: int, column: int, text: str, *, fill: PatternFill | None = None) -> None:

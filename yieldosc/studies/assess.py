@@ -12,8 +12,8 @@ from importlib import metadata
 import numpy as np
 
 from yieldosc.errors import Finding
+from yieldosc.evaluators import make_evaluator
 from yieldosc.population import Adjustment, Population
-from yieldosc.solver import make_evaluator
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies import remarks
 from yieldosc.studies.estimates import LookPlan
@@ -70,7 +70,12 @@ def assess(
     """
     started, clock = datetime.now(UTC), time.perf_counter()
     population = Population.of(study)
-    solver = evaluator or make_evaluator(study.circuit, nominal_values(population, reference_corner(study)))
+    design = study.design
+    solver = evaluator or make_evaluator(
+        study.circuit,
+        nominal_values(population, reference_corner(study)),
+        limits_width_hz=design.frequency_high_hz - design.frequency_low_hz,
+    )
     ratio = bench_ratio(study, population, solver)
     setup = Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment)
     plan, meter = _plan(study, units), Meter(progress)
@@ -217,7 +222,7 @@ def _assembled(
             *remarks.unjudged_findings(unjudged),
             *remarks.run_findings(study, run, outcomes),
             *reach_findings(setup, gathered.units, study.design.confidence),
-            *remarks.settling_findings(setup),
+            *remarks.settling_findings(setup, evidence.corners),
             *evidence.outside,
             *remarks.ranking_findings(evidence.rankings, evidence.unranked),
             *remarks.bench_findings(study, ratio),

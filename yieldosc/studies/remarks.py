@@ -9,8 +9,9 @@ import numpy as np
 from yieldosc.errors import Finding
 from yieldosc.population import Block
 from yieldosc.population.block import middle_draws
+from yieldosc.solver.solution import Solution
 from yieldosc.studies.estimates import LookPlan
-from yieldosc.studies.results import Lots, Ranking, Verdict
+from yieldosc.studies.results import CornerResult, Lots, Ranking, Verdict
 from yieldosc.studies.run import AUDIT_SHARE, Setup
 from yieldosc.studies.yields import YieldRun
 from yieldosc.study import Study
@@ -118,11 +119,13 @@ def run_findings(study: Study, run: YieldRun, outcomes: Mapping[str, int]) -> li
     return made
 
 
-def settling_findings(setup: Setup) -> list[Finding]:
-    """What the frequencies leave out, where no limiter is declared."""
+def settling_findings(setup: Setup, corners: Sequence[CornerResult]) -> list[Finding]:
+    """What the frequencies leave out where no limiter is declared; what it does to them where one is."""
     block = Block(setup.population, middle_draws(setup.population.variables, 1), 1, typical=True)
     solution = setup.bench.solve(block, setup.corners[0])
-    if solution.settled_hz is not None or np.isnan(solution.startup_margin).all():
+    if solution.settled_hz is not None:
+        return [_settled(solution, corners)]
+    if np.isnan(solution.startup_margin).all():
         return []
     text = (
         "No limiter is declared, so every frequency is a crossing: where the circuit runs when its level is held "
@@ -130,6 +133,19 @@ def settling_findings(setup: Setup) -> list[Finding]:
         "gain; that shift is left out."
     )
     return [Finding("note", "settling-left-out", text)]
+
+
+def _settled(solution: Solution, corners: Sequence[CornerResult]) -> Finding:
+    """Limits apply to the settled frequency; how far its median lies from the crossing's."""
+    shifts = [c.settled_hz.q50 / c.frequency_hz.q50 - 1 for c in corners if c.settled_hz is not None]
+    limiter = "declared" if solution.settling is None else solution.settling.limiter
+    low, high = (f"{shift * 100:+.3g} %".replace("-", "−") for shift in (min(shifts), max(shifts)))
+    where = f"{low} from the crossing's at every corner" if low == high else f"{low} to {high} from the crossing's"
+    text = (
+        f"The limiter is {limiter}: limits apply to the frequency where the circuit settles. Its median lies {where}; "
+        "the spread of that shift is in every rate."
+    )
+    return Finding("note", "settling-included", text)
 
 
 def bench_findings(study: Study, ratio: float | None) -> list[Finding]:
