@@ -173,8 +173,9 @@ def _node_problems(rows: tuple[Row, ...]) -> list[str]:
             joins = []  # a current source holds no node
         for first, second in joins:
             group[root(first)] = root(second)
-        for node in {row.start, row.end, row.control_plus, row.control_minus} - {"", GROUND}:
-            touched.setdefault(node, []).append(row.name)
+        for node in dict.fromkeys((row.start, row.end, row.control_plus, row.control_minus)):
+            if node not in ("", GROUND):
+                touched.setdefault(node, []).append(row.name)
     problems = [
         f"node {node} is touched by branch {names[0]} only: connect it, or remove the branch"
         for node, names in touched.items()

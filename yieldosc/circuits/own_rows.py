@@ -167,6 +167,8 @@ def _values(where: str, kind: Kind, name: str, text: str, problems: list[str]) -
             listed = "; or ".join(counts.values())
             problems.append(f"{where} needs the names of its values, in this order: {listed}")
             return ()
+        if not name:
+            return ()  # the missing name has been said
         given = (name,)
     if len(given) not in counts:
         listed = "; or ".join(counts.values())

@@ -39,7 +39,7 @@ def _trees(branches: Sequence[Branch], *, controls: bool) -> float:
     edges: list[tuple[str, str, float]] = []
     for row in branches:
         if row.kind in ("opamp", "gain"):
-            scale *= 2 if row.kind == "opamp" else 3  # left side or right side of its row
+            scale *= 1 + len(row.symbols)  # terms of both sides of its row
             if controls:
                 edges += [(row.nodes[0], GROUND, 1.0), (row.nodes[1], row.nodes[2], 1.0)]
             else:
