@@ -16,6 +16,7 @@ from yieldosc.circuits.network import expand
 from yieldosc.circuits.own_circuit import Row, build_own, parse_rows
 from yieldosc.circuits.term_count import most_terms
 from yieldosc.solver import make_evaluator
+from yieldosc.solver.no_crossing import no_crossing_reason
 from yieldosc.solver.solution import Status
 
 FIELDS = ("frequency_hz", "startup_margin", "growth_per_s", "critical_gain", "upper_ratio", "resistance_ratio")
@@ -335,6 +336,18 @@ def test_a_user_s_text_never_becomes_code():
     values = {"Ltank": 1e-6, "C1": 1e-9, "R1": 1e3, "K1": 2.5, "R2": 1e3}
     s = solve_circuit(own, {k: np.array([v]) for k, v in values.items()})
     assert s.critical_gain[0] == pytest.approx(2, rel=1e-12)
+
+
+def test_a_table_without_a_crossing_says_what_to_look_at():
+    """Control nodes of the gain row exchanged: the feedback damps, whatever its gain."""
+    turned = changed(3, **{"control+": "gnd", "control-": "a"})
+    values = {"L1": 1e-6, "C1": 1e-9, "R1": 1e3, "K1": 2.5, "R2": 1e3}
+    assert no_crossing_reason(build_own(parse_rows(TANK_ROWS), 5.03e6), values) is None
+    assert no_crossing_reason(build_own(parse_rows(turned), 5.03e6), values) == (
+        "at the nominal values no gain of K1 brings the circuit to oscillation near the design frequency of 5.03e+06 Hz; "
+        "check the branch table (the sense of the gain element's nodes first) and the frequency"
+    )
+    assert no_crossing_reason(build_own(parse_rows(TANK_ROWS), 1e6), values) is not None  # a factor 2 away is no crossing
 
 
 # -- poles that grow before the gain element does anything ----------------------------------------------------------------
