@@ -95,26 +95,40 @@ class NetworkEvaluator:
             self._growth(block, part, doubt)
         audited = 0 if audit is None else int(np.count_nonzero(audit & ~doubt))
         solution = self._solution(block, part, derived, values, reference, n)
+        if growth:  # the other start-up figures are asked for together
+            ratio = self._resistance_ratio(part, reference, solution.frequency_hz)
+            solution = replace(solution, resistance_ratio=ratio)
         return replace(solution, audited=audited, disagreeing=disagreeing, exact=int(np.count_nonzero(doubt)))
 
     def other_modes(
         self, values: Mapping[str, Array], temperature_c: float, *, own_law: frozenset[str] = frozenset()
     ) -> list[tuple[float, ...]]:
         """Frequencies [Hz] of every other growing mode of each unit, 0 for a latching real pole."""
-        n = max((np.size(v) for v in values.values()), default=1)
-        reference = self._reference(values, temperature_c, own_law)
-        derived = self.circuit.derive(values, temperature_c, own_law)
-        part = scaled(self.network, reference.scale, bias_substitute(self.circuit, derived, reference.symbols, n), n)
-        found = self._modes(part, values, reference, np.arange(n), n)
-        hz = reference.scale.omega / (2 * np.pi)
+        found, hz = self._all_modes(values, temperature_c, own_law)
         rows = []
-        for unit in range(n):
+        for unit in range(len(found.found)):
             omegas = found.other_omega[unit]
             kept = omegas[~np.isnan(omegas)]
             rows.append(tuple(sorted(float(w) * hz if np.isfinite(w) else 0.0 for w in kept)))
         return rows
 
+    def crosses(
+        self, values: Mapping[str, Array], temperature_c: float, *, own_law: frozenset[str] = frozenset()
+    ) -> Mask:
+        """Units (n,) of which some gain brings a pole pair to the axis inside the band of the intended mode."""
+        return self._all_modes(values, temperature_c, own_law)[0].found
+
     # -- pieces --------------------------------------------------------------------------------------------------
+
+    def _all_modes(
+        self, values: Mapping[str, Array], temperature_c: float, own_law: frozenset[str]
+    ) -> tuple[Modes, float]:
+        """Modes of every unit by the exact path, and the Hz of one scaled rad/s."""
+        n = max((np.size(v) for v in values.values()), default=1)
+        reference = self._reference(values, temperature_c, own_law)
+        derived = self.circuit.derive(values, temperature_c, own_law)
+        part = scaled(self.network, reference.scale, bias_substitute(self.circuit, derived, reference.symbols, n), n)
+        return self._modes(part, values, reference, np.arange(n), n), reference.scale.omega / (2 * np.pi)
 
     def _reference(
         self, values: Mapping[str, Array], temperature_c: float, own_law: frozenset[str]
@@ -301,7 +315,6 @@ class NetworkEvaluator:
             status=status.astype(np.int8),
             growth_per_s=block.growth * ref.scale.omega,
             critical_gain=critical,
-            resistance_ratio=self._resistance_ratio(part, ref, frequency),
             control_reach=None if reach is None else reach(part.symbols, values, critical),
             upper_ratio=upper,
             other_mode_hz=block.other_omega * hz,

@@ -18,8 +18,7 @@ def no_crossing_reason(circuit: Circuit, nominal: Mapping[str, float], temperatu
     if circuit.direct is not None:
         return None
     arrays = {name: np.array([float(value)]) for name, value in nominal.items()}
-    solution = NetworkEvaluator(circuit, nominal).solve(arrays, temperature_c)
-    if solution.critical_gain is None or np.isfinite(solution.critical_gain[0]):
+    if NetworkEvaluator(circuit, nominal).crosses(arrays, temperature_c)[0]:
         return None
     gain = next(row.name for row in circuit.branches if row.gain_element)
     design_hz = float(np.ravel(circuit.design_frequency(arrays))[0])
