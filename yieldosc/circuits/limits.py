@@ -51,16 +51,21 @@ def with_limiter(family: Family, *choices: str) -> Family:
         recipe = (name, chosen, tuple(sorted(present)))
         return replace(circuit, roles=given, recipe=recipe, assumptions=_assumptions(circuit, limiter))
 
-    return replace(family, options=(*family.options, option), roles=roles, build=build)
+    def option_problems(options: Mapping[str, str]) -> list[str]:
+        return family.option_problems(options) + _unsuited(options, choices)
+
+    return replace(
+        family,
+        options=(*family.options, option),
+        roles=roles,
+        build=build,
+        option_problems=option_problems,
+    )
 
 
 def _problems(circuit: Circuit, limiter: str, present: frozenset[str]) -> list[str]:
     problems = []
-    suited = _suited(circuit)
-    if limiter not in (UNDECLARED, *suited):
-        listed = ", ".join((UNDECLARED, *suited))
-        problems.append(f"limiter = {limiter} does not suit this stage; choose one of {listed}")
-    elif circuit.control_reach is not None and limiter == "clip":
+    if circuit.control_reach is not None and limiter == "clip":
         problems.append("a stabiliser holds the level here, so the output does not clip: choose limiter = agc")
     uneven = {"VSAT_high", "VSAT_low"} & present
     if len(uneven) == 1:
@@ -70,11 +75,14 @@ def _problems(circuit: Circuit, limiter: str, present: frozenset[str]) -> list[s
     return problems
 
 
-def _suited(circuit: Circuit) -> tuple[str, ...]:
+def _unsuited(options: Mapping[str, str], choices: tuple[str, ...]) -> list[str]:
     """An output voltage clips, a junction is exponential, any controlled current may be a differential pair's."""
-    if any(row.gain_element and row.kind == "transconductance" for row in circuit.branches):
-        return BIPOLAR if circuit.options.get("stage", "bjt") == "bjt" else CURRENT
-    return VOLTAGE
+    stage, limiter = options.get("stage"), options.get("limiter", UNDECLARED)
+    suited = choices if stage is None else {"opamp": VOLTAGE, "bjt": BIPOLAR}.get(stage, CURRENT)
+    if limiter in (UNDECLARED, *suited):
+        return []
+    listed = ", ".join((UNDECLARED, *suited))
+    return [f"limiter = {limiter} does not suit this stage; choose one of {listed}"]
 
 
 def _assumptions(circuit: Circuit, limiter: str) -> tuple[str, ...]:

@@ -144,7 +144,11 @@ def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         closed_form=CLOSED_FORM,
         not_assessable=outside,
         range_text=opamp.RANGE_TEXT,
-        assumptions=(opamp.ASSUMPTION, "buffers are ideal", "no stabiliser: the level is limited by clipping"),
+        assumptions=(
+            opamp.ASSUMPTION,
+            *(("buffers are ideal",) if options["buffered"] == "yes" else ()),
+            "no stabiliser: the level is limited by clipping",
+        ),
         schematic=SCHEMATIC,
         recipe=("phase_shift", tuple(sorted(options.items())), tuple(sorted(present))),
     )
