@@ -101,6 +101,8 @@ def _needed(role: Role) -> str:
 
 
 def _branches(circuit: Circuit, console: Console) -> None:
+    if not circuit.branches:
+        return  # formulas in place of a network
     heading(console, "Branches", "with the roles that go together; the gain element is marked g")
     table = plain_table(("branch", ""), ("kind", ""), ("nodes", ""), ("values", ""), ("", ""))
     for b in circuit.branches:
