@@ -199,7 +199,8 @@ def test_every_circuit_can_be_shown(name):
     assert max(cell_len(row) for row in text.splitlines()) <= 100
     for role in family.roles(options):
         assert re.search(rf"^{role.name} ", text, re.MULTILINE)
-    assert "\nRoles" in text and "\nBranches" in text
+    assert "\nRoles" in text
+    assert ("\nBranches" in text) == (name not in ("timer_astable", "schmitt_rc", "square_to_sine"))  # formulas
 
 
 def test_the_list_names_every_circuit():
