@@ -278,3 +278,13 @@ def test_fractions_need_their_unit() -> None:
     with pytest.raises(QuantityError) as caught:
         parse_fraction("5")
     assert str(caught.value) == '"5" has no unit; write "5 %" or "5 ppm"'
+
+
+def test_a_bare_f_is_neither_femto_nor_farad():
+    with pytest.raises(QuantityError) as caught:
+        parse_quantity("15f", "F")
+    assert str(caught.value) == (
+        '"15f" may be femtofarads or farads; write "15 fF" for femtofarads, "15 F" for farads'
+    )
+    assert parse_quantity("15 fF", "F").value == 15e-15
+    assert parse_quantity("10uf", "F").value == pytest.approx(10e-6)

@@ -163,6 +163,11 @@ def _number_and_unit(plain: str, si_unit: str | None, decimal_comma: bool) -> Fo
         return number, 0, "Ω"  # "470E": E for ohm where nothing follows
     if tail in _PREFIX_ONLY and si_unit not in ("s", "S", "°C", "1", "years"):
         return number, _PREFIX_ONLY[tail], None
+    if tail == "f" and si_unit in (None, "F"):
+        figure = match["number"].strip()
+        raise QuantityError(
+            f'{shown(plain)} may be femtofarads or farads; write "{figure} fF" for femtofarads, "{figure} F" for farads'
+        )
     named = _UNITS.get(tail) or _UNITS.get(tail.rstrip("."))
     return None if named is None else (number, named[1], named[0])
 

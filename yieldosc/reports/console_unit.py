@@ -34,17 +34,27 @@ def print_unit(unit: Unit, console: Console) -> None:
 def _rows(unit: Unit) -> list[tuple[str, str, str]]:
     outcome = str(unit.outcome)
     rows = [("outcome", outcome, MEANING.get(outcome, ""))]
-    rows.append(("frequency", _figure(unit.frequency_hz, "Hz"), "where the start-up condition is just met"))
+    switches = unit.startup_margin is None and outcome == "starts"
+    if switches:
+        rows = [("outcome", "runs", "it switches; there is no start-up question")]
+        rows.append(("frequency", _figure(unit.frequency_hz, "Hz"), "of the switching"))
+    else:
+        rows.append(("frequency", _figure(unit.frequency_hz, "Hz"), "where the start-up condition is just met"))
     if unit.settled_hz is not None:
         rows.append(("settled frequency", _figure(unit.settled_hz, "Hz"), "with the limiter at work"))
-    rows.append(("start-up margin", _figure(unit.startup_margin, None, 5), "gain over critical gain; starts above 1"))
-    rows.append(("growth rate", _figure(unit.growth_per_s, "1/s", 5), "of the envelope at start-up"))
+    if not switches:
+        margin = _figure(unit.startup_margin, None, 5)
+        rows.append(("start-up margin", margin, "gain over critical gain; starts above 1"))
+        rows.append(("growth rate", _figure(unit.growth_per_s, "1/s", 5), "of the envelope at start-up"))
     if unit.resistance_ratio is not None:
         rows.append(("resistance ratio", _figure(unit.resistance_ratio, None, 4), "negative resistance over ESR"))
     if unit.distortion is not None:
-        rows.append(("distortion", f"{_number(unit.distortion) * 100:.3g} %", "once settled"))
+        meaning = "at the filter's output" if switches else "once settled"
+        rows.append(("distortion", f"{_number(unit.distortion) * 100:.3g} %", meaning))
     if np.any(unit.overdriven):
-        rows.append(("overdriven", "yes", "the level lies beyond what the model of the limiter covers"))
+        rows.append(("overdriven", "yes", "the pair has become two real roots; growth is the smaller"))
+    if switches:
+        return rows
     found = [f for f in unit.other_modes_hz if isinstance(f, float)]
     modes = [format_quantity(f, "Hz", 6) if f else "latches (0 Hz)" for f in found]
     rows.append(("other modes", ", ".join(modes) or "none", "grow too" if modes else "no other mode grows"))
