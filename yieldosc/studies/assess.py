@@ -64,7 +64,7 @@ def assess(
     """Everything that `Assessment` holds. No digit depends on `workers` or `block`.
 
     units: exactly so many, one look; None: looks at 50,000 · 4^k until a verdict stands. progress: told (done, total)
-    in unit evaluations. rival_units: units of each rival set (default 20,480, never more than the declared run).
+    in unit evaluations. rival_units: units of each rival set (default 12,288, never more than the declared run).
     block: units per piece of work. evaluator: in place of the circuit's own solver. adjustment: what is done to each
     board before it is judged.
     """

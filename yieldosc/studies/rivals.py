@@ -26,7 +26,7 @@ from yieldosc.studies.run import QUANTUM, Setup
 Parameters = tuple[Parameter, ...]
 Change = Callable[[Parameter], Parameter]
 Slopes = Mapping[str, tuple[float, float]]  # role → relative slopes of frequency and margin at the nominal unit
-RIVAL_UNITS = 20_480
+RIVAL_UNITS = 12_288
 MOST_REELS = 6  # sign patterns are all tried up to here
 SCREENED_ABOVE = 8  # more patterns than this are screened on one quantum first
 KEPT = 3  # of the screened patterns, the lowest this many and the highest one are shown
