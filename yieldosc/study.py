@@ -10,7 +10,7 @@ from dataclasses import dataclass, field, fields
 from typing import TYPE_CHECKING, Literal
 
 from yieldosc.errors import Finding
-from yieldosc.parts.parameter import Given, Parameter
+from yieldosc.parts.parameter import Given, Law, Parameter
 
 if TYPE_CHECKING:
     from yieldosc.circuits.circuit import Circuit
@@ -75,11 +75,14 @@ class Design:
     failed_unit_cost: float | None = None
     test_temperature_c: float | None = None
     measurement_sd_hz: float | None = None
+    measurement_bias_hz: float = 0.0  # the instrument may read so much high or low (±), the same for every unit
     escape_limit: float | None = None  # fraction
     trim_role: str | None = None
     trim_low: float | None = None
     trim_high: float | None = None
-    trim_step: float | None = None
+    trim_step: float | None = None  # None: continuous, or trim_series
+    trim_step_tolerance: float = 0.0  # ± fraction: own tolerance of each switched step
+    trim_series: str | None = None  # "E24": select on test from the values of this series between low and high
     pilot_column: str | None = None
 
     @property
@@ -119,6 +122,46 @@ class Design:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class GradeRow:
+    """One line of the user's Grades: what a kind of part, or one part, can be bought as. The price is one part's."""
+
+    target: str  # a designator, or a kind ("capacitor")
+    by_part: bool
+    tolerance: tuple[float, float] | None  # fractions; None: as declared
+    law: Law | None
+    law_text: str | None  # None: the law as declared; "none": no dependence
+    price: float | None
+    price_factor: float | None  # against the part as declared
+    place: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Alternate:
+    """A second source of one part: every role of the part that differs, complete."""
+
+    part: str
+    name: str
+    parameters: tuple[Parameter, ...]
+    price: float | None
+    place: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Pilot:
+    """Boards that were built and measured at the test temperature, in the order of their rows."""
+
+    column: str
+    frequency_hz: tuple[float, ...]
+    no_starts: int
+    place: str
+
+    @property
+    def boards(self) -> int:
+        """Measured boards, those that did not start included."""
+        return len(self.frequency_hz) + self.no_starts
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Study:
     """Circuit, parts, limits and conditions of one analysis."""
 
@@ -134,6 +177,10 @@ class Study:
     design_rows: tuple[tuple[str, ...], ...] = ()  # the Design and Roles sheets as text, without their headings
     role_rows: tuple[tuple[str, ...], ...] = ()
     extra_rows: Mapping[str, tuple[tuple[str, ...], ...]] = field(default_factory=dict)  # other sheets, headings first
+    grades: tuple[GradeRow, ...] = ()  # empty: the built-in ladders
+    alternates: tuple[Alternate, ...] = ()
+    pilot: Pilot | None = None
+    prices: Mapping[str, float] = field(default_factory=dict)  # designator → price of one part, where the BOM states it
     findings: tuple[Finding, ...] = ()
     digest: str = ""  # SHA-256 of the canonical inputs as understood
 
