@@ -264,7 +264,7 @@ class TrimR1:
 
     reach: float
 
-    def factors(self, block, bench):
+    def factors(self, block, bench, draw):
         corner = replace(bench_corner, temperature_c=25.0)
         f = bench.solve(block, corner).frequency_hz
         return "R1", np.clip((f / target_hz) ** 2, 1 - self.reach, 1 + self.reach)

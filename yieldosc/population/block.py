@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field, replace
 from typing import Protocol
 
@@ -81,6 +81,10 @@ class Block:
         }
         self._factors: dict[str, Array] = {}
 
+    def initial(self, role: str) -> Array:
+        """Values (n,) or 0-d of one role at 25 °C, new, before soldering and adjustment."""
+        return self._initial[role]
+
     def adjust(self, role: str, factors: Array) -> None:
         """Multiply one role of every unit by factors (n,) at every corner: a trim."""
         self._factors[role] = self._factors.get(role, np.ones(self.count)) * factors
@@ -151,6 +155,9 @@ def middle_draws(every: Iterable[Variable], count: int) -> Draws:
 class Adjustment(Protocol):
     """Something done to each unit between drawing and judging: a trim. Must be picklable."""
 
-    def factors(self, block: Block, bench: Bench) -> tuple[str, Array]:
-        """The role that is adjusted, and each unit's factor (n,) on it; the block may be solved on the way."""
+    def factors(self, block: Block, bench: Bench, draw: Callable[[str], Array]) -> tuple[str, Array]:
+        """The role that is adjusted, and each unit's factor (n,) on it; the block may be solved on the way.
+
+        draw(name): u (n,) of these units from a stream of the adjustment's own (a reading's noise, a part fitted).
+        """
         ...

@@ -2,12 +2,10 @@
 
 from __future__ import annotations
 
-import sys
 import time
 from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
-from importlib import metadata
 
 import numpy as np
 
@@ -23,6 +21,7 @@ from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_
 from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values, per_percent, reference_corner, slopes
 from yieldosc.studies.parallel import Workers, default_workers
 from yieldosc.studies.progress import Callback, Meter
+from yieldosc.studies.provenance import provenance
 from yieldosc.studies.ranking import BASE, rankings
 from yieldosc.studies.reach import reach_findings
 from yieldosc.studies.results import (
@@ -85,18 +84,12 @@ def assess(
         target = study.design.yield_target
         run = joint_yield(setup, plan, target, workers=crew, block=block, meter=meter)
         evidence = _evidence(study, setup, run, effort, crew, meter)
-    provenance = Provenance(
-        seed=seed,
-        input_sha256=study.digest,
-        versions=versions(),
-        started=started.isoformat(timespec="seconds"),
-        seconds=round(time.perf_counter() - clock, 3),
-        workers=crew.count,
-        audited=run.gathered.audited,
-        disagreeing=run.gathered.disagreeing,
-        exact=run.gathered.exact,
-    )
-    return _assembled(study, setup, run, plan, evidence, ratio, provenance)
+    tallies = run.gathered
+    made = provenance(
+        study, seed, started, clock, crew.count,
+        audited=tallies.audited, disagreeing=tallies.disagreeing, exact=tallies.exact,
+    )  # fmt: skip
+    return _assembled(study, setup, run, plan, evidence, ratio, made)
 
 
 def _plan(study: Study, units: int | None) -> LookPlan:
@@ -230,14 +223,3 @@ def _assembled(
         cautions=remarks.cautions(evidence.lots),
         provenance=provenance,
     )
-
-
-def versions() -> dict[str, str]:
-    """Versions of everything that can change a digit."""
-    found = {"python": sys.version.split()[0]}
-    for package in ("yieldosc", "numpy", "scipy", "SALib"):
-        try:
-            found[package] = metadata.version(package)
-        except metadata.PackageNotFoundError:
-            found[package] = "not installed"
-    return found

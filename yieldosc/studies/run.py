@@ -6,12 +6,13 @@ call sees the same units whatever the number of workers; results are merged in o
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from yieldosc.population import Adjustment, Bench, Block, Population, Streams, uniforms
+from yieldosc.population import Adjustment, Bench, Block, Population, Streams, uniforms, uniforms_at
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.solver.solution import Solution, Status
 from yieldosc.studies.judge import GOOD, Codes, Judge
@@ -56,17 +57,26 @@ class Setup:
             adjustment=adjustment,
         )
 
+    def with_adjustment(self, adjustment: Adjustment | None) -> Setup:
+        """The same units with something else done to each board."""
+        return replace(self, adjustment=adjustment)
+
     def block(self, start: int, count: int) -> Block:
         """Units start … start + count − 1, adjusted where the study adjusts its boards."""
-        return self._adjusted(self.population.block(self.streams, start, count))
+        return self._adjusted(self.population.block(self.streams, start, count), self.draw(start, count))
+
+    def draw(self, start: int, count: int) -> Callable[[str], Array]:
+        """Streams of these units for what is done to boards: name → u (count,)."""
+        return lambda name: uniforms(self.streams.seed, "adjustment", name, start, count)
 
     def block_at(self, numbers: NDArray[np.int64]) -> Block:
         """The units of these numbers (m,)."""
-        return self._adjusted(self.population.block_at(self.streams, numbers))
+        block = self.population.block_at(self.streams, numbers)
+        return self._adjusted(block, lambda name: uniforms_at(self.streams.seed, "adjustment", name, numbers))
 
-    def _adjusted(self, block: Block) -> Block:
+    def _adjusted(self, block: Block, draw: Callable[[str], Array]) -> Block:
         if self.adjustment is not None:
-            role, factors = self.adjustment.factors(block, self.bench)
+            role, factors = self.adjustment.factors(block, self.bench, draw)
             block.adjust(role, factors)
         return block
 
