@@ -16,6 +16,7 @@ from yieldosc.reports.amounts import (
     upper_text,
 )
 from yieldosc.reports.findings import Summary, summarise
+from yieldosc.reports.console_knowledge import print_knowledge
 from yieldosc.reports.temperatures import caption, temperature_lines
 from yieldosc.reports.terminal import hanging, heading, line, one_line, plain_table
 from yieldosc.sheets.text_guard import printable
@@ -47,6 +48,7 @@ def print_assessment(a: Assessment, console: Console) -> None:
         if output in a.rankings:
             _bars(a.rankings[output], name, console)
     _rivals(a, console)
+    print_knowledge(a, console)
     _grades(a, console)
     _sentences("What decides it", summary.deciding, "•", console)
     _sentences("What to do next", summary.next_steps, "→", console)

@@ -14,6 +14,7 @@ from openpyxl import Workbook
 from yieldosc.reports.findings import summarise
 from yieldosc.reports.workbook_evidence import assumptions, better_grades, extremes, worst_units
 from yieldosc.reports.workbook_inputs import contract_sheets, import_findings, inputs_used, method, provenance
+from yieldosc.reports.workbook_knowledge import what_to_measure
 from yieldosc.reports.workbook_results import frequency_spread, leading_parts, temperatures
 from yieldosc.reports.workbook_signoff import sign_off
 from yieldosc.studies.results import Assessment
@@ -32,6 +33,7 @@ def make_workbook(a: Assessment) -> Workbook:
     frequency_spread(book, a)
     extremes(book, a)
     assumptions(book, a, summary)
+    what_to_measure(book, a)
     better_grades(book, a)
     inputs_used(book, a)
     import_findings(book, a)

@@ -101,3 +101,16 @@ def rounded_axis(low: float, high: float) -> tuple[float, float, float]:
     step = next(power * m for m in (1, 2, 5, 10) if extent / (power * m) <= 8)
     first, last = math.floor(low / step) * step, math.ceil(high / step) * step
     return (first, last, step) if last > first else (first - step, last + step, step)
+
+
+def around_zero(
+    sheet: Worksheet, title: str, axis: str, *, names: Reference, values: Sequence[Reference]
+) -> BarChart:
+    """Horizontal bars to both sides of 0, first row on top. values: two columns whose first cells are the names."""
+    chart = bars(sheet, title, axis, names=names, values=values, number_format="General")
+    chart.grouping, chart.overlap = "stacked", 100  # a fall and a rise share one line
+    chart.y_axis.scaling.min = None
+    chart.x_axis.tickLblPos = "low"  # names at the edge, not beside the zero line
+    chart.y_axis.crosses = "max"
+    chart.x_axis.crosses = "autoZero"
+    return chart

@@ -36,6 +36,8 @@ from yieldosc.studies.results import (
 )
 from yieldosc.studies.rivals import RIVAL_UNITS, rivals
 from yieldosc.studies.run import QUANTUM, Setup
+from yieldosc.studies.scrutinise import scrutinise
+from yieldosc.studies.scrutiny import Scrutiny
 from yieldosc.studies.sensitivity import REPLICATES, NotANumberError
 from yieldosc.studies.tighter import leading_parts, tighter
 from yieldosc.studies.worst_units import worst_units
@@ -138,6 +140,7 @@ class _Evidence:
     bands: tuple[Band, ...]
     lots: Lots | None
     outside: tuple[Finding, ...]
+    scrutiny: Scrutiny
 
 
 def _evidence(
@@ -158,7 +161,10 @@ def _evidence(
     if shares_reels(setup):
         yields = lot_yields(setup, units_per_lot=effort.units_per_lot, workers=crew, meter=meter)
         shared = lots(yields, effort.units_per_lot, study.design.yield_target, confidence)
-    return _Evidence(ranked, unranked, tried, effort.rival_units, better, corners, found, shared, outside)
+    sceptical = scrutinise(
+        setup, tried, declared_good, ranked, confidence=confidence, workers=crew, meter=meter
+    )
+    return _Evidence(ranked, unranked, tried, effort.rival_units, better, corners, found, shared, outside, sceptical)
 
 
 def _rankings(
@@ -222,4 +228,5 @@ def _assembled(
         ),
         cautions=remarks.cautions(evidence.lots),
         provenance=provenance,
+        scrutiny=evidence.scrutiny,
     )

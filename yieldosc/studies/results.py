@@ -7,10 +7,13 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 from yieldosc.errors import Finding
 from yieldosc.study import Corner, Study
+
+if TYPE_CHECKING:
+    from yieldosc.studies.scrutiny import Scrutiny
 
 Verdict = Literal["meets", "does not meet", "not proven", "not assessable"]
 OUTCOMES = (
@@ -220,6 +223,7 @@ class Assessment:
     findings: tuple[Finding, ...]
     cautions: tuple[str, ...]
     provenance: Provenance
+    scrutiny: Scrutiny | None = None
 
     @property
     def yield_range(self) -> tuple[float, float]:

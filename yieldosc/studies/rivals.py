@@ -78,20 +78,21 @@ def _single_sets(declared: Parameters, slopes: Slopes) -> Iterator[Rival]:
     yield Rival("whole crystal angle", "crystals cut anywhere in their whole angle interval", changed(_whole_angle))
 
 
-def _bounded_spread(p: Parameter) -> bool:
+def bounded_spread(p: Parameter) -> bool:
+    """True when the initial values of units differ."""
     return p.high > p.low and p.shape.text != "fixed"
 
 
 def _uniform(p: Parameter) -> Parameter:
-    return replace(p, shape=Uniform()) if _bounded_spread(p) else p
+    return replace(p, shape=Uniform()) if bounded_spread(p) else p
 
 
 def _normal(p: Parameter) -> Parameter:
-    return replace(p, shape=Normal()) if _bounded_spread(p) else p
+    return replace(p, shape=Normal()) if bounded_spread(p) else p
 
 
 def _hollow(p: Parameter) -> Parameter:
-    return replace(p, shape=Hollow()) if _bounded_spread(p) and p.kind in SORTED_KINDS else p
+    return replace(p, shape=Hollow()) if bounded_spread(p) and p.kind in SORTED_KINDS else p
 
 
 def _one_reel(declared: Parameters) -> Change:
@@ -122,13 +123,13 @@ def _weak_half(p: Parameter, slopes: Slopes) -> Parameter:
     slope = slopes.get(p.role, (0.0, 0.0))[1]
     if not is_min_typ_max(p.shape) or not slope:
         return p
-    return _half(p, -1 if slope > 0 else 1)
+    return half_tolerance(p, -1 if slope > 0 else 1)
 
 
-def _half(p: Parameter, side: int) -> Parameter:
+def half_tolerance(p: Parameter, side: int) -> Parameter:
     """The whole distribution squeezed into one half of its tolerance."""
     low, high = (p.low, p.typical) if side < 0 else (p.typical, p.high)
-    if not _bounded_spread(p) or high <= low or isinstance(p.shape, Measured):
+    if not bounded_spread(p) or high <= low or isinstance(p.shape, Measured):
         return p
     shape = Uniform() if is_min_typ_max(p.shape) else p.shape
     return replace(p, low=low, typical=(low + high) / 2, high=high, shape=shape)
@@ -138,7 +139,7 @@ def _groups(declared: Parameters) -> dict[str, list[str]]:
     """Reel (or, without one, the part) → roles whose tolerance can lean to one side together."""
     groups: dict[str, list[str]] = {}
     for p in declared:
-        if _bounded_spread(p):
+        if bounded_spread(p):
             groups.setdefault(f"{p.reel} {p.trait}" if p.reel is not None else p.role, []).append(p.role)
     return groups
 
@@ -164,7 +165,7 @@ def _patterns(declared: Parameters, slopes: Slopes) -> Iterator[Rival]:
 def _pattern(declared: Parameters, groups: Mapping[str, list[str]], pattern: Mapping[str, int], name: str) -> Rival:
     side = {role: pattern[key] for key, roles in groups.items() for role in roles}
     shown = ", ".join(f"{'/'.join(roles)} {'low' if pattern[key] < 0 else 'high'}" for key, roles in groups.items())
-    parameters = tuple(_half(p, side[p.role]) if p.role in side else p for p in declared)
+    parameters = tuple(half_tolerance(p, side[p.role]) if p.role in side else p for p in declared)
     return Rival(f"{name}: {shown}" if name == "one-sided lots" else name,
                  f"every tolerance squeezed into one half: {shown}", parameters)  # fmt: skip
 

@@ -16,6 +16,7 @@ from yieldosc.studies.results import (
     Ranking,
     RankLine,
 )
+from yieldosc.studies.serialise_scrutiny import scrutiny_dict
 
 
 def assessment_dict(assessment: Assessment) -> dict[str, object]:
@@ -63,7 +64,7 @@ def assessment_dict(assessment: Assessment) -> dict[str, object]:
         "cautions": list(a.cautions),
         # The number of workers is no part of the result: documents from any number of them are equal but for times.
         "provenance": {key: value for key, value in asdict(a.provenance).items() if key != "workers"},
-    }
+    } | scrutiny_dict(a.scrutiny)
     return {key: finite(value) for key, value in document.items()}
 
 

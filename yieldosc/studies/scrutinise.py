@@ -1,0 +1,50 @@
+"""Runs what stands beside the declared yield so that a sceptical reader can judge it."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+from numpy.typing import NDArray
+
+from yieldosc.studies.bench_list import bench_list
+from yieldosc.studies.knowledge import is_device_value, knowledge
+from yieldosc.studies.parallel import Workers
+from yieldosc.studies.progress import Meter
+from yieldosc.studies.results import Ranking, RivalResult
+from yieldosc.studies.run import Setup
+from yieldosc.studies.scrutiny import Scrutiny
+from yieldosc.studies.tighter import leading_parts
+
+IDLE_SHARE = 0.01  # of both variances: a device below it is not tried value by value
+
+
+def scrutinise(
+    setup: Setup,
+    tried: Sequence[RivalResult],
+    declared_good: NDArray[np.bool_],
+    rankings: Mapping[str, Ranking],
+    *,
+    confidence: float,
+    workers: Workers | None = None,
+    meter: Meter | None = None,
+) -> Scrutiny:
+    """tried: the assessment's sets; declared_good (n,): which of units 0 … n − 1 the declared set calls good."""
+    declared = setup.population.parameters
+    found = knowledge(
+        setup, tried, declared_good, devices=moving_devices(setup, rankings), confidence=confidence, workers=workers,
+        meter=meter,
+    )  # fmt: skip
+    listed = bench_list(found, declared, leading_parts(rankings), confidence=confidence)
+    return Scrutiny(knowledge=found, bench_list=listed)
+
+
+def moving_devices(setup: Setup, rankings: Mapping[str, Ranking]) -> tuple[str, ...]:
+    """Active devices that hold at least 1 % of some variance, their reel's share included; all where nothing is
+    ranked."""
+    devices = {p.part: p.reel for p in setup.population.parameters if is_device_value(p)}
+    lines = [line for ranking in rankings.values() for line in ranking.parts]
+    if not lines:
+        return tuple(devices)
+    moving = {line.part for line in lines if line.total.high >= IDLE_SHARE}
+    return tuple(part for part, reel in devices.items() if part in moving or f"reel {reel}" in moving)

@@ -1,0 +1,40 @@
+"""Scrutiny → keys of the `assess` object that stand beside its stable core."""
+
+from __future__ import annotations
+
+from dataclasses import asdict
+
+from yieldosc.studies.results import Estimate, RivalResult
+from yieldosc.studies.scrutiny import Knowledge, Scrutiny
+
+
+def scrutiny_dict(scrutiny: Scrutiny | None) -> dict[str, object]:
+    """One key per question; empty lists and nulls where it does not arise."""
+    s = scrutiny or Scrutiny()
+    return {
+        "spread_by_assumption": [_knowledge(k) for k in s.knowledge],
+        "bench_list": [asdict(item) for item in s.bench_list],
+    }
+
+
+def _knowledge(k: Knowledge) -> dict[str, object]:
+    return {
+        "knowledge": k.name,
+        "roles": list(k.roles),
+        "sets": k.sets,
+        "fall": k.fall,
+        "rise": k.rise,
+        "lowest": _end(k.lowest),
+        "highest": _end(k.highest),
+        "measurable": k.measurable,
+    }
+
+
+def _end(rival: RivalResult | None) -> dict[str, object] | None:
+    if rival is None:
+        return None
+    return {"name": rival.name, "yield": _estimate(rival.yield_), "difference": _estimate(rival.difference)}
+
+
+def _estimate(estimate: Estimate | None) -> dict[str, object] | None:
+    return None if estimate is None else estimate.to_dict()
