@@ -50,7 +50,7 @@ def test_tables_and_measurements_as_text(tmp_path):
         ("", 'study.toml names no BOM; add a line bom = "FILE.csv"'),
         ('bom = "../bom.csv"\n', "bom = '../bom.csv': the BOM must stand in the study's own folder"),
         ('bom = "/etc/passwd"\n', "bom = '/etc/passwd': the BOM must stand in the study's own folder"),
-        ('bom = "bom.csv"\ncolour = 3\n', "'colour' is no table of a study; they are: bom, design, roles, tables, measured, circuit"),
+        ('bom = "bom.csv"\n[colour]\nred = 3\n', "'colour' is no table of a study; they are: bom, design, roles, tables, measured, circuit, grades, alternates, pilot"),
     ],
 )
 def test_refusals(tmp_path, head, text):

@@ -48,6 +48,14 @@ class BoundsReader:
             typical = self._from_bom()
         shape = self._shape()
         written = self.row.cell("Tolerance")
+        if self.measured and (least is not None or most is not None or written is not None):
+            other = "a tolerance" if written is not None else "Min or Max"
+            self.problems.error(
+                "two-spreads",
+                f"{self.role.name} has both the shape measured and {other}; keep one of them",
+                self.row.place_of("Shape"),
+            )
+            return None
         if (least is not None or most is not None) and written is not None:
             self.problems.error(
                 "two-spreads", f"{self.role.name} has both a tolerance and Min or Max; keep one of them", written.place
@@ -138,7 +146,6 @@ class BoundsReader:
             if spread is None:
                 return None
             self.given["tolerance"] = written.given
-            self._beats_bom(written, spread)
         elif self.measured or (shape is not None and shape.text == "fixed"):
             spread = (0.0, 0.0)
         elif self.line is not None and self.role.main and self.line.tolerance is not None:
@@ -151,20 +158,6 @@ class BoundsReader:
         low, high = typical * (1 + spread[0]), typical * (1 + spread[1])
         fixed = low == high
         return Bounds(low, typical, high, Fixed() if fixed else shape or parse_shape(self.default_shape), self.given)
-
-    def _beats_bom(self, written: Entry, spread: tuple[float, float]) -> None:
-        line = self.line
-        if line is None or not self.role.main or line.tolerance is None or line.tolerance == spread:
-            return
-        there = line.given.get("tolerance")
-        text = there.text if there is not None else f"{line.tolerance[1] * 100:g} %"
-        self.problems.add(
-            "note",
-            "roles-beat-bom",
-            f"{self.role.name}: Roles says {written.written}, the BOM line of {line.designator} says {text}; "
-            "Roles is used",
-            written.place,
-        )
 
     def _default(self) -> Bounds | None:
         value = self.role.default
@@ -208,9 +201,6 @@ class BoundsReader:
 
 def role_value(entry: Entry, role: Role, name: str, problems: Problems) -> float | None:
     """The value of a cell in the role's SI unit, above zero unless the role may be zero; None with a finding."""
-    if entry.fault:
-        problems.error("no-value", f"{name}: {entry.fault}; type the value itself", entry.place)
-        return None
     if entry.number is not None and not entry.percent:
         value = entry.number
     else:

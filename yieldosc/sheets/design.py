@@ -10,7 +10,7 @@ from typing import Any
 from yieldosc.errors import Place
 from yieldosc.parts.shapes import ShapeError, parse_shape
 from yieldosc.quantities import QuantityError, parse_quantity, parse_tolerance, shown
-from yieldosc.sheets.entries import Entry, Problems, folded, plain_number, quantity
+from yieldosc.sheets.entries import Entry, Problems, faulty, folded, plain_number, quantity
 from yieldosc.study import Design, Requirement
 
 
@@ -95,9 +95,6 @@ def tolerance(
     entry: Entry, name: str, problems: Problems, *, nominal: float | None, si_unit: str | None
 ) -> tuple[float, float] | None:
     """Fractions (low, high) from text with its unit or a percent cell; None with a finding."""
-    if entry.fault:
-        problems.error("no-value", f"{name}: {entry.fault}; type the value itself", entry.place)
-        return None
     if entry.number is not None and entry.percent:
         return -abs(entry.number), abs(entry.number)
     if entry.number is not None:
@@ -188,12 +185,14 @@ def read_design(items: list[Item], place: Place, problems: Problems) -> DesignSh
         if name not in sheet.items:
             problems.error("missing-item", f'Design has no item "{name}"; add it', place)
     for name, item in sheet.items.items():
-        if name in ITEMS and not item.value.blank:
+        if item.value.blank or faulty(item.value, item.name, problems):
+            continue
+        if name in ITEMS:
             field_name, reader = ITEMS[name]
             value = reader(item, problems)
             if value is not None:
                 sheet.values[field_name] = value
-    if "circuit" in sheet.items:
+    if "circuit" in sheet.items and not sheet.items["circuit"].value.fault:
         sheet.circuit = sheet.items["circuit"].value.written
     return sheet
 
@@ -207,9 +206,10 @@ def _sort(item: Item, sheet: DesignSheet, problems: Problems) -> None:
         return
     if key.startswith("option") and key != "option":
         option = item.name.strip()[len("option") :].strip(" _-").replace(" ", "_")
-        if option in sheet.options:
+        if folded(option) in map(folded, sheet.options):
             problems.error("doubled-item", f'"{item.name}" stands twice; keep one', item.value.place)
-        sheet.options[option] = (item.value.written, item.value.place)
+        if not item.value.fault:
+            sheet.options[option] = (item.value.written, item.value.place)
         sheet.items[f"option {option}"] = item
     elif key not in _BY_KEY:
         close = difflib.get_close_matches(key, _BY_KEY, n=1)
@@ -242,6 +242,8 @@ def frequency_limits(sheet: DesignSheet, problems: Problems) -> tuple[float, flo
 
 def _limit(item: Item, target: float | None, problems: Problems) -> float | None:
     entry = item.value
+    if entry.blank or entry.fault:
+        return None  # said already
     if entry.number is not None and not entry.percent and not item.unit.strip():
         problems.error(
             "bare-number",
@@ -255,11 +257,20 @@ def _limit(item: Item, target: float | None, problems: Problems) -> float | None
     except QuantityError as error:
         problems.error("unreadable", f"{item.name}: {error}", entry.place)
         return None
-    if found.si_unit == "Hz":
+    absolute = found.si_unit == "Hz"
+    if not absolute and found.si_unit != "1":
+        problems.error("unreadable", f"{item.name} must be in ppm, % or Hz; found {shown(item.text)}", entry.place)
+    elif (found.value if absolute else 1 + found.value) <= 0:
+        problems.error(
+            "not-positive",
+            f"{item.name} must lie above 0 Hz; found {item.text}: a deviation is written in ppm or %, "
+            "a frequency in Hz is the limit itself",
+            entry.place,
+        )
+    elif absolute:
         return found.value
-    if found.si_unit == "1":
-        return None if target is None else target * (1 + found.value)
-    problems.error("unreadable", f"{item.name} must be in ppm, % or Hz; found {shown(item.text)}", entry.place)
+    elif target is not None:
+        return float(target * (1 + found.value))
     return None
 
 
@@ -273,7 +284,8 @@ def check_design(sheet: DesignSheet, problems: Problems) -> None:
             f"temperature low {low:g} °C is above temperature high {high:g} °C; swap them",
             sheet.place_of("temperature low"),
         )
-    for name, value in (("temperature low", low), ("temperature high", high)):
+    tested = values.get("test_temperature_c")
+    for name, value in (("temperature low", low), ("temperature high", high), ("test temperature", tested)):
         if value is not None and not -273.15 < value < 1000:
             problems.error("impossible", f"{name} {value:g} °C is no temperature of a board", sheet.place_of(name))
     if "supply_tolerance" in values and "supply_v" not in values:
@@ -300,14 +312,38 @@ def make_design(
         if sd is None:
             share = quantity(item.value, "1", item.name, problems, unit_text=item.unit)
             sd = None if share is None else share * target
+        if sd is not None and sd <= 0:
+            problems.error("not-positive", f"{item.name} must be above zero; found {item.text}", item.value.place)
         values["measurement_sd_hz"] = sd
     for name in ("trim low", "trim high", "trim step"):
         if name in sheet.items and trim_unit is not None:
             item = sheet.items[name]
             values[ITEMS[name][0]] = quantity(item.value, trim_unit, name, problems, unit_text=item.unit)
+    _check_trim(sheet, values, problems)
     if problems.fatal:
         return None
     return Design(frequency_low_hz=limits[0], frequency_high_hz=limits[1], **values)
+
+
+def _check_trim(sheet: DesignSheet, values: Mapping[str, Any], problems: Problems) -> None:
+    """A trim goes from a lower value to a higher one, above zero, in steps that fit between."""
+    low, high, step = (values.get(f"trim_{name}") for name in ("low", "high", "step"))
+    if not isinstance(low, float) or not isinstance(high, float):
+        return  # a problem of its own, or no trim
+    texts = {name: sheet.items[name].text for name in ("trim low", "trim high", "trim step") if name in sheet.items}
+    if not 0 < low < high:
+        problems.error(
+            "trim-order",
+            f"trim low {texts['trim low']} and trim high {texts['trim high']} must be above zero and rise",
+            sheet.place_of("trim low"),
+        )
+    elif isinstance(step, float) and not 0 < step <= high - low:
+        problems.error(
+            "trim-order",
+            f"trim step {texts['trim step']} must be above zero and fit between {texts['trim low']} and "
+            f"{texts['trim high']}",
+            sheet.place_of("trim step"),
+        )
 
 
 def requirements(design: Design, items: Mapping[str, Item]) -> tuple[Requirement, ...]:

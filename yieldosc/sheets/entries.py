@@ -71,11 +71,15 @@ class Problems:
         return any(f.level == "error" for f in self.findings)
 
 
-def quantity(entry: Entry, si_unit: str, name: str, problems: Problems, *, unit_text: str = "") -> float | None:
-    """A value in SI units, or None with a finding. A bare number is in SI units only where the Unit column says so."""
+def faulty(entry: Entry, name: str, problems: Problems) -> bool:
+    """True, with a finding, for a cell without a value of its own; what is read from a cell passes here first."""
     if entry.fault:
         problems.error("no-value", f"{name}: {entry.fault}; type the value itself", entry.place)
-        return None
+    return bool(entry.fault)
+
+
+def quantity(entry: Entry, si_unit: str, name: str, problems: Problems, *, unit_text: str = "") -> float | None:
+    """A value in SI units, or None with a finding. A bare number is in SI units only where the Unit column says so."""
     text = entry.written if not unit_text.strip() else f"{entry.written} {unit_text.strip()}"
     if entry.number is not None and not entry.percent and not unit_text.strip():
         example = f"{entry.number:g} {_unit_word(si_unit)}"
@@ -98,9 +102,6 @@ def _unit_word(si_unit: str) -> str:
 
 def plain_number(entry: Entry, name: str, problems: Problems) -> float | None:
     """A number without unit, or None with a finding."""
-    if entry.fault:
-        problems.error("no-value", f"{name}: {entry.fault}; type the value itself", entry.place)
-        return None
     if entry.number is not None:
         return entry.number
     try:

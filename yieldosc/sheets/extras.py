@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 
 from yieldosc.errors import Place
 from yieldosc.quantities import QuantityError, parse_quantity
-from yieldosc.sheets.entries import Entry, Problems, entry_of, folded
+from yieldosc.sheets.entries import Entry, Problems, entry_of, faulty, folded
 from yieldosc.sheets.grid import Book, Grid
 
 KNOWN = ("BOM", "Design", "Roles", "Measured", "Grades", "Alternates", "Circuit", "Pilot")
@@ -36,6 +36,8 @@ def _points(grid: Grid, problems: Problems) -> list[tuple[float, float]]:
 
 
 def _read(entry: Entry, si_unit: str, name: str, problems: Problems, *, bare: bool) -> float | None:
+    if faulty(entry, name, problems):
+        return None
     if entry.number is not None and (bare or entry.percent or entry.number == 0):
         return entry.number
     if entry.number is not None:
@@ -92,7 +94,7 @@ def _column(grid: Grid, column: int, name: str, si_unit: str, problems: Problems
     return tuple(values)
 
 
-def branch_rows(book: Book) -> list[dict[str, str]] | None:
+def branch_rows(book: Book, problems: Problems) -> list[dict[str, str]] | None:
     """The sheet Circuit as rows of heading → text, empty rows left out; None where there is no such sheet."""
     grid = book.sheet("Circuit")
     if grid is None:
@@ -100,8 +102,11 @@ def branch_rows(book: Book) -> list[dict[str, str]] | None:
     headings = [cell.text.strip() for cell in grid.rows[0]] if grid.rows else []
     made = []
     for r in range(1, len(grid.rows)):
-        texts = [entry_of(grid.cell(r, c), grid.place(r, c)).written for c in range(len(headings))]
-        row = {heading: text for heading, text in zip(headings, texts, strict=True) if heading and text}
+        row = {}
+        for c, heading in enumerate(headings):
+            entry = entry_of(grid.cell(r, c), grid.place(r, c))
+            if heading and not faulty(entry, f"Circuit {heading}", problems) and entry.written:
+                row[heading] = entry.written
         if row:
             made.append(row)
     return made

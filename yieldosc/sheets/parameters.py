@@ -18,9 +18,10 @@ from yieldosc.sheets.bom import reel_key
 from yieldosc.sheets.bomline import BomLine
 from yieldosc.sheets.bounds import Bounds, BoundsReader, role_value
 from yieldosc.sheets.design import DesignSheet, reel_share, tolerance
-from yieldosc.sheets.entries import Problems
+from yieldosc.sheets.entries import Entry, Problems, faulty
 from yieldosc.sheets.roles import RoleRow
 
+SPREAD = ("Min", "Max", "Tolerance", "Shape", "Temperature law", "Solder", "Drift", "Reel share")
 PASSIVE = ("resistor", "capacitor", "inductor", "crystal")
 
 
@@ -30,6 +31,7 @@ class Sources:
 
     design: DesignSheet
     lines: Mapping[str, BomLine]  # designator → line
+    rivals: Mapping[str, Sequence[BomLine]]  # designator → its lines, where they say different things
     tables: Mapping[str, Sequence[tuple[float, float]]]
     measured: Mapping[str, tuple[float, ...]]
 
@@ -51,6 +53,8 @@ class ParameterMaker:
             if role.name == circuit.supply_role:
                 continue
             row = rows.get(role.name)
+            if row is not None and self._faulty(row):
+                continue
             if role.condition:
                 value = self._condition(role, row)
                 if value is not None:
@@ -59,11 +63,18 @@ class ParameterMaker:
             made = self._parameter(role, row)
             if made is not None:
                 parameters.append(made)
-        self._without_law(circuit, parameters)
         return tuple(parameters), conditions
+
+    def _faulty(self, row: RoleRow) -> bool:
+        """True, with findings, for a row with a cell that has no value: nothing more can be said of it."""
+        names = {column: column if column in ("Min", "Typ", "Max") else column.lower() for column in row.cells}
+        told = [faulty(entry, f"{row.role} {names[column]}", self.problems) for column, entry in row.cells.items()]
+        return any(told)
 
     def _condition(self, role: Role, row: RoleRow | None) -> float | None:
         """An operating condition: one value, from Typ or from the crystal's BOM line."""
+        if row is not None:
+            self._without_spread(row)
         entry = None if row is None else row.cell("Typ")
         if entry is not None:
             return role_value(entry, role, f"{role.name} Typ", self.problems)
@@ -73,6 +84,17 @@ class ParameterMaker:
         place = Place("Roles") if row is None else row.place
         self.problems.error("value-missing", f"{role.name} ({role.meaning}) has no value: give it as Typ", place)
         return None
+
+    def _without_spread(self, row: RoleRow) -> None:
+        """An operating condition has one value for all units."""
+        unused = [column for column in SPREAD if row.cell(column) is not None]
+        if unused:
+            self.problems.add(
+                "warning",
+                "condition-without-spread",
+                f"{row.role} is an operating condition, the same for every unit: {', '.join(unused)} not used",
+                row.place_of(unused[0]),
+            )
 
     def _line(self, role: Role, row: RoleRow) -> BomLine | None:
         """The BOM line that the row names, checked for kind and unit."""
@@ -86,6 +108,14 @@ class ParameterMaker:
                 "unknown-part", f"{role.name} names {shown(name)}, which is not in the BOM", entry.place
             )
             return None
+        if line.designator in self.sources.rivals:
+            places = ", ".join(str(rival.place) for rival in self.sources.rivals[line.designator])
+            self.problems.error(
+                "ambiguous-part",
+                f"{role.name} names {line.designator}, which stands on several lines of the BOM that differ "
+                f"({places}); rename or delete all but one",
+                entry.place,
+            )
         if not line.fitted:
             self.problems.error(
                 "not-fitted", f"{role.name} names {name}, which the BOM marks as not fitted", entry.place
@@ -134,7 +164,7 @@ class ParameterMaker:
             ageing = default_ageing(law.text)
         note = row.cell("Note") if row is not None else None
         return Parameter(
-            role=role.name, part=role.name if part is None else part.written, trait=role.trait,
+            role=role.name, part=_part_name(role, part, line), trait=role.trait,
             kind=line.kind if line is not None else _kind(role), unit=role.unit,
             nominal=bounds.typical, low=bounds.low, typical=bounds.typical, high=bounds.high, shape=bounds.shape,
             law=law, solder=solder, drift=drift, ageing=ageing,
@@ -253,28 +283,6 @@ class ParameterMaker:
         )
         return "assumed"
 
-    def _without_law(self, circuit: Circuit, parameters: Sequence[Parameter]) -> None:
-        """One warning for all parts that are taken as constant over temperature."""
-        low, high = self.range_c
-        if low == high:
-            return
-        bare = [
-            p.role
-            for p in parameters
-            if p.law is None
-            and "law" not in p.given
-            and p.part != p.role
-            and circuit.role(p.role).builtin_law is None
-            and circuit.role(p.role).main
-        ]
-        if bare:
-            self.problems.add(
-                "warning",
-                "no-law",
-                f"no temperature law for {', '.join(bare)}: taken as constant over temperature; write none to say that "
-                "this is meant, or give the law",
-            )
-
 
 _KINDS: dict[str, Kind] = {
     "resistor": "resistor",
@@ -284,6 +292,13 @@ _KINDS: dict[str, Kind] = {
     "transistor": "transistor",
     "ic": "ic",
 }
+
+
+def _part_name(role: Role, entry: Entry | None, line: BomLine | None) -> str:
+    """The designator as the BOM writes it, or the role's own name where no part stands behind it."""
+    if line is not None:
+        return line.designator
+    return role.name if entry is None else entry.written
 
 
 def _kind(role: Role) -> Kind:

@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
 
 from yieldosc.circuits import own_circuit, registry
-from yieldosc.circuits.circuit import Circuit, CircuitError, Role
+from yieldosc.circuits.circuit import Circuit, CircuitError, Family, Role
 from yieldosc.errors import Finding, InputError, Place, refusal
 from yieldosc.sheets.bom import BomReading, read_bom
+from yieldosc.sheets.bomline import BomLine
 from yieldosc.sheets.design import DesignSheet, check_design, frequency_limits, make_design, read_design, requirements
 from yieldosc.sheets.digest import digest_of
 from yieldosc.sheets.entries import Problems, folded
@@ -18,6 +19,7 @@ from yieldosc.sheets.extras import branch_rows, law_tables, measured_values, unu
 from yieldosc.sheets.grid import Book
 from yieldosc.sheets.opening import open_book
 from yieldosc.sheets.parameters import ParameterMaker, Sources
+from yieldosc.sheets.remarks import remark
 from yieldosc.sheets.roles import COLUMNS, RoleRow, sort_rows
 from yieldosc.sheets.study_tables import StudyTables, workbook_tables
 from yieldosc.sheets.toml_study import toml_tables
@@ -83,13 +85,15 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
     sources = Sources(
         design=sheet,
         lines=lines,
-        tables=tables.law_tables or law_tables(book, _named_tables(rows), problems),
+        rivals=_rivals(reading.lines),
+        tables=law_tables(book, _named_tables(rows), problems),
         measured=measured_values(book, _measured_units(circuit, rows), problems),
     )
     unused_sheets(book, (), problems)
     _supply(sheet, circuit, problems)
     parameters, conditions = ParameterMaker(sources, problems).make(circuit, rows)
-    _note_pedigrees(rows, problems)
+    low, high = (sheet.values.get(f"temperature_{end}_c") for end in ("low", "high"))
+    remark(circuit, parameters, rows, lines, problems, one_temperature=low == high)
     trim_unit = _trim_unit(sheet, circuit, problems)
     if limits is None or problems.fatal:
         return None
@@ -124,18 +128,34 @@ def _bom(book: Book, problems: Problems) -> BomReading:
     return reading
 
 
+def _rivals(lines: Sequence[BomLine]) -> dict[str, list[BomLine]]:
+    """Designators with lines that differ in what a role would take from them."""
+    found: dict[str, list[BomLine]] = {}
+    for line in lines:
+        found.setdefault(line.designator, []).append(line)
+
+    def content(line: BomLine) -> tuple[object, ...]:
+        return line.kind, line.value, line.tolerance, line.temperature_law, line.fitted
+
+    return {name: those for name, those in found.items() if len({content(line) for line in those}) > 1}
+
+
 def _circuit(sheet: DesignSheet, rows: Mapping[str, RoleRow], problems: Problems) -> Circuit | None:
     if not sheet.circuit:
         return None
     place = sheet.place_of("circuit")
-    options = {name: choice for name, (choice, _) in sheet.options.items()}
+    options: dict[str, str] = {}
+    places: dict[str, Place] = {}
     try:
         family = registry.family(sheet.circuit)
+        for written, (choice, option_place) in sheet.options.items():
+            name, options_choice = _spelt(family, written, choice)
+            options[name], places[name] = options_choice, option_place
         chosen = registry.complete_options(family.name, options)
     except CircuitError as error:
         for text in error.problems:
             option = next((name for name in options if f" {name} " in f"{text} " or f"'{name}'" in text), None)
-            problems.error("circuit", text, place if option is None else sheet.options[option][1])
+            problems.error("circuit", text, place if option is None else places[option])
         return None
     if not rows:
         return None  # the missing sheet or rows are an error already
@@ -162,9 +182,18 @@ def _circuit(sheet: DesignSheet, rows: Mapping[str, RoleRow], problems: Problems
         return None
 
 
+def _spelt(family: Family, option: str, choice: str) -> tuple[str, str]:
+    """Option and choice as the family spells them, whatever their case and separators; unknown ones as written."""
+    for known in family.options:
+        if folded(known.name) == folded(option):
+            same = (name for name in known.choices if folded(name) == folded(choice))
+            return known.name, next(same, choice)
+    return option, choice
+
+
 def _own(sheet: DesignSheet, book: Book, rows: Mapping[str, RoleRow], problems: Problems) -> Circuit | None:
     """The circuit of the sheet Circuit; the target frequency is its design frequency."""
-    table = branch_rows(book)
+    table = branch_rows(book, problems)
     if table is None:
         problems.error(
             "missing-sheet",
@@ -239,7 +268,7 @@ def _measured_units(circuit: Circuit, rows: Mapping[str, RoleRow]) -> dict[str, 
 
 
 def _trim_unit(sheet: DesignSheet, circuit: Circuit, problems: Problems) -> str | None:
-    if "trim role" not in sheet.items:
+    if "trim role" not in sheet.items or sheet.items["trim role"].value.fault:
         return None
     name = sheet.items["trim role"].value.written
     for role in circuit.roles:
@@ -247,17 +276,6 @@ def _trim_unit(sheet: DesignSheet, circuit: Circuit, problems: Problems) -> str 
             return role.unit
     problems.error("unknown-role", f"trim role {name} is no role of this circuit", sheet.place_of("trim role"))
     return None
-
-
-def _note_pedigrees(rows: Mapping[str, RoleRow], problems: Problems) -> None:
-    silent = [name for name, row in rows.items() if row.cell("Source") is None and name != "CL"]
-    if silent:
-        problems.add(
-            "note",
-            "pedigree-assumed",
-            f"no Source for {', '.join(silent)}: counted as assumed; a verdict then holds on that condition",
-            Place("Roles"),
-        )  # fmt: skip
 
 
 def _name(path: Path) -> str:

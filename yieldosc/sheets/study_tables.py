@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 
 from yieldosc.errors import Place
 from yieldosc.sheets.design import Item
-from yieldosc.sheets.entries import Entry, Problems, entry_of, folded
+from yieldosc.sheets.entries import Entry, Problems, entry_of, faulty, folded
 from yieldosc.sheets.extras import KNOWN
 from yieldosc.sheets.grid import Book, Grid
 from yieldosc.sheets.roles import RoleRow, column_names
@@ -17,12 +17,11 @@ DESIGN_COLUMNS = ("Item", "Value", "Unit", "Note")
 
 @dataclass(slots=True)
 class StudyTables:
-    """Items of Design, rows of Roles, and what a TOML study brings along."""
+    """Items of Design, rows of Roles, and the other sheets as text."""
 
     items: list[Item]
     rows: list[RoleRow]
     design_place: Place
-    law_tables: dict[str, list[tuple[float, float]]] = field(default_factory=dict)
     extra_rows: Mapping[str, tuple[tuple[str, ...], ...]] = field(default_factory=dict)
 
 
@@ -42,7 +41,7 @@ def workbook_tables(book: Book, problems: Problems) -> StudyTables:
         if "Temperature law" in row.cells and row.cells["Temperature law"].text.strip().lower().startswith("table")
     }
     kept = {folded(n) for n in KNOWN if n not in ("BOM", "Design", "Roles")} | named
-    extra = {g.name: _texts(g) for g in book.sheets if folded(g.name) in kept}
+    extra = {g.name: sheet_texts(g) for g in book.sheets if folded(g.name) in kept}
     return StudyTables(_items(design, problems), rows, Place("Design"), extra_rows=extra)
 
 
@@ -65,6 +64,9 @@ def _items(grid: Grid, problems: Problems) -> list[Item]:
             name: Entry("", grid.place(r, 0)) if c is None else entry_of(grid.cell(r, c), grid.place(r, c))
             for name, c in columns.items()
         }
+        said = [faulty(entries[name], f"Design {name}", problems) for name in ("Item", "Unit")]
+        if any(said):
+            continue
         if not entries["Item"].blank:
             items.append(
                 Item(entries["Item"].written, entries["Value"], entries["Unit"].written, entries["Note"].written)
@@ -96,13 +98,16 @@ def _role_rows(grid: Grid, problems: Problems) -> list[RoleRow]:
             entry = entry_of(grid.cell(r, c), grid.place(r, c))
             if name is not None and not entry.blank:
                 found[name] = entry
+        if "Role" in found and faulty(found["Role"], "Role", problems):
+            continue
         if found:
             role = found.pop("Role").written if "Role" in found else ""
             rows.append(RoleRow(role, found, grid.place(r)))
     return rows
 
 
-def _texts(grid: Grid) -> tuple[tuple[str, ...], ...]:
+def sheet_texts(grid: Grid) -> tuple[tuple[str, ...], ...]:
+    """Every cell as text that reads the same again."""
     return tuple(
         tuple(entry_of(cell, grid.place(r, c)).written for c, cell in enumerate(row)) for r, row in enumerate(grid.rows)
     )

@@ -12,27 +12,40 @@ from yieldosc.sheets.entries import Entry, Problems, folded
 from yieldosc.sheets.grid import Book, Cell, Grid
 from yieldosc.sheets.opening import open_book
 from yieldosc.sheets.roles import COLUMNS, RoleRow
-from yieldosc.sheets.study_tables import StudyTables
+from yieldosc.sheets.study_tables import StudyTables, sheet_texts
 
 MOST_BYTES = 2_000_000
-KEYS = ("bom", "design", "roles", "tables", "measured", "circuit")
+ROW_TABLES = {"circuit": "Circuit", "grades": "Grades", "alternates": "Alternates", "pilot": "Pilot"}  # key → sheet
+KEYS = ("bom", "design", "roles", "tables", "measured", *ROW_TABLES)
 _COLUMN = {folded(name): name for name in COLUMNS}
 
 
 def toml_tables(path: Path, problems: Problems) -> tuple[StudyTables, Book]:
-    """Items and rows of the file, and the book of its BOM with the tables and measurements as sheets of their own."""
+    """Items and rows of the file, and the book of its BOM with the other tables as sheets of their own.
+
+    Items stand in [design] or at the top of the file.
+    """
     content = _parsed(path)
     file = Place(path.name)
+    above = [(key, value) for key, value in content.items() if _is_item(key, value)]
     for key in content:
-        if key not in KEYS:
+        if key not in KEYS and key not in dict(above):
             problems.error("unknown-item", f"{key!r} is no table of a study; they are: {', '.join(KEYS)}", file)
     items = [
-        Item(str(name).replace("_", " "), _entry(value, Place("Design"))) for name, value in _table(content, "design")
+        Item(str(name).replace("_", " "), _entry(value, Place("Design")))
+        for name, value in (*above, *_table(content, "design", problems, file))
     ]
     rows = _rows(content.get("roles", []), problems, file)
     book = _book(path, content.get("bom"), file)
-    extra = (*_measured(content), *_law_sheets(content), *_branches(content))
-    return StudyTables(items, rows, Place("Design")), Book(book.path, "toml", (*book.sheets, *extra))
+    extra = (*_measured(content, problems, file), *_law_sheets(content, problems, file))
+    extra += tuple(_row_sheets(content, problems, file))
+    texts = {grid.name: sheet_texts(grid) for grid in extra}
+    return StudyTables(items, rows, Place("Design"), extra_rows=texts), Book(book.path, "toml", (*book.sheets, *extra))
+
+
+def _is_item(key: str, value: Any) -> bool:
+    """An item of Design at the top of the file; `circuit` there names the circuit, [[circuit]] holds branches."""
+    return not isinstance(value, dict | list) and (key not in KEYS or key == "circuit")
 
 
 def _parsed(path: Path) -> dict[str, Any]:
@@ -48,9 +61,12 @@ def _parsed(path: Path) -> dict[str, Any]:
         raise refusal("not-toml", f"{path.name} is no valid TOML: {error}", Place(path.name)) from None
 
 
-def _table(content: dict[str, Any], key: str) -> list[tuple[str, Any]]:
+def _table(content: dict[str, Any], key: str, problems: Problems, file: Place) -> list[tuple[str, Any]]:
     value = content.get(key, {})
-    return list(value.items()) if isinstance(value, dict) else []
+    if not isinstance(value, dict):
+        problems.error("wrong-form", f"{key} must be a table of its own: write it below a line [{key}]", file)
+        return []
+    return list(value.items())
 
 
 def _entry(value: Any, place: Place) -> Entry:
@@ -63,12 +79,15 @@ def _entry(value: Any, place: Place) -> Entry:
 def _rows(value: Any, problems: Problems, file: Place) -> list[RoleRow]:
     """[[roles]] with a key role, or [roles.R1]."""
     if isinstance(value, dict):
-        value = [{"role": name, **cells} for name, cells in value.items() if isinstance(cells, dict)]
+        value = [{"role": name, **cells} if isinstance(cells, dict) else cells for name, cells in value.items()]
+    if not isinstance(value, list) or not all(isinstance(cells, dict) for cells in value):
+        problems.error("wrong-form", "roles must be tables: write [[roles]] with a key role, or [roles.NAME]", file)
+        return []
     rows = []
-    for number, cells in enumerate(value if isinstance(value, list) else [], start=1):
+    for number, cells in enumerate(value, start=1):
         place = Place("Roles", number, None)
         found = {}
-        for key, text in (cells if isinstance(cells, dict) else {}).items():
+        for key, text in cells.items():
             name = _COLUMN.get(folded(key))
             if name is None:
                 problems.error(
@@ -91,8 +110,8 @@ def _book(path: Path, name: Any, file: Place) -> Book:
     return open_book(target)
 
 
-def _measured(content: dict[str, Any]) -> list[Grid]:
-    columns = _table(content, "measured")
+def _measured(content: dict[str, Any], problems: Problems, file: Place) -> list[Grid]:
+    columns = _table(content, "measured", problems, file)
     if not columns:
         return []
     lists = [values if isinstance(values, list) else [values] for _, values in columns]
@@ -104,24 +123,35 @@ def _measured(content: dict[str, Any]) -> list[Grid]:
     return [Grid("Measured", (head, *body))]
 
 
-def _branches(content: dict[str, Any]) -> list[Grid]:
-    """[[circuit]] tables, one per branch, as the sheet Circuit."""
-    rows = [row for row in content.get("circuit", []) if isinstance(row, dict)]
-    if not rows:
-        return []
-    keys = list(dict.fromkeys(key for row in rows for key in row))
-    head = tuple(Cell("text", key) for key in keys)
-    return [Grid("Circuit", (head, *(tuple(_cell(row.get(key, "")) for key in keys) for row in rows)))]
+def _row_sheets(content: dict[str, Any], problems: Problems, file: Place) -> list[Grid]:
+    """[[circuit]], [[grades]] and the like, one table per row, as the sheets of a workbook."""
+    made = []
+    for key, name in ROW_TABLES.items():
+        rows = content.get(key, [])
+        if _is_item(key, rows):
+            continue
+        if not isinstance(rows, list) or not all(isinstance(row, dict) for row in rows):
+            problems.error("wrong-form", f"{key} must be tables: write each row below a line [[{key}]]", file)
+            continue
+        keys = list(dict.fromkeys(heading for row in rows for heading in row))
+        head = tuple(Cell("text", heading.replace("_", " ")) for heading in keys)
+        if rows:
+            made.append(Grid(name, (head, *(tuple(_cell(row.get(heading, "")) for heading in keys) for row in rows))))
+    return made
 
 
-def _law_sheets(content: dict[str, Any]) -> list[Grid]:
+def _law_sheets(content: dict[str, Any], problems: Problems, file: Place) -> list[Grid]:
     """[tables] coil = [[-40, "-100 ppm"], …] → sheets named as the laws name them."""
     head = (Cell("text", "Temperature"), Cell("text", "Change"))
-    return [
-        Grid(name, (head, *(tuple(_cell(v) for v in point) for point in points if isinstance(point, list))))
-        for name, points in _table(content, "tables")
-        if isinstance(points, list)
-    ]
+    made = []
+    for name, points in _table(content, "tables", problems, file):
+        if isinstance(points, list) and all(isinstance(point, list) for point in points):
+            made.append(Grid(name, (head, *(tuple(_cell(v) for v in point) for point in points))))
+        else:
+            problems.error(
+                "wrong-form", f'the table {name} must be a list of points: {name} = [[-40, "-100 ppm"], [25, 0]]', file
+            )
+    return made
 
 
 def _cell(value: Any) -> Cell:
