@@ -27,7 +27,7 @@ def declared_setup(study: Study, *, seed: int, evaluator: Evaluator | None = Non
 
 
 def testing_corner(study: Study) -> Corner:
-    """Where boards are tested: the stated test temperature, else the study's own nearest to 25 °C; nominal supply, new."""
+    """Where boards are tested: the stated temperature, else the study's own nearest to 25 °C; nominal supply, new."""
     stated = study.design.test_temperature_c
     if stated is None:
         return reference_corner(study)

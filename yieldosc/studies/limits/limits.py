@@ -155,9 +155,10 @@ def _findings(study: Study) -> list[Finding]:
     if design.test_temperature_c is None:
         made.append(
             Finding(
-                "note", "test-temperature-assumed",
+                "note",
+                "test-temperature-assumed",
                 f"no test temperature in Design: {corner.temperature_c:g} °C taken",
-            )  # fmt: skip
+            )
         )
     if design.measurement_sd_hz is None:
         made.append(

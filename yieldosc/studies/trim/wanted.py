@@ -41,7 +41,7 @@ class _Bracket:
 
 
 def wanted_settings(frequency_hz: Callable[[Array], Array], goal_hz: Array, settings: Array) -> Wanted:
-    """frequency_hz(settings (n,)) → (n,), nan where a unit gives none. goal_hz (n,). settings (k,), rising, tried first.
+    """frequency_hz(settings (n,)) → (n,), nan where a unit has none; goal_hz (n,). settings (k,): tried first, rising.
 
     Illinois steps in the logarithm of the setting between the first two settings that bracket the goal (M. Dowell,
     P. Jarratt, BIT 11 (1971) 168). Cost: k + at most 22 calls.
