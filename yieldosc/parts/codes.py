@@ -144,7 +144,7 @@ def neighbours_e(value: float, count: int) -> tuple[float, float]:
 def series_between(count: int, low: float, high: float) -> tuple[float, ...]:
     """Every series value from low to high (both > 0, ends included), rising; ValueError where there is none."""
     first, last = math.floor(math.log10(low)), math.floor(math.log10(high))
-    ladder = (v * 10.0**e if e >= 0 else v / 10.0**-e for e in range(first, last + 1) for v in e_series(count))
+    ladder = (_scaled(v, e) for e in range(first, last + 1) for v in e_series(count))
     found = tuple(v for v in ladder if low * (1 - 1e-9) <= v <= high * (1 + 1e-9))
     if not found:
         raise ValueError(f"E{count} has no value from {low:g} to {high:g}")
@@ -154,9 +154,9 @@ def series_between(count: int, low: float, high: float) -> tuple[float, ...]:
 def _ladder(value: float, count: int) -> list[float]:
     """Series values of the decade of a value and of the decades beside it, rising."""
     exponent = math.floor(math.log10(value))
-    # divided, not multiplied, below 1: 4.7 / 1e9 is the double nearest to 4.7e-9
-    return [
-        v * 10.0**e if e >= 0 else v / 10.0**-e
-        for e in (exponent - 1, exponent, exponent + 1)
-        for v in e_series(count)
-    ]
+    return [_scaled(v, e) for e in (exponent - 1, exponent, exponent + 1) for v in e_series(count)]
+
+
+def _scaled(member: float, exponent: int) -> float:
+    """The double nearest to member · 10^exponent, as if it had been typed."""
+    return float(f"{member:g}e{exponent}")

@@ -8,6 +8,7 @@ are nested in the other's.
 from __future__ import annotations
 
 import heapq
+import math
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 
@@ -19,12 +20,15 @@ from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Estimate
 from yieldosc.studies.upgrade.prices import Prices
 from yieldosc.studies.upgrade.purchases import Choice
+from yieldosc.studies.upgrade.results import Change
 from yieldosc.studies.upgrade.trial import Trial, all_judged
 
 Flags = NDArray[np.bool_]
 Grades = Sequence[Choice]
 RUNNERS_UP = 2
 MOST_UNITS = 1_572_864  # evaluated by the search, at ten corners each; fewer where a study has more
+MOST_SETS = 384
+FAR_SETS = 64  # where not even the best grade of every purchase together comes near the target
 BATCH = 8  # sets judged at once: fixed, so that no number of workers changes what is tried
 
 
@@ -97,56 +101,71 @@ def cheapest(
     workers: Workers,
     meter: Meter | None = None,
     most_units: int = MOST_UNITS,
+    best_grades: Sequence[Choice] = (),
 ) -> Found:
-    """The cheapest sets that reach the target: one, and two runners-up."""
-    reaching: list[Reaching] = []
-    tried, spent, best, exhausted = 0, 0, None, False
-    possible = int(np.prod([float(len(those) + 1) for those in grades])) if grades else 1
+    """The cheapest sets that reach the target: one, and two runners-up.
+
+    best_grades: of each purchase the grade that gains most alone, the most helpful first. Added one after the other
+    they often reach the target, and then no dearer set need be tried; where they do not, the search is kept short.
+    """
+    search = _Search(trial, prices, workers, meter)
+    ahead = [tuple(best_grades[: k + 1]) for k in range(len(best_grades))]
+    search.judge([(sum(map(prices.order, choices)), choices) for choices in ahead])
+    most_sets = MOST_SETS if search.reaching or not ahead else FAR_SETS
+    possible = math.prod(len(those) + 1 for those in grades)
     sets = in_price_order(grades, prices.order)
-    while spent < most_units:
+    exhausted = False
+    while search.spent < most_units and search.tried < most_sets:
         batch = [pair for _, pair in zip(range(BATCH), sets, strict=False)]
-        if not batch or _none_cheaper(reaching, batch[0][0], prices, RUNNERS_UP):
+        if not batch or search.none_cheaper(batch[0][0], RUNNERS_UP):
             exhausted = True
             break
-        answers = all_judged(trial, [choices for _, choices in batch], workers=workers, meter=meter)
-        tried += len(batch)
-        for (price, choices), (answer, found) in zip(batch, answers, strict=True):
-            spent += found.units or 0
-            if best is None or found.estimate > best.estimate:
-                best = found
-            if answer == "reaches":
-                reaching.append(Reaching(choices, found, price, _cost(prices, price, found)))
+        search.judge(batch)
     if not exhausted:
-        price, _ = next(sets, (np.inf, ()))
-        exhausted = tried == possible or _none_cheaper(reaching, price, prices, 0)
-    ordered = sorted(reaching, key=lambda r: (r.cost, r.price, len(r.choices)))
-    return Found(tuple(ordered[: 1 + RUNNERS_UP]), tried, possible, exhausted, best)
+        price, _ = next(sets, (math.inf, ()))
+        exhausted = search.none_cheaper(price, 0) or search.tried >= possible
+    ordered = sorted(search.reaching, key=lambda r: (r.cost, r.price, len(r.choices)))
+    return Found(tuple(ordered[: 1 + RUNNERS_UP]), search.tried, possible, exhausted, search.best)
 
 
-def towards(
-    trial: Trial, singles: Sequence[tuple[Choice, float]], prices: Prices, *, workers: Workers
-) -> Reaching | None:
-    """A set that reaches the target, not shown to be the cheapest: the best grade of each purchase, added one after
-    the other. singles: the purchases' best grades and what each gains alone."""
-    helping = sorted((s for s in singles if s[1] > 0), key=lambda s: s[1], reverse=True)
-    sets = [tuple(choice for choice, _ in helping[: k + 1]) for k in range(len(helping))]
-    answers = all_judged(trial, sets, workers=workers)
-    for choices, (answer, found) in zip(sets, answers, strict=True):
-        if answer == "reaches":
-            price = sum(prices.order(choice) for choice in choices)
-            return Reaching(choices, found, price, _cost(prices, price, found))
-    return None
+class _Search:
+    """Sets judged so far; none twice."""
+
+    def __init__(self, trial: Trial, prices: Prices, workers: Workers, meter: Meter | None) -> None:
+        self._trial, self._prices, self._workers, self._meter = trial, prices, workers, meter
+        self.reaching: list[Reaching] = []
+        self.best: Estimate | None = None
+        self.spent = 0
+        self._known: set[frozenset[Change]] = set()
+
+    @property
+    def tried(self) -> int:
+        return len(self._known)
+
+    def judge(self, sets: Sequence[tuple[float, tuple[Choice, ...]]]) -> None:
+        """Judge the sets (price, choices) that are new."""
+        new = [(price, choices) for price, choices in sets if _key(choices) not in self._known]
+        self._known |= {_key(choices) for _, choices in new}
+        answers = all_judged(self._trial, [choices for _, choices in new], workers=self._workers, meter=self._meter)
+        for (price, choices), (answer, found) in zip(new, answers, strict=True):
+            self.spent += found.units or 0
+            if self.best is None or found.low > self.best.low:
+                self.best = found
+            if answer == "reaches":
+                self.reaching.append(Reaching(choices, found, price, self._cost(price, found)))
+
+    def _cost(self, price: float, found: Estimate) -> float:
+        cost = self._prices.per_good_unit(price if self._prices.money else None, found.estimate)
+        return price if cost is None else cost
+
+    def none_cheaper(self, next_price: float, place: int) -> bool:
+        """A good unit costs at least its parts: sets whose parts cost more than the one at `place` cannot beat it."""
+        if len(self.reaching) <= place:
+            return False
+        last = sorted(r.cost for r in self.reaching)[place]
+        least = next_price if self._prices.parts is None else self._prices.parts + next_price
+        return least > last
 
 
-def _cost(prices: Prices, price: float, found: Estimate) -> float:
-    cost = prices.per_good_unit(price if prices.money else None, found.estimate)
-    return price if cost is None else cost
-
-
-def _none_cheaper(reaching: Sequence[Reaching], next_price: float, prices: Prices, place: int) -> bool:
-    """A good unit costs at least its parts, so sets whose parts cost more than the one at `place` cannot beat it."""
-    if len(reaching) <= place:
-        return False
-    last = sorted(r.cost for r in reaching)[place]
-    least = next_price if prices.parts is None else prices.parts + next_price
-    return least > last
+def _key(choices: Sequence[Choice]) -> frozenset[Change]:
+    return frozenset(choice.change for choice in choices)

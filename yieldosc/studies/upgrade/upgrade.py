@@ -29,7 +29,7 @@ from yieldosc.studies.upgrade.prices import Prices
 from yieldosc.studies.upgrade.purchases import Choice, Purchase, purchases
 from yieldosc.studies.upgrade.recentre import candidates, recentred
 from yieldosc.studies.upgrade.results import SearchAccount, UpgradeOption, UpgradeResult
-from yieldosc.studies.upgrade.search import MOST_UNITS, Found, Reaching, cheapest, towards, undominated
+from yieldosc.studies.upgrade.search import MOST_UNITS, Found, Reaching, cheapest, undominated
 from yieldosc.studies.upgrade.trial import Trial, all_flags
 from yieldosc.study import Study
 
@@ -158,14 +158,10 @@ class _Run:
             offered = [(c, f) for c, f in self._flags[purchase.name] if self.prices.money or not c.looser]
             self._kept.append((purchase, undominated(self.good, offered, self.prices)))
         budget = int(MOST_UNITS * min(1.0, USUAL_CORNERS / len(self.setup.corners)))
-        found = cheapest(
+        return cheapest(
             self._trial(self.proof), [grades for _, grades in self._kept], self.prices,
-            workers=crew, meter=self.meter, most_units=budget,
+            workers=crew, meter=self.meter, most_units=budget, best_grades=self._best_grades(),
         )  # fmt: skip
-        if found.reaching:
-            return found
-        rest = towards(self._trial(self.proof), self._best_singles(), self.prices, workers=crew)
-        return found if rest is None else replace(found, reaching=(rest,))
 
     def _lean(self, purchase: Purchase) -> float:
         """How far frequency and margin lean on the purchase's spread and law."""
@@ -188,14 +184,16 @@ class _Run:
             for u in ends
         )
 
-    def _best_singles(self) -> list[tuple[Choice, float]]:
+    def _best_grades(self) -> list[Choice]:
+        """Of each purchase the grade that gains most alone, the most helpful purchase first; those that gain nothing
+        are left out."""
         base = int(np.count_nonzero(self.good))
         best = []
         for purchase, grades in self._kept:
-            flags = [(c, int(np.count_nonzero(f)) - base) for c, f in self._flags[purchase.name] if c in grades]
-            if flags:
-                best.append(max(flags, key=lambda pair: pair[1]))
-        return [(choice, float(gain)) for choice, gain in best]
+            gains = [(int(np.count_nonzero(f)) - base, c) for c, f in self._flags[purchase.name] if c in grades]
+            if gains:
+                best.append(max(gains, key=lambda pair: pair[0]))
+        return [choice for gain, choice in sorted(best, key=lambda pair: -pair[0]) if gain > 0]
 
     def confirmed(self, reaching: Sequence[Reaching]) -> tuple[UpgradeOption, ...]:
         """The choice and its runners-up, with their yield on fresh units."""
