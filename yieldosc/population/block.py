@@ -89,6 +89,15 @@ class Block:
         """Multiply one role of every unit by factors (n,) at every corner: a trim."""
         self._factors[role] = self._factors.get(role, np.ones(self.count)) * factors
 
+    def rows(self, rows: NDArray[np.int64]) -> Block:
+        """The units at these positions (m,) of the block, adjustments included."""
+        part = Block.__new__(Block)
+        part.population, part.count = self.population, len(rows)
+        part.draws = {role: {cause: u[rows] for cause, u in causes.items()} for role, causes in self.draws.items()}
+        part._initial = {role: value if value.ndim == 0 else value[rows] for role, value in self._initial.items()}
+        part._factors = {role: factors[rows] for role, factors in self._factors.items()}
+        return part
+
     def values(self, corner: Corner) -> dict[str, Array]:
         """Role → values (n,) or 0-d at a corner; conditions and the corner's supply included."""
         made: dict[str, Array] = {k: np.asarray(v, dtype=float) for k, v in self.population.conditions.items()}

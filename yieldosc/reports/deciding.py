@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from yieldosc.quantities import format_quantity
 from yieldosc.reports.amounts import listed, margin_text, share_text
+from yieldosc.reports.first_failures import start_at_the_ends, where_units_fail_first
 from yieldosc.reports.terminal import one_line
 from yieldosc.studies.digits import rate_text
 from yieldosc.studies.estimates import clopper_pearson
@@ -146,7 +147,7 @@ def leading(a: Assessment) -> tuple[str, ...]:
 
 def deciding(a: Assessment) -> tuple[str, ...]:
     """All of them, in reading order."""
-    made = [how_units_fail(a), where_units_fail(a), coldest_start(a)]
+    made = [how_units_fail(a), where_units_fail(a), where_units_fail_first(a), start_at_the_ends(a), coldest_start(a)]
     made += leading(a)
     made += [wrong_modes_sentence(a), failing_units_sentence(a), lots_sentence(a)]
     return tuple(text for text in made if text)

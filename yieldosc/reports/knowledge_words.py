@@ -80,18 +80,23 @@ def bench_sentence(item: BenchItem) -> str:
         )
     within = f"their mean is known to {percent(item.reach or 0)} of the half-width of its spread with {sure} confidence"
     if item.quantity == "temperature coefficient":
-        return f"Measure {parts} at the coldest and hottest temperature, {item.samples} pieces of each: {within}; {gain}."
+        where = "at the coldest and hottest temperature"
+        return f"Measure {parts} {where}, {item.samples} pieces of each: {within}; {gain}."
     if item.quantity == "within a reel":
         return f"Measure {item.samples} pieces of each of {parts} from each of two or more reels: {within}; {gain}."
     return f"Measure {item.samples} pieces from each reel of {parts}: {within}; {gain}."
 
 
+def _settings(item: BenchItem) -> str:
+    return f"p = {item.coverage:g}, C = {item.confidence:g}: {WILKS}; no distribution supposed"
+
+
 def rule_text(item: BenchItem) -> str:
     """The formula behind the number of samples, with its source."""
     if item.rule == "Wilks, two-sided":
-        return f"1 − n·pⁿ⁻¹ + (n − 1)·pⁿ ≥ C, p = {item.coverage:g}, C = {item.confidence:g}: {WILKS}; no distribution supposed"
+        return f"1 − n·pⁿ⁻¹ + (n − 1)·pⁿ ≥ C, {_settings(item)}"
     if item.rule == "Wilks, one-sided":
-        return f"1 − pⁿ ≥ C, p = {item.coverage:g}, C = {item.confidence:g}: {WILKS}; no distribution supposed"
+        return f"1 − pⁿ ≥ C, {_settings(item)}"
     return (
         f"t(n {MINUS} 1)·s/√n ≤ {item.reach:g} half-widths, s = 1/√3 half-width (flat), C = {item.confidence:g}: "
         "Student's interval of a mean"

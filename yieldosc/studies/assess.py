@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import time
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import UTC, datetime
 
 import numpy as np
@@ -14,12 +14,14 @@ from yieldosc.evaluators import make_evaluator
 from yieldosc.population import Adjustment, Population
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies import remarks
+from yieldosc.studies.declared import testing_corner
 from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.extremes import bands
 from yieldosc.studies.failure_share import failure_share
 from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_reels
 from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values, per_percent, reference_corner, slopes
 from yieldosc.studies.parallel import Workers, default_workers
+from yieldosc.studies.pilot import pilot_result
 from yieldosc.studies.progress import Callback, Meter
 from yieldosc.studies.provenance import provenance
 from yieldosc.studies.ranking import BASE, rankings
@@ -38,7 +40,10 @@ from yieldosc.studies.rivals import RIVAL_UNITS, rivals
 from yieldosc.studies.run import QUANTUM, Setup
 from yieldosc.studies.scrutinise import scrutinise
 from yieldosc.studies.scrutiny import Scrutiny
+from yieldosc.studies.second_sources import worst_fitting
 from yieldosc.studies.sensitivity import REPLICATES, NotANumberError
+from yieldosc.studies.temperature_check import with_between
+from yieldosc.studies.temperature_remarks import temperature_findings
 from yieldosc.studies.tighter import leading_parts, tighter
 from yieldosc.studies.worst_units import worst_units
 from yieldosc.studies.yields import YieldRun, corner_results, joint_yield, outcome_counts
@@ -78,11 +83,14 @@ def assess(
         limits_width_hz=design.frequency_high_hz - design.frequency_low_hz,
     )
     ratio = bench_ratio(study, population, solver)
-    setup = Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment)
+    setup = with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment))
     plan, meter = _plan(study, units), Meter(progress)
     effort = _Effort.of(setup, plan.counts[0], rival_units)
     meter.expect(plan.counts[0] + effort.expected(setup))
     with Workers(workers or default_workers()) as crew:
+        study, sources = worst_fitting(study, setup, workers=crew, meter=meter)
+        if sources:
+            setup = with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment))
         target = study.design.yield_target
         run = joint_yield(setup, plan, target, workers=crew, block=block, meter=meter)
         evidence = _evidence(study, setup, run, effort, crew, meter)
@@ -91,7 +99,10 @@ def assess(
         study, seed, started, clock, crew.count,
         audited=tallies.audited, disagreeing=tallies.disagreeing, exact=tallies.exact,
     )  # fmt: skip
-    return _assembled(study, setup, run, plan, evidence, ratio, made)
+    measured = pilot_result(study, setup, testing_corner(study), study.pilot) if study.pilot is not None else None
+    return replace(
+        _assembled(study, setup, run, plan, evidence, ratio, made), second_sources=sources, pilot=measured
+    )
 
 
 def _plan(study: Study, units: int | None) -> LookPlan:
@@ -162,7 +173,7 @@ def _evidence(
         yields = lot_yields(setup, units_per_lot=effort.units_per_lot, workers=crew, meter=meter)
         shared = lots(yields, effort.units_per_lot, study.design.yield_target, confidence)
     sceptical = scrutinise(
-        setup, tried, declared_good, ranked, confidence=confidence, workers=crew, meter=meter
+        setup, run, tried, declared_good, ranked, confidence=confidence, workers=crew, meter=meter
     )
     return _Evidence(ranked, unranked, tried, effort.rival_units, better, corners, found, shared, outside, sceptical)
 
@@ -223,6 +234,7 @@ def _assembled(
             *reach_findings(setup, gathered.units, study.design.confidence),
             *remarks.settling_findings(setup, evidence.corners),
             *evidence.outside,
+            *temperature_findings(evidence.scrutiny.temperatures),
             *remarks.ranking_findings(evidence.rankings, evidence.unranked),
             *remarks.bench_findings(study, ratio),
         ),

@@ -50,6 +50,8 @@ class Gathered:
     audited: int = 0
     disagreeing: int = 0
     exact: int = 0
+    flips: int = 0  # units that are good at every corner and fail between their temperatures
+    near: Counts = field(default_factory=lambda: np.zeros(0, dtype=np.int64))  # good units that were looked at there
 
 
 def observed(solution: Solution) -> dict[str, Array]:
@@ -106,6 +108,7 @@ def _gather_block(setup: Setup, found: Gathered, start: int, size: int) -> None:
     block = setup.block(start, size)
     joint = np.full(size, GOOD, dtype=np.int8)
     alive = np.ones(size, dtype=bool)
+    nearest = setup.far(size)
     for c, corner in enumerate(setup.corners):
         audit = audit_mask(setup.streams, start, size, c, len(setup.corners))
         solution = setup.bench.solve(block, corner, audit=audit)
@@ -116,8 +119,12 @@ def _gather_block(setup: Setup, found: Gathered, start: int, size: int) -> None:
         alive &= ~failed
         found.dead[c] += np.count_nonzero(not_starting(solution))
         np.minimum(joint, codes, out=joint)
+        setup.approach(nearest, solution)
         _distributions(found, c, solution)
         _notes(found, solution)
+    looked = setup.lower_between(block, joint, nearest)
+    found.flips += int(np.count_nonzero(joint[looked] < GOOD))
+    found.near = np.concatenate([found.near, looked[joint[looked] == GOOD] + start])[:MOST_NUMBERS]
     found.joint += np.bincount(joint, minlength=CODES)
     failing = np.flatnonzero(joint < GOOD)[: MOST_NUMBERS - len(found.failing)]
     found.failing = np.concatenate([found.failing, failing + start])
@@ -165,3 +172,5 @@ def append(whole: Gathered, part: Gathered) -> None:
     whole.audited += part.audited
     whole.disagreeing += part.disagreeing
     whole.exact += part.exact
+    whole.flips += part.flips
+    whole.near = np.concatenate([whole.near, part.near])[:MOST_NUMBERS]

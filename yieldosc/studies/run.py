@@ -12,9 +12,12 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from yieldosc.parts.parameter import Parameter
 from yieldosc.population import Adjustment, Bench, Block, Population, Streams, uniforms, uniforms_at
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.solver.solution import Solution, Status
+from yieldosc.studies.between import Between
+from yieldosc.studies.distance import gaps, sides
 from yieldosc.studies.judge import GOOD, Codes, Judge
 from yieldosc.study import Corner, Study
 
@@ -35,6 +38,7 @@ class Setup:
     judge: Judge
     corners: tuple[Corner, ...]
     adjustment: Adjustment | None = None
+    between: Between | None = None  # None: units are judged at the corners only
 
     @classmethod
     def of(
@@ -57,9 +61,17 @@ class Setup:
             adjustment=adjustment,
         )
 
+    def with_parameters(self, parameters: tuple[Parameter, ...]) -> Setup:
+        """The same draws with other parts."""
+        return replace(self, population=self.population.with_parameters(parameters))
+
     def with_adjustment(self, adjustment: Adjustment | None) -> Setup:
         """The same units with something else done to each board."""
         return replace(self, adjustment=adjustment)
+
+    def with_between(self, between: Between | None) -> Setup:
+        """The same units, judged between the corners' temperatures too."""
+        return replace(self, between=between)
 
     def block(self, start: int, count: int) -> Block:
         """Units start … start + count − 1, adjusted where the study adjusts its boards."""
@@ -91,9 +103,34 @@ class Setup:
     def block_codes(self, block: Block) -> Codes:
         """Joint outcome codes of a block."""
         joint = np.full(block.count, GOOD, dtype=np.int8)
+        nearest = self.far(block.count)
         for corner in self.corners:
-            np.minimum(joint, self.judge.codes(self.bench.solve(block, corner)), out=joint)
+            solution = self.bench.solve(block, corner)
+            np.minimum(joint, self.judge.codes(solution), out=joint)
+            self.approach(nearest, solution)
+        self.lower_between(block, joint, nearest)
         return joint
+
+    def far(self, count: int) -> Array:
+        """Distances (s, n) of units that have not been seen at any corner."""
+        return np.full((sides(self.judge), count), np.inf)
+
+    def approach(self, nearest: Array, solution: Solution) -> None:
+        """Lower the distances (s, n) in place to those of another corner."""
+        if self.between is not None:
+            np.fmin(nearest, gaps(self.judge, solution), out=nearest)
+
+    def lower_between(self, block: Block, joint: Codes, nearest: Array) -> NDArray[np.int64]:
+        """Lower the codes (n,) of good units near a limit in place to what they show between the temperatures.
+
+        Returns the positions of the units looked at.
+        """
+        if self.between is None:
+            return np.zeros(0, dtype=np.int64)
+        rows = np.flatnonzero((joint == GOOD) & self.between.near(nearest))
+        if len(rows):
+            joint[rows] = self.between.codes(self.judge, self.bench, block.rows(rows), self.corners)
+        return rows
 
 
 def inner_pieces(start: int, count: int) -> list[tuple[int, int]]:

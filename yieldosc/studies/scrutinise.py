@@ -14,13 +14,16 @@ from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Ranking, RivalResult
 from yieldosc.studies.run import Setup
 from yieldosc.studies.scrutiny import Scrutiny
+from yieldosc.studies.temperature_check import temperature_check
 from yieldosc.studies.tighter import leading_parts
+from yieldosc.studies.yields import YieldRun
 
 IDLE_SHARE = 0.01  # of both variances: a device below it is not tried value by value
 
 
 def scrutinise(
     setup: Setup,
+    run: YieldRun,
     tried: Sequence[RivalResult],
     declared_good: NDArray[np.bool_],
     rankings: Mapping[str, Ranking],
@@ -35,8 +38,14 @@ def scrutinise(
         setup, tried, declared_good, devices=moving_devices(setup, rankings), confidence=confidence, workers=workers,
         meter=meter,
     )  # fmt: skip
-    listed = bench_list(found, declared, leading_parts(rankings), confidence=confidence)
-    return Scrutiny(knowledge=found, bench_list=listed)
+    gathered, estimate = run.gathered, run.estimate
+    return Scrutiny(
+        knowledge=found,
+        bench_list=bench_list(found, declared, leading_parts(rankings), confidence=confidence),
+        temperatures=temperature_check(
+            setup, gathered.near, gathered.units, gathered.flips, (estimate.high - estimate.low) / 2, confidence
+        ),
+    )
 
 
 def moving_devices(setup: Setup, rankings: Mapping[str, Ranking]) -> tuple[str, ...]:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import asdict
 
 from yieldosc.studies.results import Estimate, RivalResult
-from yieldosc.studies.scrutiny import Knowledge, Scrutiny
+from yieldosc.studies.scrutiny import Knowledge, Scrutiny, TemperatureCheck
 
 
 def scrutiny_dict(scrutiny: Scrutiny | None) -> dict[str, object]:
@@ -14,6 +14,16 @@ def scrutiny_dict(scrutiny: Scrutiny | None) -> dict[str, object]:
     return {
         "spread_by_assumption": [_knowledge(k) for k in s.knowledge],
         "bench_list": [asdict(item) for item in s.bench_list],
+        "temperature_check": None if s.temperatures is None else _temperatures(s.temperatures),
+    }
+
+
+def _temperatures(t: TemperatureCheck) -> dict[str, object]:
+    return asdict(t) | {
+        "flip_rate": t.flip_rate.to_dict(),
+        "missed_rate": t.missed_rate.to_dict(),
+        "grid_enough": t.grid_enough,
+        "enough": t.enough,
     }
 
 

@@ -8,6 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.solver.solution import Solution
+from yieldosc.studies.distance import window
 from yieldosc.studies.judge import GOOD, Codes, outcome_name
 from yieldosc.studies.results import OUTCOMES, WorstUnit
 from yieldosc.studies.run import Setup
@@ -43,12 +44,16 @@ def _ranked(setup: Setup, numbers: NDArray[np.int64], code: int) -> list[WorstUn
     block = setup.block_at(numbers)
     solutions: list[Solution] = []
     distance = np.full((len(setup.corners), len(numbers)), np.inf)
+    anywhere = distance.copy()
     for c, corner in enumerate(setup.corners):
         solution = setup.bench.solve(block, corner)
         shows = setup.judge.codes(solution) == code
-        # A failing unit is shown at a corner where it fails in its own way.
-        distance[c] = np.where(shows, _distance(setup, solution), np.inf)
+        # A failing unit is shown at a corner where it fails in its own way; one that fails between two temperatures
+        # only, at the corner that brings it nearest to a limit.
+        found = _distance(setup, solution)
+        distance[c], anywhere[c] = np.where(shows, found, np.inf), found
         solutions.append(solution)
+    distance = np.where(np.isfinite(distance).any(axis=0), distance, anywhere)
     worst = np.argmin(distance, axis=0)
     order = np.argsort(distance[worst, np.arange(len(numbers))], kind="stable")[: max(PER_KIND, NEAREST)]
     values = block.values(NEW_AT_25)
@@ -77,7 +82,7 @@ def _distance(setup: Setup, solution: Solution) -> Array:
         values = setup.judge.attribute(solution, requirement.attribute)
         if values is None:
             continue
-        scale = _scale(requirement.low, requirement.high)
+        scale = window(requirement.low, requirement.high)
         for gap in _gaps(values, requirement.low, requirement.high):
             nearest = np.fmin(nearest, gap / scale)
     return nearest
@@ -86,9 +91,3 @@ def _distance(setup: Setup, solution: Solution) -> Array:
 def _gaps(values: Array, low: float | None, high: float | None) -> Sequence[Array]:
     gaps = [] if low is None else [values - low]
     return gaps if high is None else [*gaps, high - values]
-
-
-def _scale(low: float | None, high: float | None) -> float:
-    if low is not None and high is not None:
-        return (high - low) / 2 or 1.0
-    return abs(low if low is not None else high or 1.0) or 1.0
