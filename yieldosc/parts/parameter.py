@@ -100,6 +100,7 @@ class Parameter:
     reel: str | None = None  # parts of equal reel come from one reel; None: independent
     reel_share: float = 0.0
     pedigree: Pedigree = "assumed"
+    declared: tuple[float, float] | None = None  # bounds of the BOM's tolerance, where measured values stand for it
     given: Mapping[str, Given] = field(default_factory=dict)  # field name → as written and where
     note: str = ""
 

@@ -19,6 +19,7 @@ from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.extremes import bands
 from yieldosc.studies.failure_share import failure_share
 from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_reels
+from yieldosc.studies.measured_remarks import measured_findings
 from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values, per_percent, reference_corner, slopes
 from yieldosc.studies.parallel import Workers, default_workers
 from yieldosc.studies.pilot import pilot_result
@@ -235,6 +236,7 @@ def _assembled(
             *remarks.settling_findings(setup, evidence.corners),
             *evidence.outside,
             *temperature_findings(evidence.scrutiny.temperatures),
+            *measured_findings(evidence.scrutiny.measured, evidence.scrutiny.measured_uncertainty),
             *remarks.ranking_findings(evidence.rankings, evidence.unranked),
             *remarks.bench_findings(study, ratio),
         ),

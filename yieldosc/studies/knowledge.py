@@ -20,12 +20,12 @@ from yieldosc.studies.run import Setup
 from yieldosc.studies.scrutiny import Knowledge
 
 DEVICES = ("transistor", "ic", "diode")
+LOT_SIDE = "lot side"
 BY_NAME = {  # rival sets that differ in one piece of knowledge alone; the others mix several
     "all uniform": "shape", "all normal": "shape", "hollow": "shape",
     "same reel": "reel share", "independent": "reel share",
-    "class-2 low": "temperature laws", "whole crystal angle": "temperature laws",
+    "declared tolerance": LOT_SIDE, "class-2 low": "temperature laws", "whole crystal angle": "temperature laws",
 }  # fmt: skip
-LOT_SIDE = "lot side"
 SIDES = ((-1, "low"), (1, "high"))
 
 

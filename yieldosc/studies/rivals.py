@@ -76,6 +76,7 @@ def _single_sets(declared: Parameters, slopes: Slopes) -> Iterator[Rival]:
     weak = changed(lambda p: _weak_half(p, slopes))
     yield Rival("weak half", "every min/typ/max value in the half that starts worse", weak)
     yield Rival("whole crystal angle", "crystals cut anywhere in their whole angle interval", changed(_whole_angle))
+    yield Rival("declared tolerance", "measured parts anywhere in their declared tolerance", changed(_next_lot))
 
 
 def bounded_spread(p: Parameter) -> bool:
@@ -113,6 +114,14 @@ def _apart(p: Parameter) -> Parameter:
 
 def _class_2_low(p: Parameter) -> Parameter:
     return p if p.law is None else replace(p, law=lower_ends(p.law))
+
+
+def _next_lot(p: Parameter) -> Parameter:
+    """A part of which one lot was measured, as the lots after it may be."""
+    if not isinstance(p.shape, Measured) or p.declared is None:
+        return p
+    low, high = p.declared
+    return replace(p, low=low, high=high, shape=Uniform())
 
 
 def _whole_angle(p: Parameter) -> Parameter:

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from yieldosc.studies.bench_list import bench_list
 from yieldosc.studies.knowledge import is_device_value, knowledge
+from yieldosc.studies.measured_lots import measured_lots, measured_uncertainty
 from yieldosc.studies.parallel import Workers
 from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Ranking, RivalResult
@@ -45,6 +46,8 @@ def scrutinise(
         temperatures=temperature_check(
             setup, gathered.near, gathered.units, gathered.flips, (estimate.high - estimate.low) / 2, confidence
         ),
+        measured=measured_lots(declared, confidence),
+        measured_uncertainty=measured_uncertainty(setup, estimate.estimate, workers=workers, meter=meter),
     )
 
 

@@ -14,6 +14,8 @@ def scrutiny_dict(scrutiny: Scrutiny | None) -> dict[str, object]:
     return {
         "spread_by_assumption": [_knowledge(k) for k in s.knowledge],
         "bench_list": [asdict(item) for item in s.bench_list],
+        "measured_lots": [asdict(lot) | {"narrow": lot.narrow, "off_centre": lot.off_centre} for lot in s.measured],
+        "measured_uncertainty": None if s.measured_uncertainty is None else asdict(s.measured_uncertainty),
         "temperature_check": None if s.temperatures is None else _temperatures(s.temperatures),
     }
 
