@@ -7,8 +7,10 @@ from collections.abc import Sequence
 from importlib.metadata import version
 from typing import NoReturn, TypeAlias
 
-from yieldosc.cli import commands
+from yieldosc.cli import commands, decisions
 from yieldosc.errors import refusal
+
+STUDY = "a study workbook, a .toml study, or a result workbook"
 
 
 class Parser(argparse.ArgumentParser):
@@ -45,6 +47,9 @@ def _parser() -> Parser:
     _draft(sub)
     _check(sub)
     _assess(sub)
+    _upgrade(sub)
+    _limits(sub)
+    _compare(sub)
     return parser
 
 
@@ -130,10 +135,52 @@ def _assess(sub: Sub) -> None:
         "the main job: what fraction starts and stays in limits, which parts decide it, is it evidence enough",
         "assess bom_examples/tide_tone_1khz.xlsx",
     )
-    parser.add_argument("study", metavar="STUDY", help="a study workbook, a .toml study, or a result workbook")
+    parser.add_argument("study", metavar="STUDY", help=STUDY)
+    _run(parser, "exactly N units, one look (default: looks at fixed counts)")
+    parser.set_defaults(run=commands.assess)
+
+
+def _run(parser: Parser, units: str) -> None:
+    """What every command that simulates takes."""
     parser.add_argument("-o", "--output", metavar="DIR", help="where results go (default output/<study>-<digest>)")
-    parser.add_argument("--units", metavar="N", help="exactly N units, one look (default: looks at fixed counts)")
+    parser.add_argument("--units", metavar="N", help=units)
     parser.add_argument("--seed", metavar="S", default="1", help="seed of every draw (default 1)")
     parser.add_argument("--workers", metavar="W", help="processes (default: one per processor)")
     _common(parser)
-    parser.set_defaults(run=commands.assess)
+
+
+def _upgrade(sub: Sub) -> None:
+    parser = _add(
+        sub,
+        "upgrade",
+        "which part to buy better: yield and cost of a good unit for every next grade and for sets of them",
+        "upgrade bom_examples/tide_tone_1khz.xlsx",
+    )
+    parser.add_argument("study", metavar="STUDY", help=STUDY)
+    _run(parser, "units on which a set must prove itself, and as many fresh ones (default 65,536)")
+    parser.set_defaults(run=decisions.upgrade)
+
+
+def _limits(sub: Sub) -> None:
+    parser = _add(
+        sub,
+        "limits",
+        "factory test limits with escapes and false rejects, the trade between them; trim range and yield after trim",
+        "limits bom_examples/tide_tone_1khz.xlsx",
+    )
+    parser.add_argument("study", metavar="STUDY", help=STUDY)
+    _run(parser, "units of each of the two samples (default: what the escape limit needs)")
+    parser.set_defaults(run=decisions.limits)
+
+
+def _compare(sub: Sub) -> None:
+    parser = _add(
+        sub,
+        "compare",
+        "two studies or result workbooks: what changed, and what it did to each rate",
+        "compare bom_examples/tide_tone_1khz.xlsx bom_examples/tide_tone_clipping.xlsx",
+    )
+    parser.add_argument("first", metavar="A", help=STUDY)
+    parser.add_argument("second", metavar="B", help="the other one")
+    _run(parser, "units of each study, the same numbers (default 65,536)")
+    parser.set_defaults(run=decisions.compare)

@@ -9,7 +9,7 @@ from yieldosc.circuits import registry
 from yieldosc.circuits.circuit import CircuitError
 from yieldosc.cli import files
 from yieldosc.cli.streams import Streams
-from yieldosc.cli.words import options_of, unit_values, whole_number
+from yieldosc.cli.words import MOST_UNITS, options_of, unit_values, whole_number
 from yieldosc.errors import Finding, InputError, refusal
 from yieldosc.quantities import QuantityError, parse_quantity
 from yieldosc.reports import console as pages
@@ -22,8 +22,6 @@ from yieldosc.sheets.study_file import is_study, load_study
 from yieldosc.studies.assess import assess as run_assessment
 from yieldosc.studies.serialise import assessment_dict
 from yieldosc.unit import NamedCircuit, Unit, evaluate_nominal
-
-MOST_UNITS = 10_000_000_000
 
 
 def named(name: str) -> NamedCircuit:

@@ -75,10 +75,8 @@ def claim_directory(directory: Path, *, digest: str, force: bool) -> None:
         raise refusal("exists", f"{directory} is a file, not a directory; choose another place with -o/--output")
     if not any(directory.iterdir()):
         return
-    try:
-        known = json.loads((directory / RECORD).read_text(encoding="utf-8"))["provenance"]["input_sha256"]
-    except (OSError, ValueError, KeyError, TypeError):
-        known = None
+    digests = (_digest_in(path) for path in sorted(directory.glob("*.json")))
+    known = next((found for found in digests if found is not None), None)
     if known is None:
         raise refusal(
             "exists",
@@ -91,6 +89,15 @@ def claim_directory(directory: Path, *, digest: str, force: bool) -> None:
             f"{directory} holds the result of another input ({known[:8]}, this one is {digest[:8]}); choose another "
             "place with -o/--output, or add --force to replace it",
         )
+
+
+def _digest_in(path: Path) -> str | None:
+    """Whose result a record is; None where it is no record of ours."""
+    try:
+        found = json.loads(path.read_text(encoding="utf-8"))["provenance"]["input_sha256"]
+    except (OSError, ValueError, KeyError, TypeError):
+        return None
+    return found if isinstance(found, str) else None
 
 
 def write_record(path: Path, content: dict[str, object]) -> None:

@@ -10,6 +10,8 @@ from yieldosc.errors import Finding, InputError, refusal
 from yieldosc.quantities import QuantityError, parse_quantity
 from yieldosc.unit import NamedCircuit
 
+MOST_UNITS = 10_000_000_000
+
 
 def options_of(circuit: NamedCircuit, words: Sequence[str]) -> dict[str, str]:
     """KEY=VALUE words → complete options of the circuit."""

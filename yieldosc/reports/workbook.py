@@ -40,14 +40,17 @@ def make_workbook(a: Assessment) -> Workbook:
     worst_units(book, a)
     method(book, a)
     provenance(book, a)
-    contract_sheets(book, a)
+    contract_sheets(book, a.study)
     return book
 
 
 def write_workbook(a: Assessment, path: Path | str) -> None:
     """Write whole to a temporary name beside `path`, then rename; whether `path` may be replaced is the caller's."""
-    target = Path(path)
-    book = make_workbook(a)
+    save_whole(make_workbook(a), Path(path))
+
+
+def save_whole(book: Workbook, target: Path) -> None:
+    """Write to a temporary name beside `target`, then rename."""
     handle, name = tempfile.mkstemp(prefix=".", suffix=".xlsx", dir=target.parent)
     os.close(handle)
     temporary = Path(name)

@@ -15,6 +15,7 @@ from yieldosc.reports.workbook_page import Page, Value, at, head, print_set_up, 
 from yieldosc.sheets.bomline import BomLine
 from yieldosc.sheets.write_study import study_sheets
 from yieldosc.studies.results import Assessment
+from yieldosc.study import Study
 
 DIGITS = 7
 
@@ -113,9 +114,9 @@ def provenance(book: Workbook, a: Assessment) -> None:
     page.finish()
 
 
-def contract_sheets(book: Workbook, a: Assessment) -> None:
+def contract_sheets(book: Workbook, study: Study) -> None:
     """BOM, Design, Roles and the sheets that they name, exactly as the study's reader writes them."""
-    for name, rows in study_sheets(a.study):
+    for name, rows in study_sheets(study):
         sheet = book.create_sheet(name)
         widths: dict[int, int] = {}
         for r, row in enumerate(rows, start=1):

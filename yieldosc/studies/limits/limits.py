@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import time
 from collections import Counter
+from dataclasses import replace
 from datetime import UTC, datetime
 
 import numpy as np
@@ -17,7 +18,7 @@ from yieldosc.studies.limits.acceptance import Instrument, LimitRates, limit_rat
 from yieldosc.studies.limits.resistance_test import has_crystal, resistance_test
 from yieldosc.studies.limits.results import Floor, LimitsResult, TradeLine
 from yieldosc.studies.limits.sample import FactorySample, factory_sample
-from yieldosc.studies.limits.search import Pair, Search, closing_floor
+from yieldosc.studies.limits.search import LESS_CAUTIOUS, Pair, Search, closing_floor
 from yieldosc.studies.parallel import Workers, default_workers
 from yieldosc.studies.progress import Callback, Meter
 from yieldosc.studies.provenance import provenance
@@ -26,7 +27,7 @@ from yieldosc.studies.trim.trim import Trim
 from yieldosc.study import Study
 
 LEAST_UNITS, MOST_UNITS = 65_536, 524_288  # of each of the two samples
-NEEDED = 16.0  # units · level that leaves room for a choice: 3.7 is what no failure at all proves, times four
+NEEDED = 60.0  # units · level that leaves room for a choice: no escape at all proves 3.7, and that times four chooses
 TRIM_UNITS = 16_384
 RESISTANCE_UNITS = 16_384
 LEVELS = (1e-2, 3e-3, 1e-3, 3e-4, 1e-4, 3e-5, 1e-5)
@@ -115,8 +116,13 @@ class _Choice:
         own = (design.frequency_low_hz, design.frequency_high_hz)
         level = design.escape_limit
         levels = sorted({*LEVELS, *(() if level is None else (level,))}, reverse=True)
-        pairs, lowest = Search(choosing.tested, instrument, own, design.confidence).chosen(levels)
+        search = Search(choosing.tested, instrument, own, design.confidence)
+        pairs, _ = search.chosen(levels)
         found = dict(zip(levels, pairs, strict=True))
+        for share in LESS_CAUTIOUS:
+            (other,), lowest = replace(search, information=share).chosen([level or 1.0])
+            if level is not None and found[level] is None:
+                found[level] = other
         unguarded = self.rates_of(Pair(*own, np.nan))
         self.trade = (
             TradeLine(level=None, rates=unguarded, chosen_bound=None),

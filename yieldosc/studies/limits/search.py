@@ -6,6 +6,7 @@ Accepted good and bad units of a pair are differences of two cumulative sums, so
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -24,6 +25,7 @@ TAIL_SDS = 6.0
 # The bound that chooses is taken as from a quarter of the units: twice as wide, so that the bound on fresh units keeps
 # to the level too in about nine of ten cases (1.96 + 1.28·√2 = 3.8 ≈ 2 · 1.96 standard deviations).
 SHARE_OF_INFORMATION = 0.25
+LESS_CAUTIOUS = (0.5, 1.0)  # where the units are too few for that: the report says whether fresh units confirm it
 EVEN = 1e-9  # shares of accepted good units that differ by less are called equal
 
 
@@ -34,6 +36,14 @@ class Pair:
     low_hz: float
     high_hz: float
     bound: float
+
+
+    def rounded(self, limits_hz: tuple[float, float]) -> Pair:
+        """Both limits inward to a step that an instrument can be set to; the specification's own stay as they are."""
+        step = 10.0 ** (math.floor(math.log10(limits_hz[1] - limits_hz[0])) - 3)
+        low = self.low_hz if self.low_hz in limits_hz else math.ceil(self.low_hz / step - 1e-9) * step
+        high = self.high_hz if self.high_hz in limits_hz else math.floor(self.high_hz / step + 1e-9) * step
+        return Pair(low, high, self.bound) if low < high else self
 
 
 @dataclass(frozen=True)
@@ -86,8 +96,10 @@ class Search:
         found = []
         for level in levels:
             best = pairs.best(level, self.limits_hz)
-            found.append(None if best is None else self._finer(best, step).best(level, self.limits_hz) or best)
-        return found, self._finer(pairs.lowest(self.limits_hz), step).lowest(self.limits_hz)
+            finer = None if best is None else self._finer(best, step).best(level, self.limits_hz) or best
+            found.append(None if finer is None else finer.rounded(self.limits_hz))
+        lowest = self._finer(pairs.lowest(self.limits_hz), step).lowest(self.limits_hz)
+        return found, lowest.rounded(self.limits_hz)
 
     def _grid(self) -> Array:
         f = self.tested.frequency_hz[self.tested.starting]

@@ -7,6 +7,12 @@ import math
 from yieldosc.studies.results import Estimate
 
 
+def best_known(current: Estimate, difference: Estimate, counted: Estimate) -> Estimate:
+    """Of a count on the shared draws and the declared yield moved by the difference, the one known better."""
+    moved = moved_yield(current, difference)
+    return moved if moved.high - moved.low < counted.high - counted.low else counted
+
+
 def moved_yield(current: Estimate, difference: Estimate) -> Estimate:
     """The declared yield, counted on more units, moved by a difference on the same draws; both uncertainties joined."""
     estimate = min(max(current.estimate + difference.estimate, 0.0), 1.0)

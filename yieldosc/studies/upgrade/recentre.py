@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from yieldosc.parts.codes import nearest_e, neighbours_e
 from yieldosc.parts.grades import half_width
 from yieldosc.parts.parameter import Parameter
+from yieldosc.studies.estimates import yield_estimate
 from yieldosc.studies.judge import GOOD
 from yieldosc.studies.nominal import nominal_points
 from yieldosc.studies.parallel import Workers
@@ -19,7 +20,7 @@ from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Estimate
 from yieldosc.studies.rivals import paired_difference
 from yieldosc.studies.run import Setup, inner_pieces
-from yieldosc.studies.upgrade.moved import moved_yield
+from yieldosc.studies.upgrade.moved import best_known
 from yieldosc.studies.upgrade.results import Recentre
 from yieldosc.study import Study
 
@@ -131,13 +132,14 @@ def recentred(
         for nominal, good in zip(nominals, answers, strict=True):
             if meter is not None:
                 meter.done(units)
+            counted = yield_estimate(units - int(np.count_nonzero(good)), units, confidence)
             difference = paired_difference(good, declared_good, confidence)
             if difference.low > 0:
                 found.append(
                     Recentre(
                         part=nominal.part, from_value=nominal.from_value, to_value=nominal.to_value,
                         unit=nominal.unit, series=nominal.series, difference=difference,
-                        yield_=moved_yield(current, difference),
+                        yield_=best_known(current, difference, counted),
                     )
                 )  # fmt: skip
     return tuple(sorted(found, key=lambda r: -r.yield_.estimate))

@@ -30,6 +30,17 @@ class Change:
         return f"{self.part} {', '.join(steps)}" if steps else f"{self.part} as declared"
 
 
+    @property
+    def order(self) -> str:
+        """"C1, C2 with ±2 % in place of ±5 %"."""
+        steps = []
+        if self.tolerance != self.from_tolerance:
+            steps.append(f"{self.tolerance} in place of {self.from_tolerance}")
+        if self.temperature_law != self.from_law:
+            steps.append(f"{self.temperature_law or 'no law'} in place of {self.from_law or 'no law'}")
+        return f"{self.part} with {' and '.join(steps)}"
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class UpgradeOption:
     """A set of changes, re-simulated on the draws of the declared set."""

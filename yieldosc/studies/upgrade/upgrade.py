@@ -24,7 +24,7 @@ from yieldosc.studies.provenance import provenance
 from yieldosc.studies.results import Estimate
 from yieldosc.studies.rivals import good_units, paired_difference
 from yieldosc.studies.run import QUANTUM, Setup
-from yieldosc.studies.upgrade.moved import moved_yield
+from yieldosc.studies.upgrade.moved import best_known
 from yieldosc.studies.upgrade.prices import Prices
 from yieldosc.studies.upgrade.purchases import Choice, Purchase, purchases
 from yieldosc.studies.upgrade.recentre import candidates, recentred
@@ -135,7 +135,7 @@ class _Run:
         for (purchase, choice), good in zip(pairs, found, strict=True):
             self._flags.setdefault(purchase.name, []).append((choice, good))
         self.options = tuple(
-            self._option((choice,), moved_yield(self.current, difference), difference)
+            self._option((choice,), best_known(self.current, difference, self._yield(good)), difference)
             for (_, choice), good in zip(pairs, found, strict=True)
             for difference in [paired_difference(good, self.good, self.confidence)]
         )
