@@ -52,7 +52,7 @@ REFUSED = [
                 "error",
                 "unknown-item",
                 "Design!B9",
-                '"colour" is no item of Design; the items are: circuit, option <name>, frequency limit low, frequency limit high, target frequency, least margin, longest start-up time, start-up ratio, most distortion, most drive, temperature low, temperature high, temperature points, supply, supply tolerance, life, yield target, confidence, default shape, reel share, bench frequency, build quantity, cost of a failed unit, test temperature, measurement sd, escape limit, trim role, trim low, trim high, trim step, pilot column',
+                '"colour" is no item of Design; the items are: circuit, option <name>, frequency limit low, frequency limit high, target frequency, least margin, longest start-up time, start-up ratio, most distortion, most drive, temperature low, temperature high, temperature points, supply, supply tolerance, life, yield target, confidence, default shape, reel share, bench frequency, build quantity, cost of a failed unit, test temperature, measurement sd, measurement bias, escape limit, trim role, trim low, trim high, trim step, pilot column',
             )
         ],
     ),
@@ -479,11 +479,6 @@ SAID = [
         "measured few",
         {"roles": {"R1": {"Shape": "measured"}}, "extra": {"Measured": [["R1"], [15790], [15800], [15810]]}},
         [("warning", "few-measurements", "Measured!A1", "R1: 3 measured values; below 50 the tails are guesswork")],
-    ),
-    (
-        "grades",
-        {"extra": {"Grades": [["Kind", "Tolerance"], ["resistor", "±0.1 %"]]}},
-        [("note", "sheet-not-used", "Grades", "the sheet Grades is kept but not used by check and assess")],
     ),
 ]
 

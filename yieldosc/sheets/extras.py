@@ -2,14 +2,24 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping, Sequence
 
-from yieldosc.errors import Place
 from yieldosc.quantities import QuantityError, parse_quantity
-from yieldosc.sheets.entries import Entry, Problems, entry_of, faulty, folded
+from yieldosc.sheets.entries import Entry, Problems, entry_of, faulty
 from yieldosc.sheets.grid import Book, Grid
+from yieldosc.sheets.roles import RoleRow
 
-KNOWN = ("BOM", "Design", "Roles", "Measured", "Grades", "Alternates", "Circuit", "Pilot")
+KEPT = ("Measured", "Grades", "Alternates", "Circuit", "Pilot")  # a result workbook carries them along
+
+
+def named_tables(book: Book, rows: Sequence[RoleRow]) -> list[str]:
+    """Names of the sheets that temperature laws name ("table coil"), in Roles, Grades and Alternates."""
+    texts = [row.cells["Temperature law"].text for row in rows if "Temperature law" in row.cells]
+    for grid in (book.sheet("Grades"), book.sheet("Alternates")):
+        texts += [] if grid is None else [cell.text for row in grid.rows for cell in row if cell.kind == "text"]
+    found = (re.match(r"\s*table\s+(\S.*)", text, re.IGNORECASE) for text in texts)
+    return [match[1].strip() for match in found if match is not None]
 
 
 def law_tables(book: Book, wanted: Sequence[str], problems: Problems) -> dict[str, list[tuple[float, float]]]:
@@ -110,12 +120,3 @@ def branch_rows(book: Book, problems: Problems) -> list[dict[str, str]] | None:
         if row:
             made.append(row)
     return made
-
-
-def unused_sheets(book: Book, used: Sequence[str], problems: Problems) -> None:
-    """Contract sheets that this analysis does not read are named, not passed over in silence."""
-    for name in ("Grades", "Alternates", "Pilot"):
-        if book.sheet(name) is not None and folded(name) not in {folded(u) for u in used}:
-            problems.add(
-                "note", "sheet-not-used", f"the sheet {name} is kept but not used by check and assess", Place(name)
-            )

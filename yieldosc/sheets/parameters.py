@@ -46,6 +46,11 @@ class ParameterMaker:
         self.share: float = values.get("reel_share", 0.0)
         self.life: float | None = values.get("life_years")
         self.range_c = (values.get("temperature_low_c"), values.get("temperature_high_c"))
+        self.parts: dict[str, str] = {}  # role → designator, where its row names one
+
+    def working_with(self, problems: Problems) -> ParameterMaker:
+        """The same maker with a list of problems of its own."""
+        return ParameterMaker(self.sources, problems)
 
     def make(self, circuit: Circuit, rows: Mapping[str, RoleRow]) -> tuple[tuple[Parameter, ...], dict[str, float]]:
         parameters, conditions = [], {}
@@ -60,7 +65,7 @@ class ParameterMaker:
                 if value is not None:
                     conditions[role.name] = value
                 continue
-            made = self._parameter(role, row)
+            made = self.parameter(role, row)
             if made is not None:
                 parameters.append(made)
         return tuple(parameters), conditions
@@ -137,9 +142,13 @@ class ParameterMaker:
             )
         return line
 
-    def _parameter(self, role: Role, row: RoleRow | None) -> Parameter | None:
+    def parameter(self, role: Role, row: RoleRow | None) -> Parameter | None:
+        """The population of a role from its row and its BOM line; None with findings."""
         before = len(self.problems.findings)
         line = None if row is None else self._line(role, row)
+        part = row.cell("Part") if row is not None else None
+        if part is not None:
+            self.parts[role.name] = _part_name(role, part, line)
         if any(f.code == "unknown-part" for f in self.problems.findings[before:]):
             return None  # its value and tolerance cannot be told
         bounds = BoundsReader(role, row, line, self.default_shape, self.problems).read()
@@ -158,7 +167,6 @@ class ParameterMaker:
                 given[key] = entry.given
         if law is not None and "law" not in given and line is not None and "temperature_law" in line.given:
             given["law"] = line.given["temperature_law"]
-        part = row.cell("Part") if row is not None else None
         ageing = None
         if self.life and isinstance(law, Class2Law) and (row is None or row.cell("Drift") is None):
             ageing = default_ageing(law.text)
@@ -170,6 +178,7 @@ class ParameterMaker:
             law=law, solder=solder, drift=drift, ageing=ageing,
             reel=None if line is None else _reel_name(line), reel_share=share,
             pedigree="assumed" if bounds.assumed else pedigree, given=given, note="" if note is None else note.written,
+            declared=_declared(bounds, line),
         )  # fmt: skip
 
     def _measured(self, role: Role, row: RoleRow, bounds: Bounds) -> Bounds:
@@ -196,12 +205,16 @@ class ParameterMaker:
                 return None
         if text is None:
             return None
+        return self.checked_law(role.name, text, role.unit, place)
+
+    def checked_law(self, name: str, text: str, si_unit: str, place: Place | None) -> Law | None:
+        """The law that a text names, fit for the temperatures of the study; None for "none", or with a finding."""
         try:
-            law = parse_law(text, tables=self.sources.tables, si_unit=role.unit)
+            law = parse_law(text, tables=self.sources.tables, si_unit=si_unit)
         except LawError as error:
-            self.problems.error("unknown-law", f"{role.name} temperature law: {error}", place)
+            self.problems.error("unknown-law", f"{name} temperature law: {error}", place)
             return None
-        self._in_range(role, law, place)
+        self._in_range(name, law, place)
         return law
 
     def _known_cut(self, role: Role, text: str, place: Place | None) -> bool:
@@ -223,21 +236,21 @@ class ParameterMaker:
         )
         return True
 
-    def _in_range(self, role: Role, law: Law | None, place: Place | None) -> None:
+    def _in_range(self, name: str, law: Law | None, place: Place | None) -> None:
         low, high = self.range_c
         if law is not None and not law.absolute and low is not None and high is not None:
-            self._stays_positive(role, law, (low, high), place)
+            self._stays_positive(name, law, (low, high), place)
         if law is None or law.range_c is None or low is None or high is None:
             return
         if low < law.range_c[0] or high > law.range_c[1]:
             self.problems.error(
                 "law-range",
-                f"{role.name}: {law.text} holds from {law.range_c[0]:g} to {law.range_c[1]:g} °C, the study goes from "
+                f"{name}: {law.text} holds from {law.range_c[0]:g} to {law.range_c[1]:g} °C, the study goes from "
                 f"{low:g} to {high:g} °C; narrow the study or give another law",
                 place,
             )
 
-    def _stays_positive(self, role: Role, law: Law, range_c: tuple[float, float], place: Place | None) -> None:
+    def _stays_positive(self, name: str, law: Law, range_c: tuple[float, float], place: Place | None) -> None:
         """A law that takes the whole value away inside the study's range describes no part."""
         ends = [np.full(1, u) for u in (0.0, 1.0)]
         for temperature_c in range_c:
@@ -245,7 +258,7 @@ class ParameterMaker:
             if min(changes) <= -1:
                 self.problems.error(
                     "law-impossible",
-                    f"{role.name}: {law.text} would leave nothing of the value at {temperature_c:g} °C; check its sign "
+                    f"{name}: {law.text} would leave nothing of the value at {temperature_c:g} °C; check its sign "
                     "and its unit",
                     place,
                 )
@@ -309,3 +322,11 @@ def _kind(role: Role) -> Kind:
 def _reel_name(line: BomLine) -> str:
     """The reel's key as ranks print it: the part number, or what stands for one."""
     return " ".join(reel_key(line).removeprefix("number ").removeprefix("part ").split())
+
+
+def _declared(bounds: Bounds, line: BomLine | None) -> tuple[float, float] | None:
+    """The bounds of the BOM's tolerance, where measured values stand in its place."""
+    if not isinstance(bounds.shape, Measured) or line is None or line.tolerance is None:
+        return None
+    low, high = line.tolerance
+    return bounds.typical * (1 + low), bounds.typical * (1 + high)

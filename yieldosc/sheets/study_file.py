@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
@@ -10,15 +9,20 @@ from pathlib import Path
 from yieldosc.circuits import own_circuit, registry
 from yieldosc.circuits.circuit import Circuit, CircuitError, Family, Role
 from yieldosc.errors import Finding, InputError, Place, refusal
+from yieldosc.sheets.alternates import AlternateReader
 from yieldosc.sheets.bom import BomReading, read_bom
 from yieldosc.sheets.bomline import BomLine
-from yieldosc.sheets.design import DesignSheet, check_design, frequency_limits, make_design, read_design, requirements
+from yieldosc.sheets.design import DesignSheet, check_design, frequency_limits, read_design, requirements
 from yieldosc.sheets.digest import digest_of
 from yieldosc.sheets.entries import Problems, folded
-from yieldosc.sheets.extras import branch_rows, law_tables, measured_values, unused_sheets
+from yieldosc.sheets.extras import branch_rows, law_tables, measured_values, named_tables
+from yieldosc.sheets.factory import check_trim_items, make_design
+from yieldosc.sheets.grade_rows import GradeReader
 from yieldosc.sheets.grid import Book
 from yieldosc.sheets.opening import open_book
 from yieldosc.sheets.parameters import ParameterMaker, Sources
+from yieldosc.sheets.pilot import read_pilot
+from yieldosc.sheets.prices import PriceReader
 from yieldosc.sheets.remarks import remark
 from yieldosc.sheets.roles import COLUMNS, RoleRow, sort_rows
 from yieldosc.sheets.study_tables import StudyTables, workbook_tables
@@ -73,6 +77,7 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
     sheet = read_design(tables.items, tables.design_place, problems)
     limits = frequency_limits(sheet, problems)
     check_design(sheet, problems)
+    check_trim_items(sheet, problems)
     rows = sort_rows(tables.rows, problems)
     reading = _bom(book, problems)
     if not rows and not problems.fatal:
@@ -86,18 +91,24 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
         design=sheet,
         lines=lines,
         rivals=_rivals(reading.lines),
-        tables=law_tables(book, _named_tables(rows), problems),
+        tables=law_tables(book, named_tables(book, tuple(rows.values())), problems),
         measured=measured_values(book, _measured_units(circuit, rows), problems),
     )
-    unused_sheets(book, (), problems)
     _supply(sheet, circuit, problems)
-    parameters, conditions = ParameterMaker(sources, problems).make(circuit, rows)
+    maker = ParameterMaker(sources, problems)
+    parameters, conditions = maker.make(circuit, rows)
     low, high = (sheet.values.get(f"temperature_{end}_c") for end in ("low", "high"))
     remark(circuit, parameters, rows, lines, problems, one_temperature=low == high)
-    trim_unit = _trim_unit(sheet, circuit, problems)
+    prices = PriceReader(problems)
+    grades = GradeReader(circuit, parameters, maker, prices, problems).read(book)
+    alternates = AlternateReader(circuit, rows, maker, prices, problems).read(book)
+    bought = prices.of_bom(tuple(dict.fromkeys(maker.parts.values())), lines)
+    prices.compare()
+    pilot = read_pilot(book, sheet, problems)
+    trimmed = _trimmed(sheet, circuit, problems)
     if limits is None or problems.fatal:
         return None
-    design = make_design(sheet, limits, trim_unit, problems)
+    design = make_design(sheet, limits, trimmed, problems)
     if design is None:
         return None
     study = Study(
@@ -113,6 +124,10 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
         design_rows=tuple((i.name, i.value.written, i.unit, i.note) for i in tables.items),
         role_rows=tuple(tuple(_role_texts(row)) for row in tables.rows),
         extra_rows=tables.extra_rows,
+        grades=grades,
+        alternates=alternates,
+        pilot=pilot,
+        prices=bought,
         findings=tuple(problems.findings),
     )
     return replace(study, digest=digest_of(study))
@@ -246,16 +261,6 @@ def _supply(sheet: DesignSheet, circuit: Circuit, problems: Problems) -> None:
         )
 
 
-def _named_tables(rows: Mapping[str, RoleRow]) -> list[str]:
-    names = []
-    for row in rows.values():
-        entry = row.cell("Temperature law")
-        found = None if entry is None else re.match(r"\s*table\s+(.+)", entry.text, re.I)
-        if found is not None:
-            names.append(found[1].strip())
-    return names
-
-
 def _measured_units(circuit: Circuit, rows: Mapping[str, RoleRow]) -> dict[str, str]:
     """Designator → SI unit of the main role that names it."""
     units = {}
@@ -267,13 +272,17 @@ def _measured_units(circuit: Circuit, rows: Mapping[str, RoleRow]) -> dict[str, 
     return units
 
 
-def _trim_unit(sheet: DesignSheet, circuit: Circuit, problems: Problems) -> str | None:
+def _trimmed(sheet: DesignSheet, circuit: Circuit, problems: Problems) -> Role | None:
     if "trim role" not in sheet.items or sheet.items["trim role"].value.fault:
         return None
     name = sheet.items["trim role"].value.written
     for role in circuit.roles:
+        if role.name == name and not role.condition:
+            return role
         if role.name == name:
-            return role.unit
+            text = f"trim role {name} is an operating condition, the same for every unit; name a part"
+            problems.error("unknown-role", text, sheet.place_of("trim role"))
+            return None
     problems.error("unknown-role", f"trim role {name} is no role of this circuit", sheet.place_of("trim role"))
     return None
 

@@ -6,11 +6,12 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from yieldosc.errors import Place
+from yieldosc.sheets.columns import named_rows
 from yieldosc.sheets.design import Item
 from yieldosc.sheets.entries import Entry, Problems, entry_of, faulty, folded
-from yieldosc.sheets.extras import KNOWN
+from yieldosc.sheets.extras import KEPT, named_tables
 from yieldosc.sheets.grid import Book, Grid
-from yieldosc.sheets.roles import RoleRow, column_names
+from yieldosc.sheets.roles import LAYOUT, RoleRow
 
 DESIGN_COLUMNS = ("Item", "Value", "Unit", "Note")
 
@@ -35,12 +36,7 @@ def workbook_tables(book: Book, problems: Problems) -> StudyTables:
             "missing-sheet", "the study has no sheet Roles; add it, or draft a study from the BOM", Place("Roles")
         )
     rows = [] if roles is None else _role_rows(roles, problems)
-    named = {
-        folded(row.cells["Temperature law"].text.strip()[5:])
-        for row in rows
-        if "Temperature law" in row.cells and row.cells["Temperature law"].text.strip().lower().startswith("table")
-    }
-    kept = {folded(n) for n in KNOWN if n not in ("BOM", "Design", "Roles")} | named
+    kept = {folded(n) for n in (*KEPT, *named_tables(book, rows))}
     extra = {g.name: sheet_texts(g) for g in book.sheets if folded(g.name) in kept}
     return StudyTables(_items(design, problems), rows, Place("Design"), extra_rows=extra)
 
@@ -86,23 +82,12 @@ def _is_heading(grid: Grid, row: int) -> bool:
 
 
 def _role_rows(grid: Grid, problems: Problems) -> list[RoleRow]:
-    heading = next(
-        (r for r in range(min(len(grid.rows), 20)) if any(folded(c.text) == "role" for c in grid.rows[r])), 0
-    )
-    cells = grid.rows[heading] if grid.rows else ()
-    names = column_names([(cell.text, grid.place(heading, c)) for c, cell in enumerate(cells)], problems)
     rows = []
-    for r in range(heading + 1, len(grid.rows)):
-        found = {}
-        for c, name in enumerate(names):
-            entry = entry_of(grid.cell(r, c), grid.place(r, c))
-            if name is not None and not entry.blank:
-                found[name] = entry
-        if "Role" in found and faulty(found["Role"], "Role", problems):
-            continue
-        if found:
-            role = found.pop("Role").written if "Role" in found else ""
-            rows.append(RoleRow(role, found, grid.place(r)))
+    for row in named_rows(grid, LAYOUT, problems):
+        cells = dict(row.cells)
+        role = cells.pop("Role", None)
+        if role is None or not faulty(role, "Role", problems):
+            rows.append(RoleRow("" if role is None else role.written, cells, row.place))
     return rows
 
 

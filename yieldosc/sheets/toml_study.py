@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 import tomllib
 from pathlib import Path
 from typing import Any
@@ -15,6 +16,7 @@ from yieldosc.sheets.roles import COLUMNS, RoleRow
 from yieldosc.sheets.study_tables import StudyTables, sheet_texts
 
 MOST_BYTES = 2_000_000
+MOST_TEXT = 32_767  # characters of a cell
 ROW_TABLES = {"circuit": "Circuit", "grades": "Grades", "alternates": "Alternates", "pilot": "Pilot"}  # key → sheet
 KEYS = ("bom", "design", "roles", "tables", "measured", *ROW_TABLES)
 _COLUMN = {folded(name): name for name in COLUMNS}
@@ -38,7 +40,7 @@ def toml_tables(path: Path, problems: Problems) -> tuple[StudyTables, Book]:
     rows = _rows(content.get("roles", []), problems, file)
     book = _book(path, content.get("bom"), file)
     extra = (*_measured(content, problems, file), *_law_sheets(content, problems, file))
-    extra += tuple(_row_sheets(content, problems, file))
+    extra += (*_row_sheets(content, problems, file), *_pilot(path, content.get("pilot"), problems, file))
     texts = {grid.name: sheet_texts(grid) for grid in extra}
     return StudyTables(items, rows, Place("Design"), extra_rows=texts), Book(book.path, "toml", (*book.sheets, *extra))
 
@@ -70,9 +72,9 @@ def _table(content: dict[str, Any], key: str, problems: Problems, file: Place) -
 
 
 def _entry(value: Any, place: Place) -> Entry:
-    """Numbers stay numbers, everything else is its text."""
-    if isinstance(value, bool) or not isinstance(value, int | float):
-        return Entry(str(value), place)
+    """Numbers stay numbers, everything else is its text; so are infinity and what is too large to compute with."""
+    if isinstance(value, bool) or not isinstance(value, int | float) or not abs(value) <= sys.float_info.max:
+        return Entry(str(value)[:MOST_TEXT], place)
     return Entry(str(value), place, float(value))
 
 
@@ -104,23 +106,40 @@ def _rows(value: Any, problems: Problems, file: Place) -> list[RoleRow]:
 def _book(path: Path, name: Any, file: Place) -> Book:
     if not isinstance(name, str) or not name:
         raise refusal("missing-item", f'{path.name} names no BOM; add a line bom = "FILE.csv"', file)
-    target = path.parent / name
-    if Path(name).is_absolute() or ".." in Path(name).parts:
+    if _outside(name):
         raise refusal("bom-outside", f"bom = {name!r}: the BOM must stand in the study's own folder", file)
-    return open_book(target)
+    return open_book(path.parent / name)
+
+
+def _outside(name: str) -> bool:
+    return Path(name).is_absolute() or ".." in Path(name).parts
+
+
+def _pilot(path: Path, value: Any, problems: Problems, file: Place) -> list[Grid]:
+    """pilot = "FILE.csv", or [pilot] with a list of boards per column; [[pilot]] is read with the other row tables."""
+    if isinstance(value, str) and _outside(value):
+        problems.error("pilot-outside", f"pilot = {value!r}: the file must stand in the study's own folder", file)
+    elif isinstance(value, str):
+        return [Grid("Pilot", grid.rows) for grid in open_book(path.parent / value).sheets[:1]]
+    elif isinstance(value, dict) and value:
+        return [_columns_sheet("Pilot", list(value.items()))]
+    return []
 
 
 def _measured(content: dict[str, Any], problems: Problems, file: Place) -> list[Grid]:
     columns = _table(content, "measured", problems, file)
-    if not columns:
-        return []
+    return [_columns_sheet("Measured", columns)] if columns else []
+
+
+def _columns_sheet(name: str, columns: list[tuple[str, Any]]) -> Grid:
+    """One column of cells per list."""
     lists = [values if isinstance(values, list) else [values] for _, values in columns]
-    head = tuple(Cell("text", name) for name, _ in columns)
+    head = tuple(Cell("text", heading) for heading, _ in columns)
     body = [
         tuple(_cell(values[r]) if r < len(values) else Cell("empty") for values in lists)
         for r in range(max(map(len, lists)))
     ]
-    return [Grid("Measured", (head, *body))]
+    return Grid(name, (head, *body))
 
 
 def _row_sheets(content: dict[str, Any], problems: Problems, file: Place) -> list[Grid]:
@@ -128,7 +147,7 @@ def _row_sheets(content: dict[str, Any], problems: Problems, file: Place) -> lis
     made = []
     for key, name in ROW_TABLES.items():
         rows = content.get(key, [])
-        if _is_item(key, rows):
+        if _is_item(key, rows) or (key == "pilot" and isinstance(rows, str | dict)):
             continue
         if not isinstance(rows, list) or not all(isinstance(row, dict) for row in rows):
             problems.error("wrong-form", f"{key} must be tables: write each row below a line [[{key}]]", file)
