@@ -129,9 +129,11 @@ def tone_rankings(corner):
               rank_line("R3", 0.15, per_percent=0.69), rank_line("R4", 0.14, per_percent=-0.69))  # fmt: skip
     causes = (rank_line("C1: initial", 0.33), rank_line("C1: temperature", 0.07))
     return {
-        "frequency": Ranking(output="frequency", corner=corner, parts=frequency, causes=causes, units=73_728),
-        "margin": Ranking(output="margin", corner=corner, parts=margin, causes=(), units=73_728),
-    }
+        "frequency": Ranking(output="frequency", corner=corner, parts=frequency, causes=causes, units=73_728,
+                             leaders=("C1", "C2"), looks=2, looks_planned=2),
+        "margin": Ranking(output="margin", corner=corner, parts=margin, causes=(), units=73_728,
+                          leaders=("C1",), looks=2, looks_planned=2),
+    }  # fmt: skip
 
 
 def tone_rivals():

@@ -52,11 +52,11 @@ def test_yield_and_range_are_the_exact_intervals_and_the_sets_extremes():
     assert s.range_value == "89.23 % to 99.956 %"
 
 
-def test_parts_whose_intervals_overlap_are_not_ordered():
+def test_parts_that_cannot_be_told_apart_are_not_ordered():
     frequency, margin = summarise(tone_assessment()).leading
     assert frequency == (
         "Frequency, at 60 °C where it varies most: C1 40.1 % (38.9 % to 41.3 %) and C2 38.9 % (37.7 % to 40.1 %) of "
-        "the variance; their intervals overlap, so this run does not order them."
+        "the variance; they cannot be told apart after 2 of 2 planned looks."
     )
     assert margin == (
         "Start-up margin, at 60 °C where it varies most: C1 decides 33.0 % (31.8 % to 34.2 %) of the variance, then "
@@ -190,17 +190,6 @@ def test_an_off_centre_population_is_told_to_move_first():
     assert summarise(tone_assessment(study)).next_steps[0] == (
         "Centre the frequency first: the medians over all corners have their middle at +0.24 %, the limits theirs at "
         "+2.00 %. Other nominal values cost nothing."
-    )
-
-
-def test_failing_units_that_disagree_with_the_variance_ranking_are_pointed_out():
-    a = tone_assessment()
-    named = replace(a.failure_share[0], part="C1 Cm")  # a part with several roles is named with its role
-    assert "It does not lead" not in summarise(replace(a, failure_share=(named,))).deciding[-1]
-    share = replace(a.failure_share[0], part="R4", cause="temperature", mean_shift_sd=1.25)
-    assert summarise(replace(a, failure_share=(share,))).deciding[-1] == (
-        "Among failing units R4 (temperature) stands out: its draws lie 1.25 standard deviations on the high side of "
-        "those of all units. It does not lead the variance: what spreads the output most is not what fails units most."
     )
 
 

@@ -134,7 +134,7 @@ def test_words_on_few_values():
     u = MeasuredUncertainty(lots=128, units_per_lot=1024, low=0.801, middle=0.85, high=0.9, confidence=0.9)
     assert [f.text for f in measured_findings([], u)] == [
         "So few measured values leave the yield open by themselves: over 128 lots drawn from them with replacement nine "
-        "in ten yield 80.1 % to 90 %, half 85 % or less. The interval of the yield does not hold this."
+        "in ten yield 80.1 % to 90 %, half 85 % or less. The yield's own interval does not hold this."
     ]
 
 

@@ -12,12 +12,14 @@ from yieldosc.studies.nominal import nominal_points, per_percent
 from yieldosc.studies.parallel import Workers
 from yieldosc.studies.ranking import rankings
 from yieldosc.studies.run import Setup
+from yieldosc.studies.share_interval import share_interval
 
 
 def ranked(study, evaluator, *, seed=0, **settings):
     setup = Setup.of(study, evaluator, seed=seed)
     nominal = [p.frequency_hz for p in nominal_points(setup.population, setup.bench, setup.corners)]
-    return rankings(setup, nominal, per_percent(study, setup.population, setup.bench), base=256, **settings)
+    lean = per_percent(study, setup.population, setup.bench)
+    return rankings(setup, nominal, lean, **({"base": 256} | settings))
 
 
 def totals(ranking):
@@ -60,7 +62,7 @@ def test_slope_per_percent(make_study, ideal_wien):
 
 
 def test_a_reel_is_its_own_line(make_study, ideal_wien):
-    whole = ranked(make_study(gain=4.0, share=1.0), ideal_wien())["frequency"]
+    whole = ranked(make_study(gain=4.0, share=1.0), ideal_wien(), base=1024)["frequency"]
     assert set(totals(whole)) == {"reel 10 kΩ", "reel 10 nF"}
     shares = log_variance(0.05) / (log_variance(0.05) + log_variance(0.01))
     assert totals(whole)["reel 10 nF"] == pytest.approx(shares, abs=0.005)
@@ -107,3 +109,55 @@ def test_an_output_that_does_not_vary_has_no_ranking(make_study, ideal_wien):
 def test_workers_change_no_index(make_study, ideal_wien):
     study = make_study(gain=3.1, share=0.5)
     assert ranked(study, ideal_wien()) == ranked(study, ideal_wien(), workers=Workers(2))
+
+
+def test_a_clear_leader_ends_the_looks_early(make_study, ideal_wien):
+    clear = ranked(make_study(gain=4.0, share=1.0), ideal_wien(), base=1024)["frequency"]
+    assert (clear.leaders, clear.looks, clear.looks_planned) == (("reel 10 nF",), 1, 2)
+    assert clear.units == 16 * 256 * (2 + 2)
+
+
+def test_parts_of_equal_share_are_never_told_apart(make_study, ideal_wien):
+    # ln f = −½ Σ ln of the four values: C1 and C2 hold exactly the same share
+    for seed in range(5):
+        found = ranked(make_study(gain=4.0), ideal_wien(), seed=seed, base=128)["frequency"]
+        assert set(found.leaders) == {"C1", "C2"}
+        assert found.looks == 2
+
+
+def test_a_small_true_difference_is_found_by_the_second_look(make_study, ideal_wien):
+    def tighter(p):
+        half = 0.046 * p.nominal
+        return replace(p, low=p.nominal - half, high=p.nominal + half) if p.role == "C2" else p
+
+    found = ranked(make_study(gain=4.0, change=tighter), ideal_wien(), base=1024)["frequency"]
+    assert found.leaders == ("C1",)
+
+
+def test_looks_order_equal_parts_no_more_often_than_they_may(make_study, ideal_wien):
+    # Two looks at 1 − α/2: over many seeds at most 5 % may name one of two equal parts; 40 seeds allow 6 (binomial)
+    study = make_study(gain=4.0)
+    wrong = sum(
+        len(ranked(study, ideal_wien(), seed=seed, base=32)["frequency"].leaders) < 2 for seed in range(40)
+    )
+    assert wrong <= 6
+
+
+def test_shares_stay_within_what_a_share_can_be(make_study, ideal_wien):
+    # one part holds the whole variance: the symmetric interval reaches beyond 100 %
+    found = ranked(make_study(gain=4.0, r=0.0, rf=0.01), ideal_wien(), base=8)
+    for ranking in found.values():
+        for line in (*ranking.parts, *ranking.causes):
+            for index in (line.first_order, line.total, line.mean_first_order, line.mean_total):
+                assert 0 <= index.low <= index.estimate <= index.high <= 1
+
+
+def test_an_interval_cut_to_a_share_keeps_its_coverage():
+    rng = np.random.default_rng(3)
+    truth, covered = 0.999, 0
+    for _ in range(400):
+        interval = share_interval(truth + 0.01 * rng.standard_normal(16), 0.9)
+        assert interval.high <= 1
+        covered += interval.low <= truth <= interval.high
+    assert 0.86 * 400 <= covered <= 0.94 * 400  # 90 % of 400, three standard errors
+    assert share_interval(np.full(16, 1.2) + 0.001 * rng.standard_normal(16)).low == 1.0

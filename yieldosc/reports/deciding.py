@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from yieldosc.quantities import format_quantity
 from yieldosc.reports.amounts import listed, margin_text, share_text
+from yieldosc.reports.failing_parts import failing_sentences
 from yieldosc.reports.first_failures import start_at_the_ends, where_units_fail_first
 from yieldosc.reports.terminal import one_line
 from yieldosc.studies.digits import rate_text
@@ -66,11 +67,8 @@ def worst_start(a: Assessment) -> CornerResult | None:
 
 
 def leaders(ranking: Ranking) -> tuple[RankLine, ...]:
-    """The parts whose interval of the total index reaches the first one's: they share the lead."""
-    if not ranking.parts:
-        return ()
-    first = ranking.parts[0]
-    return tuple(line for line in ranking.parts if line.total.high >= first.total.low)
+    """The parts that the looks do not tell apart from the first: they share the lead."""
+    return tuple(line for line in ranking.parts if line.part in ranking.leaders)
 
 
 def ranking_sentence(ranking: Ranking) -> str:
@@ -89,23 +87,19 @@ def ranking_sentence(ranking: Ranking) -> str:
     named = [f"{one_line(line.part)} {share_text(line.total)}" for line in lead[:MOST_NAMED]]
     more = len(lead) - MOST_NAMED
     tail = f", and {more} more" if more > 0 else ""
-    return f"{where}: {listed(named)}{tail} of the variance; their intervals overlap, so this run does not order them."
+    tried = f"{ranking.looks} of {ranking.looks_planned} planned looks"
+    return f"{where}: {listed(named)}{tail} of the variance; they cannot be told apart after {tried}."
 
 
-def failing_units_sentence(a: Assessment) -> str:
-    """Which part's draws stand out among failing units, and whether the variance ranking says the same."""
-    if not a.failure_share:
-        return ""
-    first = max(a.failure_share, key=lambda line: line.ks_distance)
-    side = "high" if first.mean_shift_sd > 0 else "low"
-    text = (
-        f"Among failing units {first.part} ({first.cause}) stands out: its draws lie "
-        f"{abs(first.mean_shift_sd):.2f} standard deviations on the {side} side of those of all units."
-    )
-    ranked = {line.part for r in a.rankings.values() for line in leaders(r)}
-    if ranked and not any(first.part == name or first.part.startswith(f"{name} ") for name in ranked):
-        text += " It does not lead the variance: what spreads the output most is not what fails units most."
-    return text
+def causes_sentence(ranking: Ranking) -> str:
+    """What moves the leading parts themselves: initial value, temperature, drift and solder."""
+    told = []
+    for part in (line.part for line in leaders(ranking)[:2]):
+        inside = [line for line in ranking.causes if line.part.startswith(f"{part}: ")]
+        if len(inside) > 1:
+            shares = [f"{line.part.removeprefix(f'{part}: ')} {share_text(line.total)}" for line in inside]
+            told.append(f"{one_line(part)}: {listed(shares)}")
+    return f"{NAMES[ranking.output]} by cause, of the whole variance: {'; '.join(told)}." if told else ""
 
 
 def wrong_modes_sentence(a: Assessment) -> str:
@@ -149,5 +143,6 @@ def deciding(a: Assessment) -> tuple[str, ...]:
     """All of them, in reading order."""
     made = [how_units_fail(a), where_units_fail(a), where_units_fail_first(a), start_at_the_ends(a), coldest_start(a)]
     made += leading(a)
-    made += [wrong_modes_sentence(a), failing_units_sentence(a), lots_sentence(a)]
+    made += [causes_sentence(a.rankings[output]) for output in ("frequency", "margin") if output in a.rankings]
+    made += [wrong_modes_sentence(a), *failing_sentences(a), lots_sentence(a)]
     return tuple(text for text in made if text)

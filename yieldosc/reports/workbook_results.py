@@ -10,6 +10,7 @@ from openpyxl.chart import Reference
 
 from yieldosc.quantities import format_quantity
 from yieldosc.reports.amounts import Deviation, per_percent_text, upper_text
+from yieldosc.reports.failing_parts import failing_sentences, variance_lines
 from yieldosc.reports.findings import Summary
 from yieldosc.reports.scales import with_unit
 from yieldosc.reports.temperatures import caption, limited_frequency, temperature_lines
@@ -17,7 +18,7 @@ from yieldosc.reports.terminal import one_line
 from yieldosc.reports.workbook_charts import BLUE, GREY, ORANGE, RED, add_line, bars, lines, span
 from yieldosc.reports.workbook_page import ROW_CM, Page, Value, at, ink, put
 from yieldosc.studies.digits import percent_text
-from yieldosc.studies.results import Assessment, CornerResult, Distribution, Ranking, RankLine
+from yieldosc.studies.results import Assessment, CornerResult, Distribution, FailureShare, Ranking, RankLine
 
 SHARE = "0.0%"
 FIRST_ROWS = 12
@@ -86,11 +87,22 @@ def _failure_share(page: Page, a: Assessment) -> None:
     if not a.failure_share:
         page.text("Withheld: fewer than 30 units failed.")
         return
+    for sentence in failing_sentences(a):
+        page.sentence(sentence)
     rows: list[list[Value]] = [
-        [one_line(f.part), f.cause, f.ks_distance, f.p_value, f.mean_shift_sd] for f in a.failure_share
+        [one_line(f.part), f.cause, f.ks_distance, f.p_value, f.mean_shift_sd, *_variance_shares(a, f)]
+        for f in a.failure_share
     ]
-    headings = ("Part", "Cause", "Kolmogorov–Smirnov distance", "p value", "Mean shift, standard deviations")
-    page.table(headings, rows, (None, None, "0.000", "0.0E+00", "+0.00;−0.00;0.00"), freeze=False)
+    headings = ("Part", "Cause", "Kolmogorov–Smirnov distance", "p value", "Mean shift, standard deviations",
+                "Its share of the frequency's variance", "Its share of the margin's variance")  # fmt: skip
+    formats = (None, None, "0.000", "0.0E+00", "+0.00;−0.00;0.00", SHARE, SHARE)
+    page.table(headings, rows, formats, freeze=False)
+
+
+def _variance_shares(a: Assessment, f: FailureShare) -> list[Value]:
+    """Total indices of the part at the worst corner, for frequency and margin."""
+    lines = variance_lines(a, f)
+    return [lines[output].total.estimate if output in lines else "" for output in ("frequency", "margin")]
 
 
 def temperatures(book: Workbook, a: Assessment) -> None:

@@ -47,7 +47,8 @@ def _uncertainty_text(u: MeasuredUncertainty) -> str:
     low, middle, high = (f"{100 * q:.3g} %" for q in (u.low, u.middle, u.high))
     return (
         f"So few measured values leave the yield open by themselves: over {u.lots} lots drawn from them with "
-        f"replacement nine in ten yield {low} to {high}, half {middle} or less. The interval of the yield does not hold this."
+        f"replacement nine in ten yield {low} to {high}, half {middle} or less. The yield's own "
+        "interval does not hold this."
     )
 
 

@@ -89,6 +89,9 @@ class Ranking:
     units: int
     substituted: int = 0  # units without bias, evaluated at margin 1e-6 and the nominal frequency
     withheld: str = ""  # why there is no rank, where there is none
+    leaders: tuple[str, ...] = ()  # parts that cannot be told apart from the first, itself included
+    looks: int = 1
+    looks_planned: int = 1
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
