@@ -1,6 +1,7 @@
 """A study as text beside its BOM: the same digest as the workbook, and its own refusals whole."""
 
 import csv
+from dataclasses import replace
 
 import pytest
 
@@ -50,6 +51,15 @@ def test_tables_and_measurements_as_text(tmp_path):
         ("", 'study.toml names no BOM; add a line bom = "FILE.csv"'),
         ('bom = "../bom.csv"\n', "bom = '../bom.csv': the BOM must stand in the study's own folder"),
         ('bom = "/etc/passwd"\n', "bom = '/etc/passwd': the BOM must stand in the study's own folder"),
+        ('bom = "bom.csv"\npilot = "../pilot.csv"\n', "pilot = '../pilot.csv': the file must stand in the study's own folder"),
+        ('bom = "bom.csv"\npilot = 3\n', "pilot must be tables: write each row below a line [[pilot]]"),
+        ('bom = "bom.csv"\n[grades]\nR1 = 1\n', "grades must be tables: write each row below a line [[grades]]"),
+        ('bom = "bom.csv"\nalternates = [1]\n', "alternates must be tables: write each row below a line [[alternates]]"),
+        ('bom = "bom.csv"\nmeasured = 3\n', "measured must be a table of its own: write it below a line [measured]"),
+        ('bom = "bom.csv"\n[tables]\ncoil = 3\n', 'the table coil must be a list of points: coil = [[-40, "-100 ppm"], [25, 0]]'),
+        ('bom = "bom.csv"\ntemperature_points = inf\n', 'temperature points must be a number without unit; found "inf"'),
+        ('bom = "bom.csv"\nleast_margin = nan\n', 'least margin must be a number without unit; found "nan"'),
+        (f'bom = "bom.csv"\nbuild_quantity = 1{"0" * 400}\n', f'build quantity must be a number without unit; found "1{"0" * 38}…"'),
         ('bom = "bom.csv"\n[colour]\nred = 3\n', "'colour' is no table of a study; they are: bom, design, roles, tables, measured, circuit, grades, alternates, pilot"),
     ],
 )
@@ -57,6 +67,37 @@ def test_refusals(tmp_path, head, text):
     with pytest.raises(InputError) as caught:
         load_study(text_study(tmp_path, head=head))
     assert [f.text for f in caught.value.findings if f.level == "error"] == [text]
+
+
+def test_items_at_the_top_of_the_file(tmp_path):
+    first = load_study(text_study(tmp_path, head='bom = "bom.csv"\nleast_margin = 1.5\n'))
+    assert first.design.least_margin == 1.5
+
+
+@pytest.mark.parametrize("roles", ["roles = 3", 'roles = ["R1"]', "[roles]\nR1 = 3"])
+def test_roles_that_are_no_tables(tmp_path, roles):
+    path = tmp_path / "study.toml"
+    head = 'bom = "bom.csv"\n'
+    text_study(tmp_path)
+    text = path.read_text(encoding="utf-8")
+    design = text[text.index("[design]") : text.index("[[roles]]")]
+    path.write_text(head + (f"{roles}\n{design}" if roles.startswith("roles") else f"{design}{roles}\n"), encoding="utf-8")
+    with pytest.raises(InputError) as caught:
+        load_study(path)
+    assert [f.text for f in caught.value.findings if f.level == "error"] == [
+        "roles must be tables: write [[roles]] with a key role, or [roles.NAME]"
+    ]
+
+
+def test_a_study_that_is_no_file_or_too_large(tmp_path):
+    path = tmp_path / "study.toml"
+    path.write_text("#" * 2_000_001)
+    with pytest.raises(InputError) as caught:
+        load_study(path)
+    assert str(caught.value) == "study.toml: study.toml is larger than 2,000,000 bytes; a study is not"
+    with pytest.raises(InputError) as caught:
+        load_study(tmp_path / "gone.toml")
+    assert str(caught.value) == "gone.toml: gone.toml cannot be read: No such file or directory"
 
 
 def test_a_file_that_is_no_toml(tmp_path):
@@ -72,6 +113,75 @@ def test_a_wrong_column_and_a_wrong_role_at_once(tmp_path):
     with pytest.raises(InputError) as caught:
         load_study(path)
     assert [f.code for f in caught.value.findings if f.level == "error"] == ["unknown-column", "unknown-role"]
+
+
+OFFERS = """
+[[grades]]
+kind_or_part = "resistors"
+tolerance = "±0.1 %"
+price = 0.12
+[[grades]]
+kind_or_part = "C1"
+temperature_law = "table film"
+price_factor = 1.5
+[[alternates]]
+part = "R1"
+alternate = "PX-1"
+tolerance = "±0.5 %"
+price = "0.30 €"
+[tables]
+film = [[-40, "-1 %"], [25, 0], [85, "2 %"]]
+"""
+OFFER_SHEETS = {
+    "Grades": [
+        ["Kind or Part", "Tolerance", "Temperature law", "Price", "Price factor"],
+        ["resistors", "±0.1 %", None, 0.12, None],
+        ["C1", None, "table film", None, 1.5],
+    ],
+    "Alternates": [["Part", "Alternate", "Tolerance", "Price"], ["R1", "PX-1", "±0.5 %", "0.30 €"]],
+    "film": [["Temperature", "Change"], [-40, "-1 %"], [25, 0], [85, "2 %"]],
+    "Pilot": [["board", "frequency"], ["A", 1001.5], ["B", "no start"]],
+}
+
+
+def placeless(alternates):
+    """BOM.csv and BOM.xlsx are other places of the same cells."""
+    return [(a.part, a.name, a.price, a.place, [replace(p, given={}) for p in a.parameters]) for a in alternates]
+
+
+PILOTS = {
+    "rows": ("", '[[pilot]]\nboard = "A"\nfrequency = 1001.5\n[[pilot]]\nboard = "B"\nfrequency = "no start"\n'),
+    "columns": ("", '[pilot]\nboard = ["A", "B"]\nfrequency = [1001.5, "no start"]\n'),
+    "file": ('pilot = "pilot.csv"\n', ""),
+}
+
+
+@pytest.mark.parametrize("form", PILOTS)
+def test_grades_alternates_and_pilot_as_text(tmp_path, form):
+    (tmp_path / "pilot.csv").write_text("board,frequency\nA,1001.5\nB,no start\n", encoding="utf-8")
+    above, below = PILOTS[form]
+    text = load_study(text_study(tmp_path, head='bom = "bom.csv"\n' + above, extra=OFFERS + below))
+    book = load_study(write(tmp_path / "study.xlsx", extra=OFFER_SHEETS))
+    assert (text.grades, placeless(text.alternates), text.pilot) == (book.grades, placeless(book.alternates), book.pilot)
+    assert text.pilot.frequency_hz == (1001.5,)
+    assert text.digest == book.digest
+
+
+@pytest.mark.parametrize("form", ["xlsx", "toml"])
+def test_the_sheets_of_a_study_with_offers_are_that_study(tmp_path, form):
+    """What the result workbook carries is all text, and says the same."""
+    bom = [[*BOM[0], "Unit price"], *([*row, 0.25] for row in BOM[1:])]
+    if form == "xlsx":
+        study = load_study(write(tmp_path / "study.xlsx", extra=OFFER_SHEETS, bom=bom))
+        assert study.prices["R1"] == 0.25
+    else:
+        study = load_study(text_study(tmp_path, extra=OFFERS + PILOTS["columns"][1]))
+    sheets = dict(study_sheets(study))
+    assert {"Grades", "Alternates", "film", "Pilot"} < set(sheets)
+    again = load_study(write(tmp_path / "again.xlsx", bom=sheets["BOM"], extra={n: sheets[n] for n in OFFER_SHEETS}))
+    assert (again.grades, again.prices) == (study.grades, study.prices)
+    assert placeless(again.alternates) == placeless(study.alternates)
+    assert again.digest == study.digest
 
 
 def test_the_sheets_of_a_study_are_that_study(tmp_path):
