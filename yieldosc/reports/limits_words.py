@@ -91,7 +91,7 @@ def _headline(r: LimitsResult) -> str:
 def ppm(share: float) -> str:
     """A share in ppm, three digits."""
     value = share * 1e6
-    return f"{value:,.0f} ppm" if value >= 1000 else "below 0.1 ppm" if value < 0.1 else f"{value:.3g} ppm"
+    return f"{value:,.0f} ppm" if value >= 1000 else "0 ppm" if value == 0 else "below 0.1 ppm" if value < 0.1 else f"{value:.3g} ppm"
 
 
 def _next_steps(r: LimitsResult) -> Iterator[str]:
@@ -167,7 +167,7 @@ def _rates(r: LimitsResult) -> Section:
         title="What these limits do",
         note=f"bad: fails at any corner or end of life; accepted: starts and reads {scale.text(r.chosen.low_hz)} to "
         f"{scale.text(r.chosen.high_hz)}; {r.units:,} fresh units",
-        columns=(("rate", ""), ("meaning", ""), ("estimate and interval", "right")), rows=rows, key="rates",
+        columns=(("rate", ""), ("meaning", ""), ("estimate", "right")), rows=rows, key="rates",
     )  # fmt: skip
 
 
@@ -197,8 +197,7 @@ def _trade(r: LimitsResult) -> Section:
 
 
 def _ppm_cell(estimate: Estimate) -> Cell:
-    shown = f"{estimate.estimate * 1e6:,.3g}" if estimate.estimate * 1e6 < 1000 else f"{estimate.estimate * 1e6:,.0f}"
-    most = f"{estimate.high * 1e6:,.3g}" if estimate.high * 1e6 < 1000 else f"{estimate.high * 1e6:,.0f}"
+    shown, most = (ppm(share).removesuffix(" ppm") for share in (estimate.estimate, estimate.high))
     return Cell(f"{shown} (≤ {most})", estimate.estimate * 1e6, PPM)
 
 

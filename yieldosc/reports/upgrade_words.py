@@ -6,7 +6,7 @@ import math
 from collections.abc import Iterator
 
 from yieldosc.quantities import format_quantity
-from yieldosc.reports.amounts import bare_percent, listed, points_text, signed
+from yieldosc.reports.amounts import MINUS, bare_percent, listed, points_text, signed
 from yieldosc.reports.cautions import APPROVAL, REVISIONS, SAFETY
 from yieldosc.reports.decision import PERCENT, Cell, Decision, Section, number_cell, points_cell, words, yield_cell
 from yieldosc.reports.requirements import percent
@@ -98,8 +98,8 @@ def _cost_note(r: UpgradeResult) -> str:
     if failed is None:
         note += "; no cost of a failed unit is given, so scrap costs its parts only"
     if build is not None and r.chosen is not None and r.chosen.cost_per_good_unit and r.current_cost_per_good_unit:
-        saved = (r.current_cost_per_good_unit - r.chosen.cost_per_good_unit) * build
-        note += f"; over {build:,.0f} good units {signed(f'{-saved:,.0f}')}"
+        change = (r.chosen.cost_per_good_unit - r.current_cost_per_good_unit) * build
+        note += f"; over {build:,.0f} good units {f'{change:+,.0f}'.replace('-', MINUS)}"
     return note
 
 

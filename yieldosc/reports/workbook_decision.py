@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+import math
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 from openpyxl import Workbook
+from openpyxl.chart import BarChart, ScatterChart
 
 from yieldosc.reports.decision import Cell, Decision, Section
-from yieldosc.reports.workbook_page import Page, Value
+from yieldosc.reports.workbook_page import ROW_CM, Page, Value
 from yieldosc.studies.results import Provenance
+
+TEXT_WIDTH = 100  # characters of a page that holds sentences alone
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,29 +26,40 @@ class Placed:
 
 
 def decision_pages(
-    book: Workbook, decision: Decision, sheets: Sequence[tuple[str, Sequence[str]]]
-) -> Mapping[str, Placed]:
+    book: Workbook,
+    decision: Decision,
+    sheets: Sequence[tuple[str, Sequence[str]]],
+    charts: Mapping[str, Callable[[Placed], None]] | None = None,
+) -> None:
     """sheets: name and the keys of the sections on it, in order; the first sheet also carries the decision itself.
-    Returns where each table stands, so that charts can be put below it; every page is finished but for that."""
+    charts: by the key of a section, what draws a chart below its table."""
     by_key = {section.key: section for section in decision.sections}
-    placed: dict[str, Placed] = {}
     for number, (name, keys) in enumerate(sheets):
         sections = [by_key[key] for key in keys if key in by_key and (by_key[key].rows or by_key[key].sentences)]
         if number and not sections:
             continue
-        page = Page.new(book, name, decision.title if number == 0 else sections[0].title, decision.stamp)
+        page = Page.new(book, name, decision.title if number == 0 else name, decision.stamp)
         if number == 0:
             _head(page, decision)
         for section in sections:
             table = _section(page, section)
-            if table is not None:
-                placed[section.key] = Placed(page, *table)
+            if table is not None and section.key in (charts or {}):
+                (charts or {})[section.key](Placed(page, *table))
+        if not page.widths:
+            page.widths[1] = TEXT_WIDTH
         page.finish()
-    return placed
+
+
+def add_chart(page: Page, chart: BarChart | ScatterChart) -> None:
+    """Below what stands on the page, as wide as its tables; later text goes below the chart."""
+    chart.width = page.width_cm
+    page.sheet.add_chart(chart, f"A{page.row}")
+    page.row += math.ceil(chart.height / ROW_CM) + 1
 
 
 def _head(page: Page, decision: Decision) -> None:
-    page.text(decision.words, size=14, bold=True)
+    page.text(decision.words, size=12, bold=True)
+    page.sentences.append(page.row - 1)
     page.sentence(decision.headline)
     page.row += 1
     if decision.facts:
@@ -76,7 +91,7 @@ def _spread(section: Section) -> tuple[list[str], list[list[Value]], list[str | 
     for c, (name, _) in enumerate(section.columns):
         cells = [row[c] for row in section.rows]
         numbered = any(cell.number is not None for cell in cells)
-        both = numbered and any("(" in cell.text or "below" in cell.text or "above" in cell.text for cell in cells)
+        both = numbered and any("(" in cell.text for cell in cells)
         headings += [name, f"{name}, interval"] if both else [name]
         number_format = next((cell.number_format for cell in cells if cell.number_format), None)
         formats += [number_format, None] if both else [number_format]
@@ -86,7 +101,10 @@ def _spread(section: Section) -> tuple[list[str], list[list[Value]], list[str | 
 
 
 def _values(cell: Cell, both: bool) -> list[Value]:
-    first: Value = cell.text if cell.number is None else cell.number
+    bound = cell.text.startswith(("above", "below"))  # a bound alone is no number
+    first: Value = cell.text if cell.number is None or bound else cell.number
+    if bound:
+        return [first, ""] if both else [first]
     return [first, cell.text if cell.number is not None else ""] if both else [first]
 
 

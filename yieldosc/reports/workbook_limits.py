@@ -8,13 +8,13 @@ from openpyxl.utils import get_column_letter
 
 from yieldosc.reports.limits_words import limits_page
 from yieldosc.reports.workbook_charts import BLUE, ORANGE, add_line, lines, span
-from yieldosc.reports.workbook_decision import Placed, decision_pages, provenance_page
+from yieldosc.reports.workbook_decision import Placed, add_chart, decision_pages, provenance_page
 from yieldosc.reports.workbook_inputs import contract_sheets
 from yieldosc.studies.limits.results import LimitsResult
 
 SHEETS = (
-    ("Test limits", ("steps", "rates", "open", "cautions")),
-    ("Trade", ("trade", "method")),
+    ("Test limits", ("steps", "rates", "method", "open", "cautions")),
+    ("Trade", ("trade",)),
     ("Series resistance", ("resistance",)),
     ("Trim", ("trim",)),
 )
@@ -26,11 +26,7 @@ def limits_workbook(r: LimitsResult) -> Workbook:
     book.remove(book.worksheets[0])
     book.properties.title = "Factory test limits, escapes and false rejects"
     book.properties.creator = f"yieldosc {r.provenance.versions.get('yieldosc', '')}".strip()
-    placed = decision_pages(book, limits_page(r), SHEETS)
-    if "trade" in placed:
-        _trade_chart(placed["trade"])
-    if "trim" in placed and r.trim is not None:
-        _trim_chart(placed["trim"])
+    decision_pages(book, limits_page(r), SHEETS, {"trade": _trade_chart, "trim": _trim_chart})
     provenance_page(book, r.provenance, (("Units that chose, and fresh units", f"{r.units:,} each"),))
     contract_sheets(book, r.study)
     return book
@@ -49,8 +45,7 @@ def _trade_chart(at: Placed) -> None:
     )  # fmt: skip
     span(chart, *([float(sheet.cell(r, c).value or 0) for r in rows] for c in (x, y)))  # type: ignore[arg-type]
     chart.legend = None
-    chart.width = at.page.width_cm
-    sheet.add_chart(chart, f"A{at.page.row + 1}")
+    add_chart(at.page, chart)
 
 
 def _trim_chart(at: Placed) -> None:
@@ -68,6 +63,6 @@ def _trim_chart(at: Placed) -> None:
     ):  # fmt: skip
         y = Reference(sheet, min_col=column, min_row=at.first, max_row=at.last)
         add_line(chart, name, x, y, colour, dashed=dashed, marks=True)
-    chart.width = at.page.width_cm
     sheet.column_dimensions[get_column_letter(number)].width = 3
-    sheet.add_chart(chart, f"A{at.page.row + 1}")
+    at.page.break_here()
+    add_chart(at.page, chart)

@@ -7,16 +7,15 @@ from openpyxl.chart import Reference
 
 from yieldosc.reports.upgrade_words import upgrade_page
 from yieldosc.reports.workbook_charts import bars
-from yieldosc.reports.workbook_decision import Placed, decision_pages, provenance_page
+from yieldosc.reports.workbook_decision import Placed, add_chart, decision_pages, provenance_page
 from yieldosc.reports.workbook_inputs import contract_sheets
-from yieldosc.reports.workbook_page import ROW_CM
 from yieldosc.studies.upgrade.results import UpgradeResult
 
 SHEETS = (
-    ("Purchase", ("steps", "sets", "open", "cautions")),
+    ("Purchase", ("steps", "open", "cautions")),
+    ("Sets", ("sets", "search")),
     ("Single grades", ("singles",)),
     ("Nominal values", ("recentre",)),
-    ("Search", ("search",)),
 )
 MOST_BARS = 30
 
@@ -27,9 +26,7 @@ def upgrade_workbook(r: UpgradeResult) -> Workbook:
     book.remove(book.worksheets[0])
     book.properties.title = "Grades, their yield and their price"
     book.properties.creator = f"yieldosc {r.provenance.versions.get('yieldosc', '')}".strip()
-    placed = decision_pages(book, upgrade_page(r), SHEETS)
-    if "singles" in placed:
-        _chart(placed["singles"], r)
+    decision_pages(book, upgrade_page(r), SHEETS, {"singles": _chart})
     units = (
         ("Units that chose, and fresh units", f"{r.confirm_units:,} each"), ("Units of single grades", f"{r.units:,}"),
     )  # fmt: skip
@@ -38,7 +35,7 @@ def upgrade_workbook(r: UpgradeResult) -> Workbook:
     return book
 
 
-def _chart(at: Placed, r: UpgradeResult) -> None:
+def _chart(at: Placed) -> None:
     """Yield of every single grade, best first."""
     sheet, last = at.page.sheet, min(at.last, at.first + MOST_BARS - 1)
     chart = bars(
@@ -46,6 +43,6 @@ def _chart(at: Placed, r: UpgradeResult) -> None:
         names=Reference(sheet, min_col=1, min_row=at.first, max_row=last),
         values=[Reference(sheet, min_col=2, min_row=at.first - 1, max_row=last)], number_format="0.0%",
     )  # fmt: skip
-    chart.width, chart.height = at.page.width_cm, max(7.0, 0.55 * (last - at.first + 3))
-    sheet.add_chart(chart, f"A{at.page.row + 1}")
-    at.page.row += round(chart.height / ROW_CM) + 2
+    chart.y_axis.scaling.max = 1.0
+    chart.height = max(7.0, 0.55 * (last - at.first + 3))
+    add_chart(at.page, chart)

@@ -127,6 +127,9 @@ class Search:
             goods.append(good)
         bound = np.maximum.reduce(bounds)
         bound[low_hz[:, None] >= high_hz[None, :]] = np.inf
+        # a reading outside the specification is never accepted, however the trade would come out
+        bound[low_hz < self.limits_hz[0] * (1 - EVEN), :] = np.inf
+        bound[:, high_hz > self.limits_hz[1] * (1 + EVEN)] = np.inf
         return Pairs(low_hz, high_hz, bound, np.minimum.reduce(goods))
 
     def _at_bias(self, low_hz: Array, high_hz: Array) -> tuple[Array, Array]:
