@@ -48,13 +48,14 @@ def write(
     leave_out: Sequence[str] = (),
     percent: Sequence[tuple[str, str]] = (),
     rows: Sequence[tuple[str, object]] = (),
+    base: Mapping[str, Mapping[str, object]] = ROLES,
 ) -> Path:
-    """A workbook at `path`. design, roles: changes (None takes the item or role away); rows: further Design rows;
-    percent: (sheet, cell) whose number format is percent."""
+    """A workbook at `path`. design, roles: changes (None takes the item or role away) of DESIGN and of `base`;
+    rows: further Design rows; percent: (sheet, cell) whose number format is percent."""
     book = Workbook()
     book.remove(book.active)
     items = {**DESIGN, **(design or {})}
-    table = {**ROLES, **{k: None if v is None else {**ROLES.get(k, {}), **v} for k, v in (roles or {}).items()}}
+    table = {**base, **{k: None if v is None else {**base.get(k, {}), **v} for k, v in (roles or {}).items()}}
     sheets: dict[str, Sequence[Sequence[object]]] = {
         "BOM": bom or BOM,
         "Design": [
