@@ -263,9 +263,10 @@ SMALL_CAPACITOR_LETTERS_PF = {"B": 0.1, "C": 0.25, "D": 0.5, "F": 1.0, "G": 2.0}
 SMALL_CAPACITOR_F = 10e-12
 
 _PLUS_MINUS = re.compile(r"\+\s?/?\s?-|-\s?/\s?\+|±")
+_SIZE = r"(?:\d+(?:[.,]\d+)*|[.,]\d+)"  # a dot or a comma belongs to it only before a figure: "-3..+1 %"
 _TWO_SIDES = re.compile(
-    r"(?P<one>[+-]\s?[\d.,]+)\s?(?P<unit_one>[^\d\s+\-/.,;…]*)\s?(?:/|,|;|…|\.\.\.?|to)?\s?"
-    r"(?P<two>[+-]\s?[\d.,]+)\s?(?P<unit_two>\S.*)?"
+    rf"(?P<one>[+-]\s?{_SIZE})\s?(?P<unit_one>[^\d\s+\-/.,;…]*?)\s?(?:/|,|;|…|\.\.\.?|to)?\s?"
+    rf"(?P<two>[+-]\s?{_SIZE})\s?(?P<unit_two>\S.*)?"
 )
 
 
