@@ -15,8 +15,10 @@ from yieldosc.reports.amounts import (
     share_text,
     upper_text,
 )
-from yieldosc.reports.findings import Summary, summarise
+from yieldosc.reports.console_decision import print_section
 from yieldosc.reports.console_knowledge import print_knowledge
+from yieldosc.reports.extra_words import extra_sections
+from yieldosc.reports.findings import Summary, summarise
 from yieldosc.reports.temperatures import caption, temperature_lines
 from yieldosc.reports.terminal import hanging, heading, line, one_line, plain_table
 from yieldosc.sheets.text_guard import printable
@@ -50,7 +52,10 @@ def print_assessment(a: Assessment, console: Console) -> None:
     _rivals(a, console)
     print_knowledge(a, console)
     _grades(a, console)
+    for section in extra_sections(a):
+        print_section(section, console)
     _sentences("What decides it", summary.deciding, "•", console)
+    _sentences("Capability and demonstration", summary.capability, "•", console)
     _sentences("What to do next", summary.next_steps, "→", console)
     _sentences("Open points", (*summary.open_points, summary.pedigrees), "?", console)
     _input_notes(a, console)

@@ -24,7 +24,7 @@ def print_decision(decision: Decision, console: Console) -> None:
         if note:
             hanging(console, "", note, indent=wide + 1, style="dim")
     for section in decision.sections:
-        _section(section, console)
+        print_section(section, console)
 
 
 def title(left: str, right: str, console: Console) -> None:
@@ -40,7 +40,8 @@ def title(left: str, right: str, console: Console) -> None:
     console.print("─" * console.width, soft_wrap=True)
 
 
-def _section(section: Section, console: Console) -> None:
+def print_section(section: Section, console: Console) -> None:
+    """A table, then its sentences."""
     if not section.rows and not section.sentences:
         return
     heading(console, section.title, section.note)

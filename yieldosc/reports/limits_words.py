@@ -91,7 +91,9 @@ def _headline(r: LimitsResult) -> str:
 def ppm(share: float) -> str:
     """A share in ppm, three digits."""
     value = share * 1e6
-    return f"{value:,.0f} ppm" if value >= 1000 else "0 ppm" if value == 0 else "below 0.1 ppm" if value < 0.1 else f"{value:.3g} ppm"
+    if 0 < value < 0.1:
+        return "below 0.1 ppm"
+    return f"{value:,.0f} ppm" if value >= 1000 else f"{value:.3g} ppm"
 
 
 def _next_steps(r: LimitsResult) -> Iterator[str]:

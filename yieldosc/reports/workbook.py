@@ -11,7 +11,10 @@ from pathlib import Path
 
 from openpyxl import Workbook
 
+from yieldosc.reports.extra_words import extra_sections
 from yieldosc.reports.findings import summarise
+from yieldosc.reports.workbook_capability import capability_sheet
+from yieldosc.reports.workbook_decision import section_page
 from yieldosc.reports.workbook_evidence import assumptions, better_grades, extremes, worst_units
 from yieldosc.reports.workbook_inputs import contract_sheets, import_findings, inputs_used, method, provenance
 from yieldosc.reports.workbook_knowledge import what_to_measure
@@ -35,6 +38,9 @@ def make_workbook(a: Assessment) -> Workbook:
     assumptions(book, a, summary)
     what_to_measure(book, a)
     better_grades(book, a)
+    capability_sheet(book, a)
+    for section in extra_sections(a):
+        section_page(book, section, section.key.capitalize())
     inputs_used(book, a)
     import_findings(book, a)
     worst_units(book, a)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from openpyxl import Workbook
 from openpyxl.chart import BarChart, ScatterChart
@@ -50,6 +50,13 @@ def decision_pages(
         page.finish()
 
 
+def section_page(book: Workbook, section: Section, name: str) -> None:
+    """One section as a sheet of its own."""
+    page = Page.new(book, name, section.title, section.note)
+    _section(page, replace(section, title="", note=""))
+    page.finish()
+
+
 def add_chart(page: Page, chart: BarChart | ScatterChart) -> None:
     """Below what stands on the page, as wide as its tables; later text goes below the chart."""
     chart.width = page.width_cm
@@ -68,7 +75,8 @@ def _head(page: Page, decision: Decision) -> None:
 
 
 def _section(page: Page, section: Section) -> tuple[int, int] | None:
-    page.text(section.title, size=12, bold=True)
+    if section.title:
+        page.text(section.title, size=12, bold=True)
     if section.note:
         page.sentence(section.note)
     placed = None

@@ -16,6 +16,7 @@ from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies import remarks
 from yieldosc.studies.declared import testing_corner
 from yieldosc.studies.estimates import LookPlan
+from yieldosc.studies.extra_remarks import extra_findings
 from yieldosc.studies.extremes import bands
 from yieldosc.studies.failure_share import failure_share
 from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_reels
@@ -101,9 +102,9 @@ def assess(
         audited=tallies.audited, disagreeing=tallies.disagreeing, exact=tallies.exact,
     )  # fmt: skip
     measured = pilot_result(study, setup, testing_corner(study), study.pilot) if study.pilot is not None else None
-    return replace(
-        _assembled(study, setup, run, plan, evidence, ratio, made), second_sources=sources, pilot=measured
-    )
+    found = _assembled(study, setup, run, plan, evidence, ratio, made)
+    findings = (*found.findings, *extra_findings(study, sources))
+    return replace(found, findings=findings, second_sources=sources, pilot=measured)
 
 
 def _plan(study: Study, units: int | None) -> LookPlan:
@@ -174,7 +175,7 @@ def _evidence(
         yields = lot_yields(setup, units_per_lot=effort.units_per_lot, workers=crew, meter=meter)
         shared = lots(yields, effort.units_per_lot, study.design.yield_target, confidence)
     sceptical = scrutinise(
-        setup, run, tried, declared_good, ranked, confidence=confidence, workers=crew, meter=meter
+        study, setup, run, tried, declared_good, ranked, confidence=confidence, workers=crew, meter=meter
     )
     return _Evidence(ranked, unranked, tried, effort.rival_units, better, corners, found, shared, outside, sceptical)
 

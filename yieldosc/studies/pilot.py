@@ -99,7 +99,7 @@ def _beyond(measured: Array, ordered: Array) -> Array:
 def _location(z: Array, alpha: float) -> PilotTest:
     n = len(z)
     p = float(2 * stats.norm.sf(abs(z.mean()) * math.sqrt(n))) if n else 1.0
-    return PilotTest(name="location", method="z test of the mean score", p_value=p, rejects=p < alpha)
+    return PilotTest(name="location", method="z test of the mean score", p_value=p, rejects=bool(p < alpha))
 
 
 def _spread(z: Array, alpha: float) -> PilotTest:
@@ -108,7 +108,7 @@ def _spread(z: Array, alpha: float) -> PilotTest:
         return PilotTest(name="spread", method="χ² test of the variance", p_value=1.0, rejects=False)
     statistic = (n - 1) * float(z.var(ddof=1))
     p = 2 * min(stats.chi2.cdf(statistic, n - 1), stats.chi2.sf(statistic, n - 1))
-    return PilotTest(name="spread", method="χ² test of the variance", p_value=float(min(p, 1.0)), rejects=p < alpha)
+    return PilotTest(name="spread", method="χ² test of the variance", p_value=float(min(p, 1.0)), rejects=bool(p < alpha))
 
 
 def _shape(z: Array, alpha: float) -> PilotTest:
@@ -119,7 +119,7 @@ def _shape(z: Array, alpha: float) -> PilotTest:
     distance = _lilliefors(z[None, :])[0]
     null = _lilliefors(np.random.Generator(np.random.Philox(key=n)).standard_normal((4000, n)))
     p = (1 + int(np.count_nonzero(null >= distance))) / (1 + len(null))
-    return PilotTest(name="shape", method="Lilliefors' test", p_value=p, rejects=p < alpha)
+    return PilotTest(name="shape", method="Lilliefors' test", p_value=p, rejects=bool(p < alpha))
 
 
 def _lilliefors(samples: Array) -> Array:
@@ -135,7 +135,7 @@ def _starts(pilot: Pilot, silent: Estimate, alpha: float) -> PilotTest:
     """Against the upper bound of the predicted share, so that its own uncertainty does not reject it."""
     found = stats.binomtest(pilot.no_starts, pilot.boards, silent.high, alternative="greater")
     return PilotTest(
-        name="no-starts", method="exact binomial test", p_value=float(found.pvalue), rejects=found.pvalue < alpha
+        name="no-starts", method="exact binomial test", p_value=float(found.pvalue), rejects=bool(found.pvalue < alpha)
     )
 
 

@@ -16,6 +16,7 @@ from yieldosc.studies.results import (
     Ranking,
     RankLine,
 )
+from yieldosc.studies.serialise_decisions import pilot_dict
 from yieldosc.studies.serialise_scrutiny import scrutiny_dict
 
 
@@ -60,6 +61,11 @@ def assessment_dict(assessment: Assessment) -> dict[str, object]:
         "worst_units": [asdict(unit) for unit in a.worst_units],
         "wrong_modes_hz": list(a.wrong_modes_hz),
         "bench_ratio": a.bench_ratio,
+        "second_sources": [
+            {"fitted": dict(c.fitted), "yield": _estimate(c.yield_), "difference": _estimate(c.difference)}
+            for c in a.second_sources
+        ],
+        "pilot": None if a.pilot is None else pilot_dict(a.pilot),
         "findings": [finding.to_dict() for finding in a.findings],
         "cautions": list(a.cautions),
         # The number of workers is no part of the result: documents from any number of them are equal but for times.
