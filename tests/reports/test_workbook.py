@@ -21,8 +21,8 @@ from yieldosc.studies.serialise import assessment_dict
 
 EXAMPLES = Path(__file__).parents[2] / "bom_examples"
 OWN = [
-    "Sign-off", "Leading parts", "Temperatures", "Frequency spread", "Extremes", "Assumptions", "What to measure", "Better grades",
-    "Inputs used", "Import findings", "Worst units", "Method", "Provenance",
+    "Sign-off", "Leading parts", "Temperatures", "Frequency spread", "Extremes", "Assumptions", "What to measure",
+    "Better grades", "Capability", "Inputs used", "Import findings", "Worst units", "Method", "Provenance",
 ]  # fmt: skip
 
 

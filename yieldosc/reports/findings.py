@@ -6,8 +6,10 @@ from dataclasses import dataclass
 
 from yieldosc.reports.advice import next_steps, open_points, pedigree_sentence
 from yieldosc.reports.amounts import bare_percent, range_text
+from yieldosc.reports.capability_words import capability_sentences
 from yieldosc.reports.cautions import cautions
 from yieldosc.reports.deciding import deciding, leading
+from yieldosc.reports.knowledge_words import spread_sentence
 from yieldosc.reports.requirements import RequirementLine, percent, requirement_lines
 from yieldosc.studies.digits import percent_text
 from yieldosc.studies.results import Assessment
@@ -31,6 +33,8 @@ class Summary:
     requirements: tuple[RequirementLine, ...]
     deciding: tuple[str, ...]
     leading: tuple[str, ...]  # of `deciding`, the sentences on parts
+    spread: str  # which assumption the yield hangs on
+    capability: tuple[str, ...]
     next_steps: tuple[str, ...]
     open_points: tuple[str, ...]
     pedigrees: str
@@ -52,6 +56,8 @@ def summarise(a: Assessment) -> Summary:
         requirements=requirement_lines(a),
         deciding=deciding(a),
         leading=leading(a),
+        spread=spread_sentence(a),
+        capability=capability_sentences(a),
         next_steps=next_steps(a),
         open_points=open_points(a),
         pedigrees=pedigree_sentence(a),

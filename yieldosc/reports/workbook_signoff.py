@@ -32,6 +32,9 @@ def sign_off(book: Workbook, a: Assessment, summary: Summary) -> None:
     page.section("Leading parts")
     for sentence in summary.leading:
         page.sentence(sentence)
+    if summary.spread:
+        page.section("What the yield hangs on")
+        page.sentence(summary.spread)
     page.section("What to do next")
     for step in summary.next_steps:
         page.sentence(f"•  {step}")

@@ -8,6 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.studies.bench_list import bench_list
+from yieldosc.studies.capability import capability, demonstrations, pilots
 from yieldosc.studies.knowledge import is_device_value, knowledge
 from yieldosc.studies.measured_lots import measured_lots, measured_uncertainty
 from yieldosc.studies.parallel import Workers
@@ -18,11 +19,13 @@ from yieldosc.studies.scrutiny import Scrutiny
 from yieldosc.studies.temperature_check import temperature_check
 from yieldosc.studies.tighter import leading_parts
 from yieldosc.studies.yields import YieldRun
+from yieldosc.study import Study
 
 IDLE_SHARE = 0.01  # of both variances: a device below it is not tried value by value
 
 
 def scrutinise(
+    study: Study,
     setup: Setup,
     run: YieldRun,
     tried: Sequence[RivalResult],
@@ -40,12 +43,16 @@ def scrutinise(
         meter=meter,
     )  # fmt: skip
     gathered, estimate = run.gathered, run.estimate
+    found_capability = capability(gathered, setup, confidence)
     return Scrutiny(
         knowledge=found,
         bench_list=bench_list(found, declared, leading_parts(rankings), confidence=confidence),
         temperatures=temperature_check(
             setup, gathered.near, gathered.units, gathered.flips, (estimate.high - estimate.low) / 2, confidence
         ),
+        capability=found_capability,
+        pilots=pilots(found_capability, confidence),
+        demonstrations=demonstrations(study.design.yield_target, confidence),
         measured=measured_lots(declared, confidence),
         measured_uncertainty=measured_uncertainty(setup, estimate.estimate, workers=workers, meter=meter),
     )

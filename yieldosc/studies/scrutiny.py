@@ -139,16 +139,24 @@ class MeasuredUncertainty:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Capability:
-    """Predicted percentile capability at one corner; each quantile with its order-statistic interval where the number
-    of units carries one. An index without a limit on its side is None."""
+    """Predicted percentile capability of one output at the corner where it is least, from the units that have a gain.
+
+    Quantiles with order-statistic intervals, from whose ends the bounds of Ppk come. `normal_ppk` is what mean and
+    standard deviation alone would say.
+    """
 
     output: Literal["frequency", "margin"]
     corner: str
     units: int
-    quantiles: tuple[Estimate, Estimate, Estimate] | None  # 0.135, 50 and 99.865 % points; None below 2,731 units
-    pp: float | None
-    ppk: Estimate | None
-    normal: bool  # quantiles and normal theory agree on the index
+    quantiles: tuple[Estimate, Estimate, Estimate]  # 0.135, 50 and 99.865 % points
+    pp: float | None  # None without limits on both sides
+    ppk: Estimate
+    normal_ppk: float
+
+    @property
+    def normal(self) -> bool:
+        """Percentiles and normal theory agree within the percentiles' own interval."""
+        return self.ppk.low <= self.normal_ppk <= self.ppk.high
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import asdict
 
 from yieldosc.studies.results import Estimate, RivalResult
-from yieldosc.studies.scrutiny import Knowledge, Scrutiny, TemperatureCheck
+from yieldosc.studies.scrutiny import Capability, Knowledge, Scrutiny, TemperatureCheck
 
 
 def scrutiny_dict(scrutiny: Scrutiny | None) -> dict[str, object]:
@@ -14,9 +14,20 @@ def scrutiny_dict(scrutiny: Scrutiny | None) -> dict[str, object]:
     return {
         "spread_by_assumption": [_knowledge(k) for k in s.knowledge],
         "bench_list": [asdict(item) for item in s.bench_list],
+        "capability": [_capability(c) for c in s.capability],
+        "pilots": [asdict(pilot) for pilot in s.pilots],
+        "demonstrations": [asdict(demonstration) for demonstration in s.demonstrations],
         "measured_lots": [asdict(lot) | {"narrow": lot.narrow, "off_centre": lot.off_centre} for lot in s.measured],
         "measured_uncertainty": None if s.measured_uncertainty is None else asdict(s.measured_uncertainty),
         "temperature_check": None if s.temperatures is None else _temperatures(s.temperatures),
+    }
+
+
+def _capability(c: Capability) -> dict[str, object]:
+    return asdict(c) | {
+        "quantiles": [q.to_dict() for q in c.quantiles],
+        "ppk": c.ppk.to_dict(),
+        "normal": c.normal,
     }
 
 

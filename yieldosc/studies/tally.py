@@ -78,6 +78,13 @@ class Histogram:
         """Counts of the inner bins."""
         return self.counts[1:-1]
 
+    def rank_bounds(self, rank: int) -> tuple[float, float]:
+        """Edges of the bin that holds the value of this rank (1 …); infinite beyond the inner bins."""
+        index = int(np.searchsorted(np.cumsum(self.counts), rank, side="left"))
+        low = -np.inf if index == 0 else self.low + self.width * (index - 1)
+        high = np.inf if index == len(self.counts) - 1 else self.low + self.width * index
+        return float(low), float(high)
+
     def quantile(self, share: float) -> float:
         """The value below which `share` of the counts lie, linear inside its bin: right to one bin width."""
         total = int(self.counts.sum())
