@@ -218,7 +218,18 @@ class ParameterMaker:
         return law
 
     def _known_cut(self, role: Role, text: str, place: Place | None) -> bool:
-        """A crystal's ppm over temperature from the BOM: an AT cut is assumed and said; any other cut is asked for."""
+        """A crystal's law from the BOM: a tuning fork by its frequency, or an AT cut by its ppm over temperature, is
+        assumed and said; any other cut is asked for."""
+        if text.startswith("fork"):
+            if text == "fork":
+                self.problems.add(
+                    "warning",
+                    "crystal-law-assumed",
+                    f"{role.name}: the BOM gives the frequency of a tuning fork and no law; its usual law is assumed; "
+                    "write the law in Roles",
+                    place,
+                )
+            return True
         if not text.startswith("AT "):
             self.problems.error(
                 "crystal-cut-unknown",

@@ -6,7 +6,7 @@ import re
 
 from yieldosc.parts.codes import class2_code
 from yieldosc.parts.parameter import Given
-from yieldosc.quantities import QuantityError, parse_tolerance, shown
+from yieldosc.quantities import QuantityError, normal, parse_tolerance, shown
 from yieldosc.sheets.cells import Amount, percent_bounds
 from yieldosc.sheets.kinds import SI_UNIT
 from yieldosc.sheets.partfacts import PartFacts, Source
@@ -113,6 +113,11 @@ def read_law(part: PartFacts, sources: list[Source], ordered: list[Source]) -> N
             return
 
 
+FORK_HZ = (10e3, 200e3)  # tuning forks are made from 10 to 200 kHz; other crystals begin above (from memory)
+_CURVATURE = re.compile(  # "-0.034 ppm/°C²", "-0.04±0.01ppm/°C^2": the square is a plain 2 after normalisation
+    r"-?\s?(?P<size>0[.,]0\d{1,3})\s?(?:±\s?(?P<spread>0[.,]0\d{1,3}))?\s?ppm\s?/\s?\(?(?:°\s?C|K|C)\)?\s?\^?2",
+    re.IGNORECASE,
+)
 _OVER = re.compile(r"range|over|temp|stab|vs")
 
 
@@ -133,10 +138,51 @@ def read_crystal(part: PartFacts, sources: list[Source], ordered: list[Source]) 
     ]
     for source, amount in resistances[:1]:
         part.esr_ohm, part.given["esr"] = amount.value, Given(amount.text, source.place)
+    fork = part.value is not None and FORK_HZ[0] <= part.value <= FORK_HZ[1]
     for source in words:
         if source.facts.ppms:
-            _crystal_ppm(part, source)
-            return
+            (_fork_ppm if fork else _crystal_ppm)(part, source)
+            break
+    if fork:
+        _fork_law(part, words)
+
+
+def _fork_ppm(part: PartFacts, source: Source) -> None:
+    """The tolerance at 25 °C; a limit over temperature is none that a parabola can keep, and is asked for."""
+    ppms = source.facts.ppms
+    room = next((p for p in ppms if not _OVER.search(p[2]) or "25" in p[2]), ppms[0])
+    size = float(f"{room[1] * 1e-6:.12g}")
+    if part.tolerance is None:
+        part.tolerance, part.given["tolerance"] = (-size, size), Given(room[0], source.place)
+    over = [p for p in ppms if p is not room or (_OVER.search(p[2]) and "25" not in p[2])]
+    if over:
+        part.remark(
+            "warning",
+            "bom-fork",
+            f"{shown(over[0][0])} seems to hold over temperature, where a tuning fork holds no such limit; "
+            f"{shown(room[0])} was read as the tolerance at 25 °C: write tolerance and law in Roles where it is "
+            "another crystal",
+            source,
+        )
+
+
+def _fork_law(part: PartFacts, words: list[Source]) -> None:
+    """A crystal of so low a frequency is a tuning fork: a parabola, whose curvature the row may state."""
+    stated = [(s, m) for s in words for m in _CURVATURE.finditer(normal(s.cell.text[:2000]))]
+    if stated:
+        source, match = stated[0]
+        spread = f" ±{match['spread'].replace(',', '.')}" if match["spread"] else ""
+        part.law = f"fork -{match['size'].replace(',', '.')}{spread} ppm/K² 25 ±5 °C"
+        part.given["temperature_law"] = Given(match[0], source.place)
+        return
+    part.law = "fork"
+    part.given["temperature_law"] = Given(part.given["value"].text, part.given["value"].place)
+    part.remark(
+        "note",
+        "bom-fork",
+        f"{shown(part.given['value'].text)} is the frequency of a tuning fork, whose usual law (fork) is assumed; "
+        "write another in Roles where it is none",
+    )
 
 
 def _crystal_ppm(part: PartFacts, source: Source) -> None:

@@ -11,6 +11,7 @@ from yieldosc.parts.codes import class1_code, class2_code
 from yieldosc.parts.parameter import Given, Kind
 from yieldosc.quantities import QuantityError, format_quantity, parse_quantity, shown
 from yieldosc.sheets.cells import Amount
+from yieldosc.sheets.cross_checks import check_footprint, check_link, check_thermistor
 from yieldosc.sheets.headings import Meaning
 from yieldosc.sheets.kinds import KIND_OF_UNIT, SI_UNIT, kind_from_letters, kind_from_words, letters_of, settled_kind
 from yieldosc.sheets.partfacts import VALUED, PartFacts, Source, close
@@ -50,6 +51,8 @@ def understand(designator: str, sources: list[Source]) -> PartFacts:
     part.kind = _kind(designator, ordered, part)
     numbers = [s for s in sources if s.meaning == "part_number" and not s.cell.blank]
     part.part_number = numbers[0].cell.text.strip() if numbers else None
+    check_footprint(designator, part, sources)
+    check_thermistor(designator, part, ordered)
     if part.kind not in VALUED:
         return part
     _value(part, ordered)
@@ -58,6 +61,7 @@ def understand(designator: str, sources: list[Source]) -> PartFacts:
     if part.kind == "crystal":
         read_crystal(part, sources, ordered)
     _decode(part, ordered)
+    check_link(part, sources)
     return part
 
 
