@@ -12,7 +12,7 @@ from yieldosc.parts.shapes import Normal
 from yieldosc.population import Bench, Population
 from yieldosc.solver.solution import Solution, Status
 from yieldosc.studies.box import Box, box_at, search
-from yieldosc.studies.extremes import bands
+from yieldosc.studies.extremes import bands, root_sum_square_ends
 from yieldosc.studies.gather import layouts
 from yieldosc.studies.run import Setup
 from yieldosc.studies.yields import corner_results, run_units
@@ -25,7 +25,7 @@ def found(study, evaluator, units=20_000):
     setup = Setup.of(study, evaluator, seed=1)
     bins = layouts(setup, units)
     results = corner_results(run_units(setup, bins, 0, units), setup.corners, 0.95)
-    return bands(setup.population, setup.bench, results)
+    return bands(setup.population, setup.bench, results, streams=setup.streams, units=units)
 
 
 def band(study, evaluator, output="frequency_hz"):
@@ -89,19 +89,47 @@ def test_more_roles_than_corners_can_try_are_searched():
     def outputs(values):
         return (weights[:, None] * np.array([values[r] for r in roles])).sum(axis=0)[None]
 
-    low, high, method = search(box, outputs)
-    assert low[0] == pytest.approx(np.minimum(-weights, 2 * weights).sum())
-    assert high[0] == pytest.approx(np.maximum(-weights, 2 * weights).sum())
-    assert method == "coordinate search over the box of 20 roles from 64 starting points"
+    made = search(box, outputs)
+    assert made.low[0] == pytest.approx(np.minimum(-weights, 2 * weights).sum())
+    assert made.high[0] == pytest.approx(np.maximum(-weights, 2 * weights).sum())
+    assert made.gap[0] == 0  # the finest step gained nothing
+    assert made.method == (
+        "64 corners of the box of 20 roles and 64 points inside, the best refined by coordinate search to 1/256 of the box"
+    )
 
 
 def test_an_extreme_inside_the_box_is_found():
     box = Box({"x": -1.0, "y": -1.0}, {"x": 1.0, "y": 1.0})
-    low, high, _ = search(box, lambda v: (1 - v["x"] ** 2 - v["y"] ** 2)[None])
-    assert (low[0], high[0]) == (-1.0, 1.0)
+    made = search(box, lambda v: (1 - v["x"] ** 2 - v["y"] ** 2)[None])
+    assert (made.low[0], made.high[0]) == (-1.0, 1.0)
+    assert made.method.startswith("all 4 corners of the box of 2 roles and 64 points inside")
 
 
-def test_monte_carlo_outside_the_extremes_is_a_finding(make_study):
+def test_an_extreme_off_every_grid_is_found_to_the_stated_step():
+    # greatest value 1 at x = 0.3137, y = −0.7219; steps of 1/256 of a box of width 2: off by at most 1/256 in each
+    box = Box({"x": -1.0, "y": -1.0}, {"x": 1.0, "y": 1.0})
+    made = search(box, lambda v: (1 - (v["x"] - 0.3137) ** 2 - (v["y"] + 0.7219) ** 2)[None])
+    assert 1 - 2 / 256**2 <= made.high[0] <= 1
+    assert 0 <= made.gap[0] < 1e-3
+
+
+def test_a_ridge_between_two_gains_is_climbed():
+    # a gain window: the margin is the smaller of two ratios, greatest (1.5) on a ridge inside the box, at a = b
+    box = Box({"a": 0.5, "b": 0.5}, {"a": 2.0, "b": 2.0})
+    made = search(box, lambda v: np.minimum(v["a"] / v["b"], 2.25 * v["b"] / v["a"])[None])
+    assert made.high[0] == pytest.approx(1.5, rel=0.01)
+    assert made.low[0] == pytest.approx(0.25, rel=1e-12)
+
+
+def test_a_skewed_margin_has_a_band_above_zero():
+    # ln-normal: the ends are exact quantiles e^(±3 s) of the median (closed form); the plain band passes zero
+    low, high = root_sum_square_ends(2.0, 1.0, "startup_margin")
+    assert (low, high) == pytest.approx((2 * np.exp(-1.5), 2 * np.exp(1.5)))
+    assert root_sum_square_ends(2.0, 1.0, "frequency_hz") == (-1.0, 5.0)
+    assert root_sum_square_ends(0.0, 1.0, "startup_margin") == (-3.0, 3.0)  # no logarithm to take
+
+
+def test_a_peak_that_the_search_misses_is_found_from_the_simulated_units(make_study):
     class Spike:
         """A narrow peak that no corner and no coarse step sees."""
 
@@ -113,8 +141,17 @@ def test_monte_carlo_outside_the_extremes_is_a_finding(make_study):
                 frequency_hz=frequency, startup_margin=2 * ones, status=np.zeros(ones.shape, dtype=np.int8)
             )
 
-    _, findings = found(make_study(), Spike())
-    assert [f.code for f in findings] == ["monte-carlo-outside-extremes"]
+    study = make_study()
+    setup = Setup.of(study, Spike(), seed=1)
+    bins = layouts(setup, 20_000)
+    results = corner_results(run_units(setup, bins, 0, 20_000), setup.corners, 0.95)
+    missed, findings = bands(setup.population, setup.bench, results)
+    assert [f.code for f in findings] == ["monte-carlo-outside-extremes"]  # without the units: a negative control
+    assert missed[0].note
+    again, findings = found(study, Spike())
+    assert findings == () and again[0].note == ""
+    assert again[0].extreme[1] >= again[0].monte_carlo[1]
+    assert "again from the outermost simulated units" in again[0].method
 
 
 def test_no_margin_band_without_a_start_up_question(make_study, ideal_wien):

@@ -30,7 +30,7 @@ def extremes(book: Workbook, a: Assessment) -> None:
         "is a bound, and only where every shape is bounded.", landscape=False,
     )  # fmt: skip
     headings = ("Temperature", "Extreme, low", "Extreme, high", "Root-sum-square, low", "Root-sum-square, high",
-                "Simulated, low", "Simulated, high", "Remark")  # fmt: skip
+                "Simulated, low", "Simulated, high", "Last gain of the search", "Remark")  # fmt: skip
     deviation = with_unit(scale.decimals, scale.unit, signed=True)
     for output, title, number_format in (
         ("frequency_hz", "Frequency", deviation), ("startup_margin", "Start-up margin", "0.000"),
@@ -41,8 +41,10 @@ def extremes(book: Workbook, a: Assessment) -> None:
         page.text(title, size=12, bold=True)
         for method in dict.fromkeys(band.method for band in chosen):
             page.sentence(f"Extreme: {method}.")
+        page.sentence("The last gain is what the finest step still added to an end. It is evidence, not a certificate: an "
+                      "extreme that the search did not come near would not show in it.")  # fmt: skip
         rows = [_band_row(band, scale) for band in chosen]
-        page.table(headings, rows, ('0.##" °C"', *(number_format,) * 6, None))
+        page.table(headings, rows, ('0.##" °C"', *(number_format,) * 7, None))
     page.finish()
 
 
@@ -52,7 +54,10 @@ def _band_row(band: Band, scale: Deviation) -> list[Value]:
             return ["open", "open"]
         return [scale.value(v) for v in bounds] if band.output == "frequency_hz" else list(bounds)
 
-    return [band.temperature_c, *pair(band.extreme), *pair(band.rss), *pair(band.monte_carlo), band.note]
+    gap = band.gap
+    if gap is not None and band.output == "frequency_hz":
+        gap = gap / scale.target_hz * scale.scale
+    return [band.temperature_c, *pair(band.extreme), *pair(band.rss), *pair(band.monte_carlo), gap, band.note]
 
 
 def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:

@@ -169,7 +169,9 @@ def _evidence(
     better = tighter(
         setup, leading_parts(ranked), declared_good, confidence=confidence, workers=crew, meter=meter
     )
-    found, outside = bands(setup.population, setup.bench, corners)
+    found, outside = bands(
+        setup.population, setup.bench, corners, streams=setup.streams, units=run.gathered.units
+    )
     shared = None
     if shares_reels(setup):
         yields = lot_yields(setup, units_per_lot=effort.units_per_lot, workers=crew, meter=meter)

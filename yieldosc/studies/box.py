@@ -14,13 +14,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.population import Block, Draws, Population
+from yieldosc.studies.climb import Climber, climb
 from yieldosc.study import Corner
 
 Array = NDArray[np.float64]
 Outputs = Callable[[dict[str, Array]], Array]  # role → (n,) to outputs (k, n)
 MOST_CORNERS = 2**12
-STARTS = 64  # random starting points of the search in boxes with more corners
-STEPS = (0.0, 0.25, 0.5, 0.75, 1.0)  # positions tried along each dimension while the search refines
+STARTS = 64  # points inside; and corners tried in boxes with more of them
+INSIDE = 2  # of the points inside, so many climb for each end of each output
 
 
 @dataclass(frozen=True)
@@ -33,6 +34,12 @@ class Box:
     @property
     def free(self) -> tuple[str, ...]:
         return tuple(role for role in self.low if self.high[role] > self.low[role])
+
+    def positions(self, values: Array) -> Array:
+        """Positions (d, n) in [0, 1] of values (d, n) along `free`."""
+        low = np.array([self.low[role] for role in self.free])[:, None]
+        high = np.array([self.high[role] for role in self.free])[:, None]
+        return np.clip((values - low) / (high - low), 0.0, 1.0)
 
     def at(self, positions: Array) -> dict[str, Array]:
         """Values of n points; positions (d, n) in [0, 1] along `free`."""
@@ -64,80 +71,64 @@ def box_at(population: Population, corner: Corner) -> Box:
     return Box(low, high)
 
 
-def search(box: Box, outputs: Outputs, *, seed_positions: Array | None = None) -> tuple[Array, Array, str]:
-    """Lowest and highest (k,) of each output over the box, and how they were found.
+@dataclass(frozen=True, slots=True)
+class Extremes:
+    """Lowest and highest (k,) of each output; gap (k,): what the finest step of the search still added to either end.
 
-    Cost: 2^d evaluations while d ≤ 12, then coordinate search from the best points: 5·d per climber and step, all
-    climbers of all outputs in one call.
+    A gap of zero does not certify an extreme: it says that this search has nothing more to gain nearby.
+    """
+
+    low: Array
+    high: Array
+    gap: Array
+    method: str
+
+
+def search(box: Box, outputs: Outputs, *, seeds: Array | None = None) -> Extremes:
+    """Extremes of each output over the box, and how they were found. seeds: further starting points (d, n).
+
+    Starts from all 2^d corners while d ≤ 12, else from 64 of them and from 64 points inside; the best of each climb by
+    coordinates, at last in steps of 1/256 of the box.
     """
     d = len(box.free)
     every = 2**d <= MOST_CORNERS
-    if every:
-        starts = np.array(list(product((0.0, 1.0), repeat=d)), dtype=float).T
-        method = f"all {starts.shape[1]} corners of the box of {d} roles, refined by coordinate search"
-    else:
-        generator = np.random.Generator(np.random.Philox(key=d))
-        starts = generator.integers(0, 2, size=(d, STARTS)).astype(float)
-        method = f"coordinate search over the box of {d} roles from {STARTS} starting points"
-    if seed_positions is not None:
-        starts = np.concatenate([starts, seed_positions], axis=1)
-    found = outputs(box.at(starts))
+    generator = np.random.Generator(np.random.Philox(key=d))
+    corners = (
+        np.array(list(product((0.0, 1.0), repeat=d)), dtype=float).T
+        if every
+        else generator.integers(0, 2, size=(d, STARTS)).astype(float)
+    )
+    inside = generator.random((d, STARTS if d else 0))
+    starts = np.concatenate([corners, inside] if seeds is None else [corners, inside, seeds], axis=1)
+    count = corners.shape[1]
+    method = (
+        f"all {count} corners of the box of {d} roles" if every else f"{STARTS} corners of the box of {d} roles"
+    ) + f" and {STARTS} points inside, the best refined by coordinate search to 1/256 of the box"
+
+    def function(positions: Array) -> Array:
+        return outputs(box.at(positions))
+
+    found = function(starts)
     goals = [(k, sign) for k in range(len(found)) for sign in (-1.0, 1.0)]
-    climbers = [Climber(k, sign, starts[:, i]) for k, sign in goals for i in _best(sign * found[k], 1 if every else 8)]
-    reached = _climb(box, outputs, climbers)
-    pairs = list(zip(reached, climbers, strict=True))
-    best = {goal: max(value for value, c in pairs if (c.output, c.sign) == goal) for goal in goals}
-    lows = [-best[k, -1.0] for k in range(len(found))]
-    highs = [best[k, 1.0] for k in range(len(found))]
-    return np.array(lows), np.array(highs), method
+    climbers = [
+        Climber(k, sign, starts[:, i]) for k, sign in goals for i in _chosen(sign * found[k], count, 1 if every else 8)
+    ]
+    reached = climb(function, climbers)
+    ends: dict[tuple[int, float], tuple[float, float]] = {}
+    for value, last, c in zip(reached.values, reached.last, climbers, strict=True):
+        ends[c.output, c.sign] = max(ends.get((c.output, c.sign), (-np.inf, 0.0)), (float(value), float(last)))
+    rows = range(len(found))
+    return Extremes(
+        low=np.array([-ends[k, -1.0][0] for k in rows]),
+        high=np.array([ends[k, 1.0][0] for k in rows]),
+        gap=np.array([max(ends[k, -1.0][1], ends[k, 1.0][1]) for k in rows]),
+        method=method,
+    )
 
 
-@dataclass(frozen=True, slots=True)
-class Climber:
-    """Raises sign · output k from a starting point (d,)."""
-
-    output: int
-    sign: float
-    start: Array
-
-
-def _best(values: Array, count: int) -> NDArray[np.intp]:
-    """Columns of the largest values."""
-    return np.argsort(-np.where(np.isnan(values), -np.inf, values), kind="stable")[:count]
-
-
-def _climb(box: Box, outputs: Outputs, climbers: list[Climber]) -> Array:
-    """What each climber reaches (m,). A step moves every coordinate to its own best position; where that is no gain,
-    only the coordinate that gains most."""
-    points = np.stack([c.start for c in climbers], axis=1)
-    rows = np.array([c.output for c in climbers])
-    signs = np.array([c.sign for c in climbers])
-
-    def score(positions: Array, per: int) -> Array:
-        """(per, m) of positions (d, per · m), the climber running fastest."""
-        found = outputs(box.at(positions)).reshape(-1, per, len(climbers))
-        values = signs * found[rows, :, np.arange(len(climbers))].T
-        return np.where(np.isnan(values), -np.inf, values)
-
-    d, m = points.shape
-    values: Array = score(points, 1)[0]
-    if not d:
-        return values
-    moving = np.ones(m, dtype=bool)
-    while moving.any():
-        trial = np.tile(points, (1, d * len(STEPS))).reshape(d, d, len(STEPS), m)
-        trial[np.arange(d), np.arange(d)] = np.array(STEPS)[:, None]
-        tried = score(trial.reshape(d, -1), d * len(STEPS)).reshape(d, len(STEPS), m)
-        place = np.argmax(tried, axis=1)  # (d, m): the best position of each coordinate alone
-        alone = np.take_along_axis(tried, place[:, None, :], axis=1)[:, 0, :]
-        single = points.copy()
-        lead = np.argmax(alone, axis=0)
-        single[lead, np.arange(m)] = np.array(STEPS)[place[lead, np.arange(m)]]
-        joint = np.where(alone > values, np.array(STEPS)[place], points)
-        together = score(joint, 1)[0]
-        better_joint = together >= alone.max(axis=0)
-        reached = np.where(better_joint, together, alone.max(axis=0))
-        moving = reached > values
-        points = np.where(moving, np.where(better_joint, joint, single), points)
-        values = np.where(moving, reached, values)
-    return values
+def _chosen(values: Array, corners: int, count: int) -> list[int]:
+    """Columns to climb from: the best corners, and the best few of the points inside."""
+    ranked = np.where(np.isnan(values), -np.inf, values)
+    best = np.argsort(-ranked[:corners], kind="stable")[:count]
+    inside = corners + np.argsort(-ranked[corners:], kind="stable")[:INSIDE]
+    return [*best.tolist(), *inside.tolist()]

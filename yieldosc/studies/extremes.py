@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
@@ -10,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.errors import Finding
-from yieldosc.population import Bench, Block, Population, Variable
+from yieldosc.population import Bench, Block, Population, Streams, Variable
 from yieldosc.population.block import middle_draws
 from yieldosc.studies.box import Outputs, box_at, search
 from yieldosc.studies.results import Band, CornerResult, Distribution
@@ -21,6 +22,11 @@ Output = Literal["frequency_hz", "startup_margin"]
 OUTPUTS: tuple[Output, ...] = ("frequency_hz", "startup_margin")
 GRID = 1000  # midpoints of u over which a cause's standard deviation is taken
 SDS = 3.0  # half-width of the root-sum-square band in standard deviations
+RSS: dict[Output, str] = {
+    "frequency_hz": f"±{SDS:g} standard deviations",
+    "startup_margin": f"±{SDS:g} standard deviations of the logarithm",
+}
+PIECE = 8192  # units solved at a time when the search starts again from them
 ROUNDING = 1e-9  # relative; Monte Carlo further outside than this is reported
 
 
@@ -30,15 +36,30 @@ class _AtCorner:
     sd: Array  # (2,)
     low: Array | None
     high: Array | None
+    gap: Array | None
     method: str
 
 
 def bands(
-    population: Population, bench: Bench, corners: Sequence[CornerResult]
+    population: Population,
+    bench: Bench,
+    corners: Sequence[CornerResult],
+    *,
+    streams: Streams | None = None,
+    units: int = 0,
 ) -> tuple[tuple[Band, ...], tuple[Finding, ...]]:
-    """One band per output and temperature, over supplies and ages; findings where Monte Carlo lies outside."""
+    """One band per output and temperature, over supplies and ages; findings where Monte Carlo lies outside.
+
+    streams, units: of the run behind `corners`; where its range passes the searched extremes, the search starts again
+    from those units.
+    """
     made: list[Band] = []
     solved = {result.corner: _at_corner(population, bench, result.corner) for result in corners}
+    if streams is not None:
+        for result in corners:
+            if _passed(solved[result.corner], result):
+                seeds = _outermost(population, bench, result.corner, streams, units)
+                solved[result.corner] = _at_corner(population, bench, result.corner, seeds)
     for temperature_c in dict.fromkeys(result.corner.temperature_c for result in corners):
         here = [result for result in corners if result.corner.temperature_c == temperature_c]
         for k, output in enumerate(OUTPUTS):
@@ -57,22 +78,53 @@ def _band(
     k: int, output: Output, temperature_c: float, found: Sequence[_AtCorner], sampled: Sequence[Distribution]
 ) -> Band:
     monte_carlo = (min(d.min for d in sampled), max(d.max for d in sampled))
-    rss = (
-        min(float(f.centre[k] - SDS * f.sd[k]) for f in found),
-        max(float(f.centre[k] + SDS * f.sd[k]) for f in found),
-    )
+    ends = [root_sum_square_ends(float(f.centre[k]), float(f.sd[k]), output) for f in found]
+    rss = (min(low for low, _ in ends), max(high for _, high in ends))
     extreme = None
     if all(f.low is not None and f.high is not None for f in found):
         extreme = (min(float(f.low[k]) for f in found if f.low is not None),
                    max(float(f.high[k]) for f in found if f.high is not None))  # fmt: skip
     note = ""
-    if extreme is not None:
-        slack = ROUNDING * max(abs(extreme[0]), abs(extreme[1]))
-        if monte_carlo[0] < extreme[0] - slack or monte_carlo[1] > extreme[1] + slack:
-            note = "Monte Carlo lies outside the searched extremes: the output has an extreme that the search missed"
-    method = f"{found[0].method}; root-sum-square: ±{SDS:g} standard deviations"
-    return Band(output=output, temperature_c=temperature_c, extreme=extreme, rss=rss,
-                monte_carlo=monte_carlo, method=method, note=note)  # fmt: skip
+    if extreme is not None and _outside(extreme, monte_carlo):
+        note = "Monte Carlo lies outside the searched extremes: the output has an extreme that the search missed"
+    methods = "; ".join(dict.fromkeys(f.method for f in found))
+    gaps = [float(f.gap[k]) for f in found if f.gap is not None]
+    return Band(output=output, temperature_c=temperature_c, extreme=extreme, rss=rss, monte_carlo=monte_carlo,
+                method=f"{methods}; root-sum-square: {RSS[output]}", note=note,
+                gap=max(gaps) if gaps else None)  # fmt: skip
+
+
+def _outside(extreme: tuple[float, float], sampled: tuple[float, float]) -> bool:
+    slack = ROUNDING * max(abs(extreme[0]), abs(extreme[1]))
+    return sampled[0] < extreme[0] - slack or sampled[1] > extreme[1] + slack
+
+
+def _passed(found: _AtCorner, result: CornerResult) -> bool:
+    """True when a simulated unit lies beyond what the search found at its corner."""
+    if found.low is None or found.high is None:
+        return False
+    sampled = [_sampled(result, output) for output in OUTPUTS]
+    return any(
+        d is not None and _outside((float(found.low[k]), float(found.high[k])), (d.min, d.max))
+        for k, d in enumerate(sampled)
+    )
+
+
+def _outermost(population: Population, bench: Bench, corner: Corner, streams: Streams, units: int) -> Array:
+    """Positions in the box (d, m) of the simulated units with the lowest and the highest outputs."""
+    box = box_at(population, corner)
+    kept: list[Array] = []
+    for first in range(0, units, PIECE):
+        block = population.block(streams, first, min(PIECE, units - first))
+        values = block.values(corner)
+        solution = bench.solve(block, corner)
+        for output in (solution.frequency_hz, solution.startup_margin):
+            if np.isnan(output).all():
+                continue
+            rows = np.array([np.nanargmin(output), np.nanargmax(output)])
+            wanted = [np.broadcast_to(values[role], block.count)[rows] for role in box.free]
+            kept.append(box.positions(np.array(wanted).reshape(len(box.free), 2)))
+    return np.concatenate(kept, axis=1) if kept else np.zeros((len(box.free), 0))
 
 
 def outside_finding(band: Band, extreme: tuple[float, float]) -> Finding:
@@ -87,16 +139,26 @@ def outside_finding(band: Band, extreme: tuple[float, float]) -> Finding:
     )
 
 
-def _at_corner(population: Population, bench: Bench, corner: Corner) -> _AtCorner:
+def root_sum_square_ends(centre: float, sd: float, output: Output) -> tuple[float, float]:
+    """Ends of the band. A margin is a ratio of two gains: three standard deviations of its logarithm, so that a skewed
+    one never passes zero; a frequency spreads little, three of its own."""
+    if output == "startup_margin" and centre > 0:
+        factor = math.exp(SDS * sd / centre)
+        return centre / factor, centre * factor
+    return centre - SDS * sd, centre + SDS * sd
+
+
+def _at_corner(population: Population, bench: Bench, corner: Corner, seeds: Array | None = None) -> _AtCorner:
     def outputs(values: dict[str, Array]) -> Array:
         solution = bench.solve_values(values, corner, population.own_law)
         return np.stack([solution.frequency_hz, solution.startup_margin])
 
     centre, sd = _root_sum_square(population, corner, outputs)
     if not population.bounded:
-        return _AtCorner(centre, sd, None, None, "no extreme value: a shape is open")
-    low, high, method = search(box_at(population, corner), outputs)
-    return _AtCorner(centre, sd, low, high, method)
+        return _AtCorner(centre, sd, None, None, None, "no extreme value: a shape is open")
+    found = search(box_at(population, corner), outputs, seeds=seeds)
+    again = "" if seeds is None else ", again from the outermost simulated units"
+    return _AtCorner(centre, sd, found.low, found.high, found.gap, f"{found.method}{again}")
 
 
 def _root_sum_square(population: Population, corner: Corner, outputs: Outputs) -> tuple[Array, Array]:

@@ -115,6 +115,7 @@ class Band:
     monte_carlo: tuple[float, float]
     method: str
     note: str = ""
+    gap: float | None = None  # what the finest step of the search still added [SI unit of the output]; no certificate
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

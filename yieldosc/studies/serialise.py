@@ -158,6 +158,7 @@ def _band(band: Band) -> dict[str, object]:
         "monte_carlo": pair(band.monte_carlo),
         "method": band.method,
         "note": band.note,
+        "gap": band.gap,
     }
 
 

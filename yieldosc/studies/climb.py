@@ -1,0 +1,96 @@
+"""Coordinate search for extremes inside a box, many climbers in one call: fixed positions first, then halved steps."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Array = NDArray[np.float64]
+Function = Callable[[Array], Array]  # positions (d, n) in [0, 1] → outputs (k, n)
+COARSE = (0.0, 0.25, 0.5, 0.75, 1.0)  # positions tried along each dimension first
+FINE = (1 / 8, 1 / 16, 1 / 32, 1 / 64, 1 / 128, 1 / 256)  # steps to both sides after that
+MOST_ROUNDS = 24  # of each step
+
+
+@dataclass(frozen=True, slots=True)
+class Climber:
+    """Raises sign · output k from a starting point (d,)."""
+
+    output: int
+    sign: float
+    start: Array
+
+
+@dataclass(frozen=True, slots=True)
+class Reached:
+    """What m climbers reach: values (m,) of sign · output; `last` (m,): what the finest step alone added."""
+
+    values: Array
+    last: Array
+
+
+def climb(function: Function, climbers: Sequence[Climber]) -> Reached:
+    """Cost per round: 5·d evaluations per climber at first, then 2·d."""
+    team = _Team(function, climbers)
+    if not len(team.points):
+        return Reached(team.values, np.zeros(len(climbers)))
+    grid = np.array(COARSE)[None, :, None] * np.ones((len(team.points), 1, len(climbers)))
+    team.rounds(lambda points: grid)
+    before = team.values
+    for step in FINE:
+        before = team.values
+        reach = np.array([-step, step])[None, :, None]
+        team.rounds(lambda points, reach=reach: np.clip(points[:, None, :] + reach, 0.0, 1.0))
+    last = np.zeros(len(climbers))
+    np.subtract(team.values, before, out=last, where=np.isfinite(before))
+    return Reached(team.values, last)
+
+
+class _Team:
+    """Points (d, m) and values (m,) of climbers that take every round together."""
+
+    def __init__(self, function: Function, climbers: Sequence[Climber]) -> None:
+        self._function = function
+        self._rows = np.array([c.output for c in climbers])
+        self._signs = np.array([c.sign for c in climbers])
+        self.points = np.stack([c.start for c in climbers], axis=1)
+        self.values: Array = self._score(self.points)[0]
+
+    def rounds(self, candidates: Callable[[Array], Array]) -> None:
+        """Move until nobody gains. candidates(points): positions (d, s, m) to try for each coordinate.
+
+        A round moves every coordinate to its own best position; where that is no gain, only the coordinate that gains
+        most.
+        """
+        d, m = self.points.shape
+        for _ in range(MOST_ROUNDS):
+            tries = candidates(self.points)
+            count = tries.shape[1]
+            trial = np.broadcast_to(self.points[:, None, None, :], (d, d, count, m)).copy()
+            trial[np.arange(d), np.arange(d)] = tries
+            tried = self._score(trial.reshape(d, -1)).reshape(d, count, m)
+            place = np.argmax(tried, axis=1)[:, None, :]
+            alone = np.take_along_axis(tried, place, axis=1)[:, 0, :]
+            best = np.take_along_axis(tries, place, axis=1)[:, 0, :]
+            joint = np.where(alone > self.values, best, self.points)
+            lead = np.argmax(alone, axis=0)
+            single = self.points.copy()
+            single[lead, np.arange(m)] = best[lead, np.arange(m)]
+            together = self._score(joint)[0]
+            better_joint = together >= alone.max(axis=0)
+            reached = np.where(better_joint, together, alone.max(axis=0))
+            moving = reached > self.values
+            if not moving.any():
+                return
+            self.points = np.where(moving, np.where(better_joint, joint, single), self.points)
+            self.values = np.where(moving, reached, self.values)
+
+    def _score(self, positions: Array) -> Array:
+        """(p, m) of positions (d, p · m), the climber running fastest; −inf where there is no number."""
+        m = len(self._rows)
+        found = self._function(positions).reshape(-1, max(1, positions.shape[1] // m), m)
+        values = self._signs * found[self._rows, :, np.arange(m)].T
+        return np.where(np.isnan(values), -np.inf, values)
