@@ -119,9 +119,11 @@ def _next_steps(r: UpgradeResult) -> Iterator[str]:
         yield "Change the limit, the circuit or its nominal values, or trim each board: no purchase reaches the target."
     best = _best_recentre(r)
     if best and (r.chosen is None or r.chosen.changes):
+        reaches = r.target is not None and best.yield_.low >= r.target
         yield (
             f"Re-centre {best.part}: {_value(best.from_value, best)} → {_value(best.to_value, best)} (E{best.series}) "
-            f"moves the yield by {points_text(best.difference)} and costs nothing."
+            f"moves the yield by {points_text(best.difference)}{' and reaches the target' if reaches else ''}; it costs "
+            "nothing."
         )
     relaxed = _relaxable(r)
     if relaxed:

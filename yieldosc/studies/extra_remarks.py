@@ -25,7 +25,7 @@ def extra_findings(study: Study, sources: Sequence[Combination]) -> tuple[Findin
         made.append(
             Finding(
                 "warning", "trim-not-applied",
-                f"boards are judged before the trim of {study.design.trim_role}: limits gives the yield after it",
+                f"Boards are judged before the trim of {study.design.trim_role}; limits gives the yield after it.",
             )
         )  # fmt: skip
     return tuple(made)

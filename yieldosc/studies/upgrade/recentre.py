@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -29,6 +29,8 @@ KINDS = ("resistor", "capacitor", "inductor")
 MAIN = ("R", "C", "L")
 FINE, COARSE = 0.021, 0.11  # tolerances up to which parts come in E96 and E24 values; looser ones in E12
 MOST_STEP = math.log(1.15)  # a value further away is another design, not another nominal
+SCREEN = 2048  # units on which values are first compared
+MOST_PROMISING = 12
 STEPS = (1, 2, 4)  # series values to either side
 
 
@@ -46,15 +48,21 @@ class Nominal:
 
 def candidates(study: Study, setup: Setup, slopes: Mapping[str, tuple[float, float]]) -> tuple[Nominal, ...]:
     """Series values next to each nominal, and next to the one that would centre the frequency."""
-    off = _off_centre(study, setup)
+    off, bought = _off_centre(study, setup), _bought(study)
     made: dict[tuple[tuple[str, ...], float], Nominal] = {}
     for p in study.parameters:
-        if p.kind not in KINDS or p.trait not in MAIN or p.typical <= 0:
+        if p.kind not in KINDS or p.trait not in MAIN or p.typical <= 0 or not bought(p):
             continue
         lean = slopes.get(p.role, (0.0, 0.0))[0]
         for value, series in _values(p, off, lean):
             made[((p.role,), value)] = Nominal((p.role,), p.part, p.typical, value, p.unit, series)
     return tuple(made.values())
+
+
+def _bought(study: Study) -> Callable[[Parameter], bool]:
+    """True for what stands in the BOM: nobody chooses the nominal value of a stray capacitance."""
+    listed = {getattr(line, "designator", None) for line in study.bom}
+    return lambda p: not listed or p.part in listed
 
 
 def _values(p: Parameter, off: float, lean: float) -> list[tuple[float, int]]:
@@ -115,6 +123,21 @@ def _moved(p: Parameter, nominal: Nominal) -> Parameter:
     )
 
 
+def _promising(
+    setup: Setup, nominals: Sequence[Nominal], declared_good: Flags, workers: Workers, meter: Meter | None
+) -> tuple[Nominal, ...]:
+    """Those that gain most on the first units."""
+    units = len(declared_good)
+    gains = []
+    with workers.in_order(_Job(setup, tuple(nominals), units), len(nominals)) as answers:
+        for good in answers:
+            gains.append(int(np.count_nonzero(good)) - int(np.count_nonzero(declared_good)))
+            if meter is not None:
+                meter.done(units)
+    best = sorted((i for i, gain in enumerate(gains) if gain > 0), key=lambda i: -gains[i])[:MOST_PROMISING]
+    return tuple(nominals[i] for i in sorted(best))
+
+
 def recentred(
     setup: Setup,
     nominals: Sequence[Nominal],
@@ -128,8 +151,9 @@ def recentred(
     """Those that help on the draws (the difference's lower bound above zero), best first."""
     units = len(declared_good)
     found = []
-    with workers.in_order(_Job(setup, tuple(nominals), units), len(nominals)) as answers:
-        for nominal, good in zip(nominals, answers, strict=True):
+    promising = _promising(setup, nominals, declared_good[:SCREEN], workers, meter)
+    with workers.in_order(_Job(setup, promising, units), len(promising)) as answers:
+        for nominal, good in zip(promising, answers, strict=True):
             if meter is not None:
                 meter.done(units)
             counted = yield_estimate(units - int(np.count_nonzero(good)), units, confidence)

@@ -27,7 +27,7 @@ from yieldosc.studies.run import QUANTUM, Setup
 from yieldosc.studies.upgrade.moved import best_known
 from yieldosc.studies.upgrade.prices import Prices
 from yieldosc.studies.upgrade.purchases import Choice, Purchase, purchases
-from yieldosc.studies.upgrade.recentre import candidates, recentred
+from yieldosc.studies.upgrade.recentre import SCREEN, candidates, recentred
 from yieldosc.studies.upgrade.results import SearchAccount, UpgradeOption, UpgradeResult
 from yieldosc.studies.upgrade.search import MOST_UNITS, Found, Reaching, cheapest, undominated
 from yieldosc.studies.upgrade.trial import Trial, all_flags
@@ -62,7 +62,7 @@ def upgrade(
     leaning = slopes(setup.population, setup.bench, reference_corner(study))
     nominals = candidates(study, setup, leaning)
     meter = Meter(progress)
-    meter.expect(single * (1 + sum(len(p.choices) for p in offered) + len(nominals)) + 4 * proof)
+    meter.expect(single * (1 + sum(len(p.choices) for p in offered)) + SCREEN * len(nominals) + 4 * proof)
     run = _Run(study, setup, Prices.of(study, offered), offered, leaning, single, proof, meter)
     with Workers(workers or default_workers()) as crew:
         current = run.declared(crew)
