@@ -68,6 +68,15 @@ def test_a_footprint_of_another_kind_is_asked_about() -> None:
     ]
 
 
+def test_a_letter_against_the_words_is_asked_about() -> None:
+    reading = read("Ref|Value|Description", "L1|680u|electrolytic capacitor", "L2|680uH|choke beside the capacitor")
+    assert [(x.kind, x.value) for x in reading.lines] == [("inductor", 680e-6), ("inductor", 680e-6)]
+    assert said(reading) == [
+        "warning bom-kind-contradiction BOM!2: L1 has the letter of an inductor, but its line names a capacitor; it was "
+        "read as inductor: correct the designator or the line"
+    ]
+
+
 FORKS = [
     # text, tolerance, law, what is said beside it
     ("watch crystal 12.5pF ±20ppm", 20e-6, "fork", []),

@@ -7,7 +7,7 @@ import re
 
 from yieldosc.parts.parameter import Kind
 from yieldosc.quantities import format_quantity, shown
-from yieldosc.sheets.kinds import SI_UNIT
+from yieldosc.sheets.kinds import SI_UNIT, article
 from yieldosc.sheets.partfacts import PartFacts, Source, close
 
 _URL = re.compile(r"(?:https?://|www\.)\S+", re.IGNORECASE)
@@ -90,11 +90,7 @@ def check_footprint(designator: str, part: PartFacts, sources: list[Source]) -> 
                 "warning",
                 "bom-kind-doubt",
                 f"{designator} is kept as {part.kind} by its letter, but the footprint {shown(text)} is that of "
-                f"{_article(kind)}; correct the designator where it is one",
+                f"{article(kind)}; correct the designator where it is one",
                 source,
             )
             return
-
-
-def _article(kind: Kind) -> str:
-    return f"an {kind}" if kind[0] in "aeiou" else f"a {kind}"

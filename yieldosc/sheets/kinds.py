@@ -104,3 +104,8 @@ def _active(by_letter: Kind, by_words: Kind | None, units: set[str]) -> Kind:
         return "other"
     confirmed = by_words in SI_UNIT and by_words is not None and SI_UNIT[by_words] in units
     return by_words if confirmed and by_words is not None and by_letter != "diode" else by_letter
+
+
+def article(kind: Kind) -> str:
+    """"a resistor", "an inductor"."""
+    return f"an {kind}" if kind[0] in "aeiou" else f"a {kind}"

@@ -13,7 +13,15 @@ from yieldosc.quantities import QuantityError, format_quantity, parse_quantity, 
 from yieldosc.sheets.cells import Amount
 from yieldosc.sheets.cross_checks import check_footprint, check_link, check_thermistor
 from yieldosc.sheets.headings import Meaning
-from yieldosc.sheets.kinds import KIND_OF_UNIT, SI_UNIT, kind_from_letters, kind_from_words, letters_of, settled_kind
+from yieldosc.sheets.kinds import (
+    KIND_OF_UNIT,
+    SI_UNIT,
+    article,
+    kind_from_letters,
+    kind_from_words,
+    letters_of,
+    settled_kind,
+)
 from yieldosc.sheets.partfacts import VALUED, PartFacts, Source, close
 from yieldosc.sheets.partnumbers import decode_part_number
 from yieldosc.sheets.traits import read_crystal, read_law, read_tolerance
@@ -111,6 +119,13 @@ def _kind(designator: str, sources: list[Source], part: PartFacts) -> Kind:
             f"{designator} has the letter of a {by_letter}, but its line says "
             f"{kind}; it was read as {kind}: correct the designator or the line",
         )
+    elif _named_otherwise(kind, by_letter, by_words, units):
+        part.remark(
+            "warning",
+            "bom-kind-contradiction",
+            f"{designator} has the letter of {article(kind)}, but its line names {article(by_words or kind)}; it was "
+            f"read as {kind}: correct the designator or the line",
+        )
     if (
         kind == "crystal"
         and re.search(r"resonator|резонатор", words, re.IGNORECASE)
@@ -123,6 +138,18 @@ def _kind(designator: str, sources: list[Source], part: PartFacts) -> Kind:
             "resonator needs its own tolerance and temperature law",
         )
     return kind
+
+
+def _named_otherwise(kind: Kind, by_letter: Kind, by_words: Kind | None, units: set[str]) -> bool:
+    """True where words name another passive part, and no unit confirms the letter."""
+    passive = ("resistor", "capacitor", "inductor")
+    return (
+        kind == by_letter
+        and kind in passive
+        and by_words in passive
+        and by_words != kind
+        and (SI_UNIT[kind] not in units)
+    )
 
 
 def _value(part: PartFacts, sources: list[Source]) -> None:
