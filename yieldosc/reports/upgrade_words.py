@@ -52,7 +52,9 @@ def upgrade_page(r: UpgradeResult) -> Decision:
 
 def _words(r: UpgradeResult) -> str:
     if r.chosen is None:
-        return "NO TARGET" if r.target is None else "NO PURCHASE REACHES THE TARGET"
+        if r.target is None:
+            return "NO TARGET"
+        return f"NO PURCHASE REACHES THE TARGET{', ANOTHER NOMINAL VALUE DOES' if _recentre_reaches(r) else ''}"
     if not r.chosen.changes:
         return "BUY NOTHING BETTER"
     return "BUY " + "; ".join(change.order for change in r.chosen.changes)
@@ -115,15 +117,14 @@ def _next_steps(r: UpgradeResult) -> Iterator[str]:
         yield f"Buy {listed([change.order for change in r.chosen.changes])}.{together}"
     elif r.chosen is not None:
         yield "Keep the declared grades: the target needs no better part."
-    elif r.target is not None:
+    elif r.target is not None and not _recentre_reaches(r):
         yield "Change the limit, the circuit or its nominal values, or trim each board: no purchase reaches the target."
     best = _best_recentre(r)
     if best and (r.chosen is None or r.chosen.changes):
-        reaches = r.target is not None and best.yield_.low >= r.target
+        reaches = " and reaches the target" if _recentre_reaches(r) else ""
         yield (
             f"Re-centre {best.part}: {_value(best.from_value, best)} → {_value(best.to_value, best)} (E{best.series}) "
-            f"moves the yield by {points_text(best.difference)}{' and reaches the target' if reaches else ''}; it costs "
-            "nothing."
+            f"moves the yield by {points_text(best.difference)}{reaches}; it costs nothing."
         )
     relaxed = _relaxable(r)
     if relaxed:
@@ -143,6 +144,11 @@ def _next_steps(r: UpgradeResult) -> Iterator[str]:
 def _pair(r: UpgradeResult) -> bool:
     assert r.chosen is not None and r.target is not None
     return len(r.chosen.changes) > 1 and not any(o.yield_.low >= r.target for o in r.singles)
+
+
+def _recentre_reaches(r: UpgradeResult) -> bool:
+    best = _best_recentre(r)
+    return best is not None and r.target is not None and best.yield_.low >= r.target
 
 
 def _best_recentre(r: UpgradeResult) -> Recentre | None:

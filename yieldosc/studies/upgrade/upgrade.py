@@ -35,6 +35,7 @@ from yieldosc.study import Study
 
 Flags = NDArray[np.bool_]
 UNITS = 2 * QUANTUM  # for the single grades, which are compared on the same draws
+MOST_SINGLE_UNITS = 50 * UNITS
 PROOF_UNITS = 16 * QUANTUM  # on which a set must prove itself, and as many fresh ones
 MOST_PURCHASES = 6  # that are combined: those on which frequency and margin lean most
 USUAL_CORNERS = 10
@@ -57,8 +58,8 @@ def upgrade(
     started, clock = datetime.now(UTC), time.perf_counter()
     setup = declared_setup(study, seed=seed, evaluator=evaluator)
     proof = units or _units_for(setup)
-    single = min(UNITS, proof)
     offered = purchases(study)
+    single = min(_single_units(offered), proof)
     leaning = slopes(setup.population, setup.bench, reference_corner(study))
     nominals = candidates(study, setup, leaning)
     meter = Meter(progress)
@@ -91,6 +92,12 @@ def upgrade(
         findings=(*study.findings, *_findings(study, offered, prices)),
         provenance=provenance(study, seed, started, clock, crew.count),
     )
+
+
+def _single_units(offered: Sequence[Purchase]) -> int:
+    """Units of each single grade: fewer where there are many grades."""
+    grades = sum(len(p.choices) for p in offered)
+    return UNITS if grades * UNITS <= MOST_SINGLE_UNITS else UNITS // 2
 
 
 def _units_for(setup: Setup) -> int:
