@@ -5,13 +5,11 @@ from __future__ import annotations
 from dataclasses import replace
 
 import numpy as np
-import pytest
 
 from yieldosc.solver.solution import Status
-from yieldosc.studies import remarks
 from yieldosc.studies.assess import assess
 from yieldosc.studies.extremes import outside_finding
-from yieldosc.studies.results import Band, Lots
+from yieldosc.studies.results import Band
 
 QUICK = {"units": 8192, "rival_units": 4096, "workers": 1}
 
@@ -91,36 +89,4 @@ def test_monte_carlo_outside_the_extremes():
     assert outside_finding(band, (1.5, 2.5)).text == (
         "At -40 °C the simulated start-up margin runs from 1.6 to 2.75, outside the searched extremes 1.5 to 2.5: "
         "the search missed an extreme inside the box; trust the simulated range."
-    )
-
-
-@pytest.mark.parametrize("shared", [True, False])
-def test_cautions(make_study, shared):
-    lots = Lots(lots=1024, units_per_lot=256, q05=0.24, q50=0.8, q95=0.93, share_below_target=None)
-    expected = [
-        "A prediction from stated tolerances, not a measurement of boards.",
-        "Every rate supposes that no wrong or defective part is on the board.",
-        "The interval covers sampling only; the range over the sets tried shows what assumptions do, and is no bound.",
-    ]
-    if shared:
-        expected.append(
-            "Parts of a reel are alike: the interval describes the pooled rate; nine lots in ten yield from 24 % to "
-            "93 %, the others lie outside."
-        )
-    assert remarks.cautions(lots if shared else None) == tuple(expected)
-
-
-@pytest.mark.parametrize(
-    ("low", "high", "text"),
-    [
-        (1.0, 1.0, "in more than nine of ten simulated lots of 256 units none failed"),
-        (0.0, 0.0, "in more than nine of ten simulated lots of 256 units none was good"),
-        (0.5, 1.0, "nine lots in ten yield from 50 % to all of 256 units, the others lie outside"),
-        (0.0, 0.5, "nine lots in ten yield from none of 256 units to 50 %, the others lie outside"),
-    ],
-)
-def test_lots_never_read_all_or_nothing(low, high, text):
-    lots = Lots(lots=1024, units_per_lot=256, q05=low, q50=0.8, q95=high, share_below_target=None)
-    assert remarks.cautions(lots)[-1] == (
-        f"Parts of a reel are alike: the interval describes the pooled rate; {text}."
     )

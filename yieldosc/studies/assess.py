@@ -15,6 +15,7 @@ from yieldosc.population import Adjustment, Population
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies import remarks
 from yieldosc.studies.declared import testing_corner
+from yieldosc.studies.cautions import cautions
 from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.extra_remarks import extra_findings
 from yieldosc.studies.extremes import bands
@@ -243,7 +244,7 @@ def _assembled(
             *remarks.ranking_findings(evidence.rankings, evidence.unranked),
             *remarks.bench_findings(study, ratio),
         ),
-        cautions=remarks.cautions(evidence.lots),
+        cautions=cautions(study, ratio, evidence.lots),
         provenance=provenance,
         scrutiny=evidence.scrutiny,
     )

@@ -1,4 +1,4 @@
-"""What a reader must know beside the figures: verdict, its conditions, findings and cautions, as plain data."""
+"""What a reader must know beside the figures: verdict, its conditions and findings, as plain data."""
 
 from __future__ import annotations
 
@@ -11,7 +11,7 @@ from yieldosc.population import Block
 from yieldosc.population.block import middle_draws
 from yieldosc.solver.solution import Solution
 from yieldosc.studies.estimates import LookPlan
-from yieldosc.studies.results import CornerResult, Lots, Ranking, Verdict
+from yieldosc.studies.results import CornerResult, Ranking, Verdict
 from yieldosc.studies.run import AUDIT_SHARE, Setup
 from yieldosc.studies.yields import YieldRun
 from yieldosc.study import Study
@@ -157,27 +157,3 @@ def bench_findings(study: Study, ratio: float | None) -> list[Finding]:
         "every unit's frequency is scaled by that ratio."
     )
     return [Finding("note", "bench-scaled", text)]
-
-
-def cautions(shared: Lots | None) -> tuple[str, ...]:
-    """What the figures do not cover, the same for every study but for its reels."""
-    made = [
-        "A prediction from stated tolerances, not a measurement of boards.",
-        "Every rate supposes that no wrong or defective part is on the board.",
-        "The interval covers sampling only; the range over the sets tried shows what assumptions do, and is no bound.",
-    ]
-    if shared is not None:
-        made.append(f"Parts of a reel are alike: the interval describes the pooled rate; {_lots_text(shared)}.")
-    return tuple(made)
-
-
-def _lots_text(shared: Lots) -> str:
-    """How lots spread, without a count that reads 0 % or 100 %."""
-    size = f"{shared.units_per_lot:,} units"
-    if shared.q05 >= 1:
-        return f"in more than nine of ten simulated lots of {size} none failed"
-    if shared.q95 <= 0:
-        return f"in more than nine of ten simulated lots of {size} none was good"
-    low = f"{100 * shared.q05:.3g} %" if shared.q05 > 0 else f"none of {size}"
-    high = f"{100 * shared.q95:.3g} %" if shared.q95 < 1 else f"all of {size}"
-    return f"nine lots in ten yield from {low} to {high}, the others lie outside"
