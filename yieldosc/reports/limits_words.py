@@ -119,8 +119,12 @@ def _resistance_step(r: LimitsResult) -> Iterator[str]:
     if test is None or not test.lines:
         return
     if test.chosen is not None:
-        added = test.lines[test.chosen].added_ohm
-        yield f"Require a start with {format_quantity(added, 'Ω', 3)} added in series with the crystal unit."
+        line = test.lines[test.chosen]
+        yield (
+            f"Require a start with {format_quantity(line.added_ohm, 'Ω', 3)} added in series with the crystal unit: it "
+            f"keeps start failures among the boards that pass to the escape limit and rejects {rate(line.false_rejects)} of good "
+            "ones."
+        )
     elif r.escape_limit is not None and test.start_failures.high <= r.escape_limit:
         yield "A series-resistance test is not needed for the predicted population; it would find wrong parts."
     free = [line for line in test.lines if line.false_rejects.failures == 0]
@@ -316,10 +320,16 @@ def _margin_lost(t: TrimResult) -> str | None:
     return f"Start-up margin, 0.1 % point, worst corner: {margin_text(before)} before, {margin_text(after)} after."
 
 
+def _instrument(r: LimitsResult) -> str:
+    noise = f"sd {format_quantity(r.sd_hz, 'Hz', 3)}" if r.sd_hz else "free of noise"
+    bias = f"bias within ±{format_quantity(r.bias_hz, 'Hz', 3)}" if r.bias_hz else "free of bias"
+    return f"{noise}, {bias}"
+
+
 def _method(r: LimitsResult) -> Iterator[str]:
     yield (
-        f"Chosen on units 1 to {r.units:,}, reported on the next {r.units:,}; instrument: sd "
-        f"{format_quantity(r.sd_hz, 'Hz', 3)}, bias within ±{format_quantity(r.bias_hz, 'Hz', 3)}."
+        f"Chosen on units 1 to {r.units:,}, reported on the next {r.units:,}; instrument: "
+        f"{_instrument(r)}."
     )
     yield (
         "Low and high limit are chosen separately over all pairs of a grid: the fewest good units rejected while the "
