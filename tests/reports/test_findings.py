@@ -121,17 +121,22 @@ def test_zero_failures_are_a_bound_and_never_zero_or_all():
 
 
 def test_lots_in_which_nothing_failed_are_called_that():
+    not_covered = (
+        "The interval of the yield describes the pooled rate of many lots: it covers neither how far one lot lies from "
+        "that, nor reels unlike those supposed."
+    )
     below = clopper_pearson(0, 1024)
     a = flawless_assessment()
-    lots = Lots(lots=1024, units_per_lot=256, q05=1.0, q50=1.0, q95=1.0, share_below_target=below)
+    lots = Lots(lots=1024, units_per_lot=256, q05=1.0, q50=1.0, q95=1.0, share_below_target=below, by_chance=(1.0, 1.0))
     assert summarise(replace(a, lots=lots)).deciding[-1] == (
         "Of 1,024 simulated lots of 256 units at least 95 in 100 show no failing unit. Share of lots that miss the "
-        "target: below 3600 ppm. The interval of the yield describes the pooled rate, not a single lot."
+        f"target: below 3600 ppm. {not_covered}"
     )
-    spread = replace(lots, q05=0.24, q50=0.78, q95=0.93, share_below_target=None)
+    spread = replace(lots, q05=0.24, q50=0.78, q95=0.93, share_below_target=None, by_chance=(0.68, 0.773))
     assert summarise(replace(a, lots=spread)).deciding[-1] == (
         "Of 1,024 simulated lots of 256 units one in twenty yields 24 % or less, half yield 78 % or less and one in "
-        "twenty yields 93 % or more. The interval of the yield describes the pooled rate, not a single lot."
+        "twenty yields 93 % or more. Chance alone among 256 units would put nine lots in ten between 68 % and 77.3 %; "
+        f"the rest is reels. {not_covered}"
     )
 
 

@@ -6,10 +6,11 @@ from yieldosc.quantities import format_quantity
 from yieldosc.reports.amounts import listed, margin_text, share_text
 from yieldosc.reports.failing_parts import failing_sentences
 from yieldosc.reports.first_failures import start_at_the_ends, where_units_fail_first
+from yieldosc.reports.lot_words import lots_sentence
 from yieldosc.reports.terminal import one_line
 from yieldosc.studies.digits import rate_text
 from yieldosc.studies.estimates import clopper_pearson
-from yieldosc.studies.results import Assessment, CornerResult, Lots, Ranking, RankLine
+from yieldosc.studies.results import Assessment, CornerResult, Ranking, RankLine
 
 SHOWS = {
     "no_bias": "have no bias point",
@@ -109,29 +110,6 @@ def wrong_modes_sentence(a: Assessment) -> str:
     low, high = (format_quantity(f, "Hz", 4) for f in (min(a.wrong_modes_hz), max(a.wrong_modes_hz)))
     where = f"at {low}" if low == high else f"between {low} and {high}"
     return f"Units that start on another mode run {where}."
-
-
-def lots_sentence(a: Assessment) -> str:
-    """Yields of single lots where parts share reels."""
-    if a.lots is None:
-        return ""
-    lots, below = a.lots, a.lots.share_below_target
-    text = f"Of {lots.lots:,} simulated lots of {lots.units_per_lot:,} units {listed(_lot_points(lots))}."
-    if below is not None:
-        text += f" Share of lots that miss the target: {rate_text(below)}."
-    return text + " The interval of the yield describes the pooled rate, not a single lot."
-
-
-def _lot_points(lots: Lots) -> list[str]:
-    """The 5, 50 and 95 % points; a lot in which nothing failed is called that, not 100 %."""
-    if lots.q05 >= 1:
-        return ["at least 95 in 100 show no failing unit"]
-    made = [f"one in twenty yields {100 * lots.q05:.3g} % or less"]
-    if lots.q50 >= 1:
-        return [*made, "at least half show no failing unit"]
-    made.append(f"half yield {100 * lots.q50:.3g} % or less")
-    last = f"yields {100 * lots.q95:.3g} % or more" if lots.q95 < 1 else "shows no failing unit"
-    return [*made, f"one in twenty {last}"]
 
 
 def leading(a: Assessment) -> tuple[str, ...]:

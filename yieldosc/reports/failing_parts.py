@@ -1,4 +1,4 @@
-"""Sentences on the parts of failing units, beside the shares of variance: what spreads an output need not fail units."""
+"""Sentences on the parts of failing units beside the shares of variance: what spreads an output need not fail units."""
 
 from __future__ import annotations
 

@@ -9,13 +9,14 @@ from openpyxl.chart import Reference
 
 from yieldosc.quantities import format_quantity
 from yieldosc.reports.amounts import Deviation, bare_percent
-from yieldosc.reports.deciding import lots_sentence
 from yieldosc.reports.findings import Summary
+from yieldosc.reports.lot_words import lots_sentence
 from yieldosc.reports.scales import decimals_of, scaled_unit, with_unit
 from yieldosc.reports.terminal import one_line
 from yieldosc.reports.workbook_charts import bars
 from yieldosc.reports.workbook_page import ROW_CM, Page, Value
-from yieldosc.studies.results import Assessment, Band, Estimate
+from yieldosc.studies.digits import rate_text
+from yieldosc.studies.results import Assessment, Band, Estimate, Lots
 
 POINTS = '+0.000" points";−0.000" points";0.000" points"'
 PERCENT = "0.0000%"
@@ -41,8 +42,8 @@ def extremes(book: Workbook, a: Assessment) -> None:
         page.text(title, size=12, bold=True)
         for method in dict.fromkeys(band.method for band in chosen):
             page.sentence(f"Extreme: {method}.")
-        page.sentence("The last gain is what the finest step still added to an end. It is evidence, not a certificate: an "
-                      "extreme that the search did not come near would not show in it.")  # fmt: skip
+        page.sentence("The last gain is what the finest step still added to an end. It is evidence, not a certificate: "
+                      "an extreme that the search did not come near would not show in it.")  # fmt: skip
         rows = [_band_row(band, scale) for band in chosen]
         page.table(headings, rows, ('0.##" °C"', *(number_format,) * 7, None))
     page.finish()
@@ -129,10 +130,12 @@ def better_grades(book: Workbook, a: Assessment) -> None:
         page.table(headings, rows, (None, None, None, None, PERCENT, PERCENT, *(POINTS,) * 3))
     else:
         page.text("No leading part has a tighter grade.")
-    if a.lots is not None:
+    lots = a.lots
+    if lots is not None:
         page.text("Lots whose units share their reels", size=12, bold=True)
         page.sentence(lots_sentence(a))
-        page.row += 1
+        rows = [[lots.lots, lots.units_per_lot, lots.q05, lots.q50, lots.q95, *_chance(lots), _below(lots)]]
+        page.table(LOT_HEADINGS, rows, ("#,##0", "#,##0", *("0.0%",) * 5, None), freeze=False)
     page.text(f"Looks at the joint yield: {len(a.looks)} of {a.looks_planned} planned", size=12, bold=True)
     looks: list[list[Value]] = [
         [k.number, k.units, k.failures, k.low, "none failed" if k.failures == 0 else k.high] for k in a.looks
@@ -140,6 +143,18 @@ def better_grades(book: Workbook, a: Assessment) -> None:
     page.table(("Look", "Units", "Failing", "Yield, low", "Yield, high"), looks,
                (None, "#,##0", "#,##0", PERCENT, PERCENT), freeze=False)  # fmt: skip
     page.finish()
+
+
+LOT_HEADINGS = ("Lots", "Units each", "5 % point", "Median", "95 % point", "By chance alone, 5 %",
+                "By chance alone, 95 %", "Lots below the target")  # fmt: skip
+
+
+def _chance(lots: Lots) -> list[Value]:
+    return ["", ""] if lots.by_chance is None else list(lots.by_chance)
+
+
+def _below(lots: Lots) -> str:
+    return "no target" if lots.share_below_target is None else rate_text(lots.share_below_target)
 
 
 def worst_units(book: Workbook, a: Assessment) -> None:

@@ -14,8 +14,8 @@ from yieldosc.evaluators import make_evaluator
 from yieldosc.population import Adjustment, Population
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies import remarks
-from yieldosc.studies.declared import testing_corner
 from yieldosc.studies.cautions import cautions
+from yieldosc.studies.declared import testing_corner
 from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.extra_remarks import extra_findings
 from yieldosc.studies.extremes import bands

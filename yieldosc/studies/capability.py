@@ -29,7 +29,7 @@ FREQUENCIES = ("settled_hz", "frequency_hz")  # limits apply to the first that e
 
 
 def capability(gathered: Gathered, setup: Setup, confidence: float = 0.95) -> tuple[Capability, ...]:
-    """Of frequency and margin at the corner of the least Ppk; nothing below 2,731 units, or without limits or spread."""
+    """Of frequency and margin at the corner of the least Ppk; none below 2,731 units, without limits or spread."""
     made = []
     for output, requirement in ATTRIBUTES.items():
         limits = next(((r.low, r.high) for r in setup.judge.requirements if r.attribute == requirement), (None, None))

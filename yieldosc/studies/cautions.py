@@ -1,4 +1,4 @@
-"""What the figures do not say: the whole list goes with every result, on the console, on the sign-off page and in JSON."""
+"""What the figures do not say: the whole list goes with every result, on console, sign-off page and in JSON."""
 
 from __future__ import annotations
 

@@ -6,6 +6,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy import stats
 
 from yieldosc.population import Streams
 from yieldosc.studies.estimates import clopper_pearson
@@ -57,6 +58,8 @@ def lots(yields: NDArray[np.float64], units_per_lot: int, target: float | None, 
     """5, 50 and 95 % points over lots (l,), and the share of lots below the target."""
     low, middle, high = (float(q) for q in np.quantile(yields, (0.05, 0.5, 0.95)))
     below = None if target is None else clopper_pearson(int(np.count_nonzero(yields < target)), len(yields), confidence)
+    chance = stats.binom.ppf((0.05, 0.95), units_per_lot, float(yields.mean())) / units_per_lot
     return Lots(
-        lots=len(yields), units_per_lot=units_per_lot, q05=low, q50=middle, q95=high, share_below_target=below
-    )
+        lots=len(yields), units_per_lot=units_per_lot, q05=low, q50=middle, q95=high, share_below_target=below,
+        by_chance=(float(chance[0]), float(chance[1])),
+    )  # fmt: skip

@@ -128,6 +128,7 @@ class Lots:
     q50: float
     q95: float
     share_below_target: Estimate | None
+    by_chance: tuple[float, float] | None = None  # 5 and 95 % points if every unit had the pooled yield
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -170,4 +170,5 @@ def _lots(lots: Lots) -> dict[str, object]:
         "q50": lots.q50,
         "q95": lots.q95,
         "share_below_target": _estimate(lots.share_below_target),
+        "by_chance": lots.by_chance,
     }
