@@ -40,9 +40,14 @@ class Pair:
 
     def rounded(self, limits_hz: tuple[float, float]) -> Pair:
         """Both limits inward to a step that an instrument can be set to; the specification's own stay as they are."""
-        step = 10.0 ** (math.floor(math.log10(limits_hz[1] - limits_hz[0])) - 3)
-        low = self.low_hz if self.low_hz in limits_hz else math.ceil(self.low_hz / step - 1e-9) * step
-        high = self.high_hz if self.high_hz in limits_hz else math.floor(self.high_hz / step + 1e-9) * step
+        places = 3 - math.floor(math.log10(limits_hz[1] - limits_hz[0]))
+        steps = 10.0**places  # per Hz; `round` gives the double that the written number stands for
+        low = self.low_hz if self.low_hz in limits_hz else round(math.ceil(self.low_hz * steps - 1e-9) / steps, places)
+        high = (
+            self.high_hz
+            if self.high_hz in limits_hz
+            else round(math.floor(self.high_hz * steps + 1e-9) / steps, places)
+        )
         return Pair(low, high, self.bound) if low < high else self
 
 
