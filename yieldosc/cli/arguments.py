@@ -178,7 +178,7 @@ def _compare(sub: Sub) -> None:
         sub,
         "compare",
         "two studies or result workbooks: what changed, and what it did to each rate",
-        "compare bom_examples/tide_tone_1khz.xlsx bom_examples/tide_tone_clipping.xlsx",
+        "compare bom_examples/tide_tone_1khz.xlsx bom_examples/tide_tone_1khz_rev_b.xlsx",
     )
     parser.add_argument("first", metavar="A", help=STUDY)
     parser.add_argument("second", metavar="B", help="the other one")

@@ -91,13 +91,19 @@ def _steps(r: CompareResult) -> Section:
     )  # fmt: skip
 
 
+def _leads(r: CompareResult) -> bool:
+    """One change that is sure, and more than twice as large as the next."""
+    sizes = [abs(s.difference.estimate) for s in r.steps] + [0.0]
+    return bool(r.steps) and r.steps[0].difference.low * r.steps[0].difference.high > 0 and sizes[0] > 2 * sizes[1]
+
+
 def _meaning(r: CompareResult) -> Iterator[str]:
     target = r.after.design.yield_target
     after = r.rates[0].after
     if target is not None:
         reached = "reaches" if after.low >= target else "misses" if after.high < target else "cannot be told from"
         yield f"The second study {reached} its target of {percent(target)} on these units; assess gives the verdict."
-    if r.steps and r.steps[0].difference.low * r.steps[0].difference.high > 0:
+    if _leads(r):
         yield f"{r.steps[0].name} does most of it: {points_text(r.steps[0].difference)} alone."
     together = r.rates[0].difference.estimate
     alone = sum(s.difference.estimate for s in r.steps)

@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.errors import Finding
+from yieldosc.parts.parameter import Parameter
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies.compare.differences import differences
 from yieldosc.studies.compare.results import CompareResult, Difference, RateChange, Step
@@ -133,11 +134,14 @@ def _steps(
     if any(d.group == "circuit" for d in found) or not same:
         return []
     changed = {d.role for d in found if d.role is not None}
-    parts: dict[str, list[str]] = {}
+    bought: dict[str, list[Parameter]] = {}
     for p in before.parameters:
         if p.role in changed:
-            parts.setdefault(p.part, []).append(p.role)
-    made = [(part, _with(setup, after, roles)) for part, roles in parts.items()][:MOST_STEPS]
+            bought.setdefault(p.reel or p.part, []).append(p)
+    made = [
+        (", ".join(dict.fromkeys(p.part for p in those)), _with(setup, after, [p.role for p in those]))
+        for those in bought.values()
+    ][:MOST_STEPS]
     if any(d.group in ("limit", "condition") for d in found):
         other = replace(
             before, design=after.design, requirements=after.requirements, conditions=after.conditions
