@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from openpyxl import Workbook
@@ -13,13 +14,14 @@ from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.worksheet import Worksheet
 
 from yieldosc.circuits import registry
-from yieldosc.circuits.circuit import Role
+from yieldosc.circuits.circuit import CircuitError, Role
 from yieldosc.errors import Finding, Place
 from yieldosc.parts.parameter import PEDIGREES
 from yieldosc.quantities import format_quantity
 from yieldosc.sheets.bom import BomReading, read_bom
 from yieldosc.sheets.bomline import BomLine
 from yieldosc.sheets.grid import Book
+from yieldosc.sheets.hints import SOURCES
 from yieldosc.sheets.propose import Proposal, propose
 from yieldosc.sheets.roles import COLUMNS
 from yieldosc.sheets.study_tables import DESIGN_COLUMNS
@@ -41,8 +43,9 @@ class Draft:
 def write_draft(book: Book, *, circuit: str, options: Mapping[str, str], path: Path) -> Draft:
     """Write the workbook to `path`; the BOM file is only read. InputError where it has no table of parts."""
     reading = read_bom(book, "BOM" if book.sheet("BOM") is not None else None)
-    roles = registry.family(circuit).roles(registry.complete_options(circuit, options))
-    proposals = propose(roles, reading.lines, circuit)
+    chosen = registry.complete_options(circuit, options)
+    roles = registry.family(circuit).roles(chosen)
+    proposals = _with_needed(circuit, chosen, roles, propose(roles, reading.lines, circuit))
     workbook = Workbook()
     sheet = workbook.active
     assert isinstance(sheet, Worksheet)
@@ -60,6 +63,40 @@ def write_draft(book: Book, *, circuit: str, options: Mapping[str, str], path: P
         if p.doubt
     ]
     return Draft(tuple(_worth_telling(roles, proposals)), tuple(open_cells), (*reading.findings, *doubts))
+
+
+def _with_needed(
+    circuit: str, options: Mapping[str, str], roles: tuple[Role, ...], proposals: list[Proposal]
+) -> list[Proposal]:
+    """Proposals in which optional roles are wanted too: usual ones, and those without which nothing can be built."""
+    usual = {"RB2"} if options.get("bias") == "divider" else set()
+    usual |= {"RE", "RS"} | ({"CE"} if options.get("ground", "emitter") == "emitter" else set())
+    by_name = {role.name: role for role in roles}
+    made = [
+        replace(p, wanted=True, doubt=_joined(p.doubt, "delete the row where the board has none"))
+        if p.role in usual and by_name[p.role].optional
+        else p
+        for p in proposals
+    ]
+    for _ in roles:
+        kept = {p.role: p for p in made}
+        absent = [r for r in roles if r.name in kept and _left_out(r, kept[r.name])]
+        present = {r.name for r in roles if r not in absent}
+        try:
+            registry.build(circuit, options, present)
+        except CircuitError as error:
+            asked = [(r.name, t) for t in error.problems for r in absent if re.search(rf"(?:give|needs) {r.name}\b", t)]
+            if not asked:
+                return made
+            name, text = asked[0]
+            made = [replace(p, wanted=True, doubt=_joined(p.doubt, text)) if p.role == name else p for p in made]
+        else:
+            return made
+    return made
+
+
+def _joined(*texts: str) -> str:
+    return "; ".join(text for text in texts if text)
 
 
 def _worth_telling(roles: tuple[Role, ...], proposals: list[Proposal]) -> list[Proposal]:
@@ -155,9 +192,9 @@ def _left_out(role: Role, proposal: Proposal) -> bool:
         return False
     if role.name == "FS":
         return True  # the other way to give a crystal's frequency
-    return (role.optional and not (role.main and proposal.part is not None and not proposal.doubt)) or (
-        role.default is not None
-    )
+    if proposal.wanted or role.required:
+        return False
+    return role.default is not None or not (role.main and proposal.part is not None and not proposal.doubt)
 
 
 def _role(sheet: Worksheet, r: int, role: Role, proposal: Proposal, line: BomLine | None) -> list[str]:
@@ -169,10 +206,11 @@ def _role(sheet: Worksheet, r: int, role: Role, proposal: Proposal, line: BomLin
         open_cells.append(f"Roles!{sheet.cell(r, position).coordinate}: {what} of {role.name}")
 
     _write(sheet, r, 1, role.name)
-    from_bom = line is not None and role.main and line.value is not None
+    main = role.main and role.kind != "any"
+    from_bom = line is not None and main and line.value is not None and not proposal.own_value
     if proposal.part is not None:
         _write(sheet, r, 2, proposal.part)
-    elif role.main:
+    elif main:
         leave_open("Part", "part")
     if role.name == "CL":
         load = None if line is None else line.load_f
@@ -180,20 +218,28 @@ def _role(sheet: Worksheet, r: int, role: Role, proposal: Proposal, line: BomLin
             leave_open("Typ", "load capacitance")
         else:
             _write(sheet, r, COLUMNS.index("Typ") + 1, format_quantity(load, "F"))
-    elif not role.main:
+    elif not main:
         for column in ("Min", "Typ", "Max"):
             leave_open(column, column.lower())
     elif not from_bom and proposal.part is not None:
         leave_open("Typ", "value")
-    if from_bom and line is not None and line.tolerance is None:
+    if main and line is not None and line.tolerance is None:
         leave_open("Tolerance", "tolerance")
-    if from_bom and line is not None and line.temperature_law is None:
+    if main and line is not None and line.temperature_law is None:
         leave_open("Temperature law", "temperature law")
     if not role.condition:
         leave_open("Source", "source")
     doubt = f"; check: {proposal.doubt}" if proposal.doubt else ""
-    _write(sheet, r, len(COLUMNS), f"{role.meaning} — {proposal.reason}{doubt}")
+    source = f"; {SOURCES[role.trait]}" if not main and role.trait in SOURCES else ""
+    _write(sheet, r, len(COLUMNS), f"{role.meaning} — {proposal.reason}{doubt}{source}{_stated(role, line)}")
     return open_cells
+
+
+def _stated(role: Role, line: BomLine | None) -> str:
+    """A figure of the crystal that its BOM line gives and that no cell takes over by itself."""
+    if role.trait != "ESR" or line is None or line.esr_ohm is None:
+        return ""
+    return f"; the BOM says {format_quantity(line.esr_ohm, 'Ω')}"
 
 
 def _choices(sheet: Worksheet, column: str, texts: tuple[str, ...], last: int) -> None:
