@@ -44,7 +44,7 @@ def _pilot(a: Assessment, p: PilotResult) -> Section:
         for t in p.tests
     )  # fmt: skip
     return Section(
-        title=f"Pilot build, column {p.column}: {p.verdict}", key="pilot",
+        title=f"Pilot build, column {p.column}: {p.verdict}", key="pilot build",
         note=f"{p.boards} boards at {p.corner.text}; mean {scale.text(p.measured_mean_hz)} measured, "
         f"{scale.text(p.predicted_mean_hz)} predicted; all tests together at the study's confidence",
         columns=(("of", ""), ("test", ""), ("p", "right"), ("finding", "")), rows=rows,
