@@ -86,6 +86,10 @@ def test_bars_stand_around_the_declared_set():
     assert bars["shape"].index("█") > bars["shape"].index("│")
     assert "█" not in bars["U1 GBW"]
     assert "What to measure" in console.file.getvalue()
+    plain = Console(file=io.StringIO(), width=100, color_system=None)
+    print_knowledge(judged(GBW), plain)
+    assert "│" not in plain.file.getvalue()
+    assert "nothing needs to be measured" in " ".join(plain.file.getvalue().split())
 
 
 def test_the_sheet_has_a_chart_over_its_own_cells():

@@ -68,6 +68,7 @@ def test_demonstrations():
     # ln(0.05)/ln(1 − p): 2995, 29956, 299572 (closed form; rule of three 3000, …); 1 % needs 299 (Wilks)
     found = {round(d.rate, 9): d.boards for d in demonstrations(0.99)}
     assert found == {0.01: 299, 1e-3: 2995, 1e-4: 29956, 1e-5: 299572}
+    assert len(demonstrations(0.999)) == 3  # 1 − 0.999 is 1000 ppm, not beside it
     assert [d.boards for d in demonstrations(None)] == [2995, 29956, 299572]
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from rich.console import Console
 from rich.text import Text
 
-from yieldosc.reports.knowledge_words import bench_sentences, change_points, knowledge_lines
+from yieldosc.reports.knowledge_words import bench_sentences, change_points, knowledge_lines, spread_sentence
 from yieldosc.reports.terminal import hanging, heading, line, one_line
 from yieldosc.studies.results import Assessment
 
@@ -17,6 +17,10 @@ def print_knowledge(a: Assessment, console: Console) -> None:
     """Bars from the lowest to the highest yield that each piece of knowledge allows; then what to measure."""
     found = knowledge_lines(a)
     if not found:
+        return
+    if not any(k.measurable for k in found):
+        heading(console, "Spread by assumption")
+        hanging(console, "•", spread_sentence(a))
         return
     heading(console, "Spread by assumption", "change of the yield in points against the declared set, one at a time")
     least = min((k.fall for k in found), default=0.0)

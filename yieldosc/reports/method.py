@@ -93,8 +93,8 @@ def _evidence(a: Assessment) -> tuple[Row, ...]:
             "Leading parts",
             "First-order and total Sobol indices of ln frequency and ln max(margin, 0.001), one group per part or "
             "reel, then per cause inside the leading parts; 16 scramblings give the interval, cut to 0 … 1, where a "
-            "share of a variance lies. Two looks fixed beforehand, each at 1 − α/2; parts lead together that the difference "
-            "of their totals on the same scramblings does not tell apart.",
+            "share of a variance lies. Two looks fixed beforehand, each at 1 − α/2; parts lead together whose intervals of "
+            "the total overlap.",
             "Saltelli et al., Comput. Phys. Commun. 181 (2010) 259",
         ),
         (

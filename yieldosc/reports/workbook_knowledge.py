@@ -23,8 +23,8 @@ def what_to_measure(book: Workbook, a: Assessment) -> None:
     found = knowledge_lines(a)
     page = Page.new(
         book, "What to measure", "Spread by assumption: which piece of knowledge the yield hangs on",
-        f"Change of the yield in percentage points against the declared set, on the same {a.rival_units:,} units, one "
-        "piece of knowledge at a time. A span of the sets tried, not a bound.",
+        "Change of the yield in percentage points against the declared set, on the same units, one piece of knowledge at "
+        "a time. A span of the sets tried, not a bound.",
     )  # fmt: skip
     if not found:
         page.sheet.freeze_panes = f"A{page.row}"

@@ -171,7 +171,7 @@ def _evidence(
         setup, leading_parts(ranked), declared_good, confidence=confidence, workers=crew, meter=meter
     )
     found, outside = bands(
-        setup.population, setup.bench, corners, streams=setup.streams, units=run.gathered.units
+        setup.population, setup.bench, corners, streams=setup.streams, units=run.gathered.units, workers=crew
     )
     shared = None
     if shares_reels(setup):

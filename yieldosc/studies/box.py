@@ -111,7 +111,7 @@ def search(box: Box, outputs: Outputs, *, seeds: Array | None = None) -> Extreme
     found = function(starts)
     goals = [(k, sign) for k in range(len(found)) for sign in (-1.0, 1.0)]
     climbers = [
-        Climber(k, sign, starts[:, i]) for k, sign in goals for i in _chosen(sign * found[k], count, 1 if every else 8)
+        Climber(k, sign, starts[:, i]) for k, sign in goals for i in _chosen(sign * found[k], count, 1 if every else 4)
     ]
     reached = climb(function, climbers)
     ends: dict[tuple[int, float], tuple[float, float]] = {}

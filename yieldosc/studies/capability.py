@@ -126,6 +126,6 @@ def pilot(ppk: float, boards: int, probability: float = 0.95) -> PilotCapability
 
 def demonstrations(target: float | None, confidence: float = 0.95) -> tuple[Demonstration, ...]:
     """Boards without a failure for the share that the target allows, and for 1000, 100 and 10 ppm."""
-    allowed = () if target is None or not 0 < target < 1 else (1 - target,)
+    allowed = () if target is None or not 0 < target < 1 else (round(1 - target, 12),)
     rates = sorted({*allowed, *RATES}, reverse=True)
     return tuple(Demonstration(rate=r, confidence=confidence, boards=clean_boards(r, confidence)) for r in rates)

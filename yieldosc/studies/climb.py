@@ -11,8 +11,9 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 Function = Callable[[Array], Array]  # positions (d, n) in [0, 1] → outputs (k, n)
 COARSE = (0.0, 0.25, 0.5, 0.75, 1.0)  # positions tried along each dimension first
-FINE = (1 / 8, 1 / 16, 1 / 32, 1 / 64, 1 / 128, 1 / 256)  # steps to both sides after that
-MOST_ROUNDS = 24  # of each step
+FINE = (1 / 8, 1 / 16, 1 / 64, 1 / 256)  # steps to both sides after that
+MOST_ROUNDS = 16  # of each step
+LEAST_GAIN = 1e-6  # of an output's range over the climbers' starts; less is not worth another round
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,6 +59,7 @@ class _Team:
         self._signs = np.array([c.sign for c in climbers])
         self.points = np.stack([c.start for c in climbers], axis=1)
         self.values: Array = self._score(self.points)[0]
+        self._least = LEAST_GAIN * self._ranges()
 
     def rounds(self, candidates: Callable[[Array], Array]) -> None:
         """Move until nobody gains. candidates(points): positions (d, s, m) to try for each coordinate.
@@ -82,11 +84,21 @@ class _Team:
             together = self._score(joint)[0]
             better_joint = together >= alone.max(axis=0)
             reached = np.where(better_joint, together, alone.max(axis=0))
-            moving = reached > self.values
+            moving = reached > self.values + self._least
             if not moving.any():
                 return
             self.points = np.where(moving, np.where(better_joint, joint, single), self.points)
             self.values = np.where(moving, reached, self.values)
+
+    def _ranges(self) -> Array:
+        """Range (m,) of each climber's output over the starts of all that climb it, up and down."""
+        raw = np.where(np.isfinite(self.values), self._signs * self.values, np.nan)
+        found = np.zeros(len(raw))
+        for row in np.unique(self._rows):
+            own = raw[self._rows == row]
+            own = own[~np.isnan(own)]
+            found[self._rows == row] = np.ptp(own) if len(own) else 0.0
+        return found
 
     def _score(self, positions: Array) -> Array:
         """(p, m) of positions (d, p · m), the climber running fastest; −inf where there is no number."""

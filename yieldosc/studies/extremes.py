@@ -14,6 +14,7 @@ from yieldosc.errors import Finding
 from yieldosc.population import Bench, Block, Population, Streams, Variable
 from yieldosc.population.block import middle_draws
 from yieldosc.studies.box import Outputs, box_at, search
+from yieldosc.studies.parallel import Workers
 from yieldosc.studies.results import Band, CornerResult, Distribution
 from yieldosc.study import Corner
 
@@ -40,6 +41,18 @@ class _AtCorner:
     method: str
 
 
+@dataclass(frozen=True)
+class _Job:
+    """The search at one corner, as a piece of work."""
+
+    population: Population
+    bench: Bench
+    corners: tuple[Corner, ...]
+
+    def __call__(self, number: int) -> _AtCorner:
+        return _at_corner(self.population, self.bench, self.corners[number])
+
+
 def bands(
     population: Population,
     bench: Bench,
@@ -47,6 +60,7 @@ def bands(
     *,
     streams: Streams | None = None,
     units: int = 0,
+    workers: Workers | None = None,
 ) -> tuple[tuple[Band, ...], tuple[Finding, ...]]:
     """One band per output and temperature, over supplies and ages; findings where Monte Carlo lies outside.
 
@@ -54,7 +68,9 @@ def bands(
     from those units.
     """
     made: list[Band] = []
-    solved = {result.corner: _at_corner(population, bench, result.corner) for result in corners}
+    job = _Job(population, bench, tuple(result.corner for result in corners))
+    with (workers or Workers()).in_order(job, len(corners)) as answers:
+        solved = {result.corner: found for result, found in zip(corners, answers, strict=True)}
     if streams is not None:
         for result in corners:
             if _passed(solved[result.corner], result):

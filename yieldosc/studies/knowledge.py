@@ -16,10 +16,11 @@ from yieldosc.studies.parallel import Workers
 from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import RivalResult
 from yieldosc.studies.rivals import Rival, bounded_spread, good_units, half_tolerance, paired_difference
-from yieldosc.studies.run import Setup
+from yieldosc.studies.run import QUANTUM, Setup
 from yieldosc.studies.scrutiny import Knowledge
 
 DEVICES = ("transistor", "ic", "diode")
+MOST_UNITS = QUANTUM  # per set that singles out laws or one value of a device
 LOT_SIDE = "lot side"
 BY_NAME = {  # rival sets that differ in one piece of knowledge alone; the others mix several
     "all uniform": "shape", "all normal": "shape", "hollow": "shape",
@@ -47,9 +48,9 @@ def knowledge(
 ) -> tuple[Knowledge, ...]:
     """Largest span first. rivals: those of the assessment; declared_good (n,): units 0 … n − 1 of the declared set.
 
-    devices: parts whose values are tried one at a time (None: every active device). Cost: n units per set tried.
+    devices: parts whose values are tried one at a time (None: every active device). Cost: at most 4,096 units per set.
     """
-    declared = setup.population.parameters
+    declared, declared_good = setup.population.parameters, declared_good[:MOST_UNITS]
     singles = tuple(s for s in _singles(declared, devices) if s.rival.parameters != declared)
     sets = [s.rival.parameters for s in singles]
     flags = good_units(setup, sets, len(declared_good), workers=workers, meter=meter) if sets else []

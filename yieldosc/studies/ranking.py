@@ -12,7 +12,6 @@ from numpy.typing import NDArray
 
 from yieldosc.population import Block, Variable, combine
 from yieldosc.solver.solution import Solution, Status
-from yieldosc.studies.estimates import t_interval
 from yieldosc.studies.parallel import Workers
 from yieldosc.studies.progress import Meter
 from yieldosc.studies.results import Estimate, Ranking, RankLine
@@ -194,7 +193,7 @@ class _Table:
     total: Mapping[str, Estimate]
     mean_first: Mapping[str, Estimate]
     mean_total: Mapping[str, Estimate]
-    leaders: tuple[str, ...]  # parts whose difference to the first one's total may be zero, on the same scramblings
+    leaders: tuple[str, ...]  # parts whose interval of the total reaches the first one's
 
     def lines(self, per_percent: Mapping[str, float]) -> tuple[RankLine, ...]:
         return tuple(
@@ -238,8 +237,7 @@ def _table(
 
     totals = estimates(total[:, at])
     names = tuple(sorted(columns, key=lambda name: (-totals[name].estimate, name)))
-    behind = {name: total[:, at, columns[names[0]]] - total[:, at, columns[name]] for name in names[1:]}
-    leaders = (names[0], *(name for name, gap in behind.items() if t_interval(gap, confidence).low <= 0))
+    leaders = tuple(name for name in names if totals[name].high >= totals[names[0]].low)
     return _Table(names, at, estimates(first[:, at]), totals, estimates(mean(first)), estimates(mean(total)), leaders)
 
 
