@@ -70,7 +70,7 @@ def _headline(r: UpgradeResult) -> str:
     if r.sets:
         return f"Sets that reached {goal} on the units that chose them did not hold it on fresh units."
     if r.search is not None and r.search.exhausted:
-        return f"None of the {r.search.possible:,} sets of grades reaches {goal}."
+        return f"No set of the grades offered reaches {goal}."
     tried = 0 if r.search is None else r.search.tried
     return f"None of the {tried:,} sets tried reaches {goal}, nor does the best grade of every part together."
 
@@ -113,8 +113,7 @@ def _price(r: UpgradeResult, option: UpgradeOption) -> str:
 
 def _next_steps(r: UpgradeResult) -> Iterator[str]:
     if r.chosen is not None and r.chosen.changes:
-        together = " No single part reaches the target; these do together." if _pair(r) else ""
-        yield f"Buy {listed([change.order for change in r.chosen.changes])}.{together}"
+        yield f"Buy {listed([change.order for change in r.chosen.changes])}.{_why(r)}"
     elif r.chosen is not None:
         yield "Keep the declared grades: the target needs no better part."
     elif r.target is not None and not _recentre_reaches(r):
@@ -139,6 +138,15 @@ def _next_steps(r: UpgradeResult) -> Iterator[str]:
         yield "State a yield target in the Design sheet: without one no set can be chosen."
     if not r.money and r.singles:
         yield "Put prices into the BOM or the Grades sheet: with them the set is chosen by the cost of a good unit."
+
+
+def _why(r: UpgradeResult) -> str:
+    """What makes the choice one that is not obvious."""
+    if _pair(r):
+        return " No single part reaches the target; these do together."
+    if r.target is not None and r.current.low >= r.target:
+        return " The declared parts reach the target too, but a good unit costs less with this."
+    return ""
 
 
 def _pair(r: UpgradeResult) -> bool:
@@ -248,9 +256,9 @@ def _search(r: UpgradeResult) -> Iterator[str]:
         return
     combined = listed([f"({name})" if "," in name else name for name in s.purchases])
     yield (
-        f"{s.possible:,} sets of grades of {combined or 'no purchase'} are possible; {s.tried:,} were tried, in the "
-        f"order of their price, on up to {r.confirm_units:,} units each. Yield is not monotone in tolerance, so sets "
-        f"are enumerated; {s.dominated} grades were set aside because another, no dearer one fails only where they do."
+        f"Of the grades of {combined or 'no purchase'} {s.dominated} were set aside, because another, no dearer one "
+        f"fails only where they do; the rest make {s.possible:,} sets, of which {s.tried:,} were tried in the order of their "
+        f"price, on up to {r.confirm_units:,} units each. Yield is not monotone in tolerance, so sets are enumerated."
     )
     if s.left_out:
         yield f"Not combined, because frequency and margin lean less on them: {'; '.join(s.left_out)}."

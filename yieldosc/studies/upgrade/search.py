@@ -2,7 +2,7 @@
 
 Yield is not monotone in tolerance (a tighter grade around a wrong nominal loses units), so sets are enumerated. Set
 aside beforehand is only a grade that another of the same purchase beats on the draws: no dearer, and its failing units
-are nested in the other's.
+are nested in the other's, with all other parts as declared and with all of them at their best.
 """
 
 from __future__ import annotations

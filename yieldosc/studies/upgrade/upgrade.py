@@ -24,12 +24,13 @@ from yieldosc.studies.provenance import provenance
 from yieldosc.studies.results import Estimate
 from yieldosc.studies.rivals import good_units, paired_difference
 from yieldosc.studies.run import QUANTUM, Setup
+from yieldosc.studies.upgrade.company import Company, companies
 from yieldosc.studies.upgrade.moved import best_known
 from yieldosc.studies.upgrade.prices import Prices
 from yieldosc.studies.upgrade.purchases import Choice, Purchase, purchases
 from yieldosc.studies.upgrade.recentre import SCREEN, candidates, recentred
 from yieldosc.studies.upgrade.results import SearchAccount, UpgradeOption, UpgradeResult
-from yieldosc.studies.upgrade.search import MOST_UNITS, Found, Reaching, cheapest, undominated
+from yieldosc.studies.upgrade.search import MOST_UNITS, Found, Reaching, cheapest
 from yieldosc.studies.upgrade.trial import Trial, all_flags
 from yieldosc.study import Study
 
@@ -63,7 +64,8 @@ def upgrade(
     leaning = slopes(setup.population, setup.bench, reference_corner(study))
     nominals = candidates(study, setup, leaning)
     meter = Meter(progress)
-    meter.expect(single * (1 + sum(len(p.choices) for p in offered)) + SCREEN * len(nominals) + 4 * proof)
+    grades = sum(len(p.choices) for p in offered)
+    meter.expect(single * (1 + 2 * grades) + SCREEN * len(nominals) + 4 * proof)
     run = _Run(study, setup, Prices.of(study, offered), offered, leaning, single, proof, meter)
     with Workers(workers or default_workers()) as crew:
         current = run.declared(crew)
@@ -160,14 +162,18 @@ class _Run:
     def searched(self, crew: Workers) -> Found:
         """The cheapest sets among the purchases that matter most."""
         ranked = sorted(self.offered, key=self._lean, reverse=True)[:MOST_PURCHASES]
-        for purchase in ranked:
-            # what a looser grade saves is known only where prices are the user's own
-            offered = [(c, f) for c, f in self._flags[purchase.name] if self.prices.money or not c.looser]
-            self._kept.append((purchase, undominated(self.good, offered, self.prices)))
+        # what a looser grade saves is known only where prices are the user's own
+        alone = {
+            p.name: [(c, f) for c, f in self._flags[p.name] if self.prices.money or not c.looser] for p in ranked
+        }
+        together = companies(
+            self._trial(self.single), self.good, alone, self.prices, workers=crew, meter=self.meter
+        )
+        self._kept = [(p, together[p.name].kept(self.prices)) for p in ranked]
         budget = int(MOST_UNITS * min(1.0, USUAL_CORNERS / len(self.setup.corners)))
         return cheapest(
             self._trial(self.proof), [grades for _, grades in self._kept], self.prices,
-            workers=crew, meter=self.meter, most_units=budget, best_grades=self._best_grades(),
+            workers=crew, meter=self.meter, most_units=budget, best_grades=self._best_grades(together),
         )  # fmt: skip
 
     def _lean(self, purchase: Purchase) -> float:
@@ -191,16 +197,11 @@ class _Run:
             for u in ends
         )
 
-    def _best_grades(self) -> list[Choice]:
-        """Of each purchase the grade that gains most alone, the most helpful purchase first; those that gain nothing
-        are left out."""
-        base = int(np.count_nonzero(self.good))
-        best = []
-        for purchase, grades in self._kept:
-            gains = [(int(np.count_nonzero(f)) - base, c) for c, f in self._flags[purchase.name] if c in grades]
-            if gains:
-                best.append(max(gains, key=lambda pair: pair[0]))
-        return [choice for gain, choice in sorted(best, key=lambda pair: -pair[0]) if gain > 0]
+    def _best_grades(self, together: Mapping[str, Company]) -> list[Choice]:
+        """Of each purchase the grade that gains most, the most helpful purchase first; those that gain nothing are
+        left out."""
+        best = [found for p, kept in self._kept if (found := together[p.name].best(kept, self.prices)) is not None]
+        return [choice for _, choice in sorted(best, key=lambda pair: -pair[0])]
 
     def confirmed(self, reaching: Sequence[Reaching]) -> tuple[UpgradeOption, ...]:
         """The choice and its runners-up, with their yield on fresh units."""
