@@ -28,7 +28,7 @@ def extremes(book: Workbook, a: Assessment) -> None:
     page = Page.new(
         book, "Extremes", "Three bands: extreme value, root-sum-square, simulated",
         f"Frequency as deviation from {format_quantity(scale.target_hz, 'Hz', 9)} in {scale.unit}. Only extreme value "
-        "is a bound, and only where every shape is bounded.", landscape=False,
+        "is meant as a bound: as far as its search reaches, and only where every shape is bounded.", landscape=False,
     )  # fmt: skip
     headings = ("Temperature", "Extreme, low", "Extreme, high", "Root-sum-square, low", "Root-sum-square, high",
                 "Simulated, low", "Simulated, high", "Last gain of the search", "Remark")  # fmt: skip

@@ -7,6 +7,7 @@ from yieldosc.population import Population
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies.nominal import bench_ratio, nominal_values, reference_corner
 from yieldosc.studies.run import Setup
+from yieldosc.studies.temperature_check import with_between
 from yieldosc.study import Corner, Study
 
 
@@ -23,7 +24,7 @@ def declared_setup(study: Study, *, seed: int, evaluator: Evaluator | None = Non
         limits_width_hz=design.frequency_high_hz - design.frequency_low_hz,
     )
     ratio = bench_ratio(study, population, solver)
-    return Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0)
+    return with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0))
 
 
 def testing_corner(study: Study) -> Corner:
