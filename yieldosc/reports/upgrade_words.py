@@ -257,8 +257,9 @@ def _search(r: UpgradeResult) -> Iterator[str]:
     combined = listed([f"({name})" if "," in name else name for name in s.purchases])
     yield (
         f"Of the grades of {combined or 'no purchase'} {s.dominated} were set aside, because another, no dearer one "
-        f"fails only where they do; the rest make {s.possible:,} sets, of which {s.tried:,} were tried in the order of their "
-        f"price, on up to {r.confirm_units:,} units each. Yield is not monotone in tolerance, so sets are enumerated."
+        f"fails only where they do; the rest make {s.possible:,} sets, of which {s.tried:,} were tried in the order of "
+        f"their price, on up to {r.confirm_units:,} units each. Yield is not monotone in tolerance, so sets are "
+        "enumerated."
     )
     if s.left_out:
         yield f"Not combined, because frequency and margin lean less on them: {'; '.join(s.left_out)}."
