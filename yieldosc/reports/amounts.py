@@ -34,6 +34,13 @@ def upper_text(rate: Estimate) -> str:
     return rate_text(none).removeprefix("below ")
 
 
+def outward(estimate: Estimate, *, target: float | None = None) -> tuple[float, float, float]:
+    """Estimate, low and high in per cent with the digits that the interval deserves, bounds outward: for cells."""
+    goal = None if target is None else 100 * target
+    shown = rounded(100 * estimate.estimate, 100 * estimate.low, 100 * estimate.high, target=goal)
+    return float(shown.estimate), float(shown.low), float(shown.high)
+
+
 def points_text(difference: Estimate) -> str:
     """A difference of yields in percentage points: "+0.92 points (+0.81 to +1.03)"."""
     estimate, interval = bare_points(difference).split(" ", 1)

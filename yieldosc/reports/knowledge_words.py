@@ -65,8 +65,7 @@ def bench_sentences(a: Assessment) -> tuple[str, ...]:
 def bench_sentence(item: BenchItem) -> str:
     """What to measure, how many samples, and why so many."""
     parts = listed(list(item.parts))
-    span = rounded(100 * item.span, 0.0, 100 * item.span).estimate
-    gain = f"{span} points of yield hang on it"
+    gain = f"{span_points(item)} points of yield hang on it"
     sure = percent(item.confidence)
     if item.quantity == "distribution":
         return (
@@ -89,6 +88,11 @@ def bench_sentence(item: BenchItem) -> str:
 
 def _settings(item: BenchItem) -> str:
     return f"p = {item.coverage:g}, C = {item.confidence:g}: {WILKS}; no distribution supposed"
+
+
+def span_points(item: BenchItem) -> str:
+    """The span in points, with two digits of its half."""
+    return rounded(100 * item.span, 0.0, 100 * item.span).estimate
 
 
 def rule_text(item: BenchItem) -> str:

@@ -8,7 +8,7 @@ from openpyxl import Workbook
 from openpyxl.chart import Reference
 
 from yieldosc.quantities import format_quantity
-from yieldosc.reports.amounts import Deviation, bare_percent
+from yieldosc.reports.amounts import Deviation, bare_percent, outward
 from yieldosc.reports.findings import Summary
 from yieldosc.reports.lot_words import lots_sentence
 from yieldosc.reports.scales import decimals_of, scaled_unit, with_unit
@@ -16,10 +16,10 @@ from yieldosc.reports.terminal import one_line
 from yieldosc.reports.workbook_charts import bars
 from yieldosc.reports.workbook_page import ROW_CM, Page, Value
 from yieldosc.studies.digits import rate_text
-from yieldosc.studies.results import Assessment, Band, Estimate, Lots
+from yieldosc.studies.results import Assessment, Band, Estimate, Look, Lots
 
-POINTS = '+0.000" points";−0.000" points";0.000" points"'
-PERCENT = "0.0000%"
+POINTS = '+0.0######" points";−0.0######" points";0" points"'  # the cells are rounded to their intervals
+PERCENT = '0.0######" %"'
 
 
 def extremes(book: Workbook, a: Assessment) -> None:
@@ -72,11 +72,12 @@ def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
         page.text("No set was tried.")
         return
     ordered = [first_set, *sorted((r for r in others if r is not None), key=lambda r: r.yield_.estimate)]
+    target, sheet = a.study.design.yield_target, page.sheet
     rows: list[list[Value]] = [
         [
             r.name,
             bare_percent(r.yield_),
-            *_bounds(r.yield_),
+            *_bounds(r.yield_, target),
             r.yield_.failures,
             *_points(r.difference),
             r.meaning,
@@ -90,7 +91,6 @@ def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
         page.text("No unit failed in any set.")
         page.finish()
         return
-    target, sheet = a.study.design.yield_target, page.sheet
     allows = "" if target is None else f"; the target allows {(1 - target) * a.rival_units:,.0f}"
     chart = bars(
         sheet, f"Units failing of {a.rival_units:,}{allows}", "units failing",
@@ -103,16 +103,17 @@ def assumptions(book: Workbook, a: Assessment, summary: Summary) -> None:
     page.finish()
 
 
-def _bounds(yield_: Estimate) -> list[Value]:
-    """Low and high; where no unit failed the high end is called that, never 100 %, and the low end likewise."""
-    low: Value = "none good" if yield_.failures is not None and yield_.failures == yield_.units else yield_.low
-    return [low, "none failed" if yield_.failures == 0 else yield_.high]
+def _bounds(yield_: Estimate, target: float | None = None) -> list[Value]:
+    """Low and high in per cent; where no unit failed the high end is called that, never 100 %, the low end likewise."""
+    _, low, high = outward(yield_, target=target)
+    all_failed = yield_.failures is not None and yield_.failures == yield_.units
+    return ["none good" if all_failed else low, "none failed" if yield_.failures == 0 else high]
 
 
 def _points(difference: Estimate | None) -> list[Value]:
     if difference is None:
         return ["", "", ""]
-    return [100 * difference.estimate, 100 * difference.low, 100 * difference.high]
+    return list(outward(difference))
 
 
 def better_grades(book: Workbook, a: Assessment) -> None:
@@ -121,8 +122,8 @@ def better_grades(book: Workbook, a: Assessment) -> None:
         book, "Better grades", "What the next tighter grade of one part does", "The same draws as the declared set.",
     )  # fmt: skip
     rows: list[list[Value]] = [
-        [one_line(t.part), t.from_tolerance, t.to_tolerance, bare_percent(t.yield_), *_bounds(t.yield_),
-         *_points(t.difference)]
+        [one_line(t.part), t.from_tolerance, t.to_tolerance, bare_percent(t.yield_),
+         *_bounds(t.yield_, a.study.design.yield_target), *_points(t.difference)]
         for t in a.tighter
     ]  # fmt: skip
     headings = ("Part", "From", "To", "Yield", "Low", "High", "Change", "Change, low", "Change, high")
@@ -138,11 +139,16 @@ def better_grades(book: Workbook, a: Assessment) -> None:
         page.table(LOT_HEADINGS, rows, ("#,##0", "#,##0", *("0.0%",) * 5, None), freeze=False)
     page.text(f"Looks at the joint yield: {len(a.looks)} of {a.looks_planned} planned", size=12, bold=True)
     looks: list[list[Value]] = [
-        [k.number, k.units, k.failures, k.low, "none failed" if k.failures == 0 else k.high] for k in a.looks
+        [k.number, k.units, k.failures, *_bounds(_look_yield(k), a.study.design.yield_target)] for k in a.looks
     ]
     page.table(("Look", "Units", "Failing", "Yield, low", "Yield, high"), looks,
                (None, "#,##0", "#,##0", PERCENT, PERCENT), freeze=False)  # fmt: skip
     page.finish()
+
+
+def _look_yield(look: Look) -> Estimate:
+    good = (look.units - look.failures) / look.units
+    return Estimate(estimate=good, low=look.low, high=look.high, units=look.units, failures=look.failures)
 
 
 LOT_HEADINGS = ("Lots", "Units each", "5 % point", "Median", "95 % point", "By chance alone, 5 %",

@@ -7,14 +7,21 @@ import math
 from openpyxl import Workbook
 from openpyxl.chart import Reference
 
-from yieldosc.reports.amounts import listed
-from yieldosc.reports.knowledge_words import bench_sentence, knowledge_lines, question, rule_text, spread_sentence
+from yieldosc.reports.amounts import listed, outward
+from yieldosc.reports.knowledge_words import (
+    bench_sentence,
+    knowledge_lines,
+    question,
+    rule_text,
+    span_points,
+    spread_sentence,
+)
 from yieldosc.reports.terminal import one_line
 from yieldosc.reports.workbook_charts import around_zero
 from yieldosc.reports.workbook_page import ROW_CM, Page, Value
 from yieldosc.studies.results import Assessment, RivalResult
 
-POINTS = '+0.000" points";−0.000" points";0" points"'
+POINTS = '+0.0######" points";−0.0######" points";0" points"'  # the cells are rounded to their intervals
 MOST_BARS = 16
 
 
@@ -23,8 +30,8 @@ def what_to_measure(book: Workbook, a: Assessment) -> None:
     found = knowledge_lines(a)
     page = Page.new(
         book, "What to measure", "Spread by assumption: which piece of knowledge the yield hangs on",
-        "Change of the yield in percentage points against the declared set, on the same units, one piece of knowledge at "
-        "a time. A span of the sets tried, not a bound.",
+        "Change of the yield in percentage points against the declared set, on the same units, one piece of knowledge "
+        "at a time. A span of the sets tried, not a bound.",
     )  # fmt: skip
     if not found:
         page.sheet.freeze_panes = f"A{page.row}"
@@ -33,7 +40,7 @@ def what_to_measure(book: Workbook, a: Assessment) -> None:
         return
     page.sentence(spread_sentence(a))
     rows: list[list[Value]] = [
-        [one_line(k.name), 100 * k.fall, 100 * k.rise, _named(k.lowest), _named(k.highest), k.sets,
+        [one_line(k.name), _points(k.lowest), _points(k.highest), _named(k.lowest), _named(k.highest), k.sets,
          "yes" if k.measurable else "no", question(k)]
         for k in found
     ]  # fmt: skip
@@ -67,12 +74,17 @@ def _bench(page: Page, a: Assessment) -> None:
     for item in items:
         page.sentence(f"•  {bench_sentence(item)}")
     rows: list[list[Value]] = [
-        [one_line(item.knowledge), listed(list(item.parts)), item.samples, 100 * item.span, rule_text(item)]
+        [one_line(item.knowledge), listed(list(item.parts)), item.samples, float(span_points(item)), rule_text(item)]
         for item in items
     ]
     page.row += 1
     page.table(("Knowledge", "Parts", "Samples of each", "Span", "Why so many"), rows,
                (None, None, "#,##0", POINTS, None), freeze=False)  # fmt: skip
+
+
+def _points(rival: RivalResult | None) -> float:
+    """Change in points, with the digits that its interval deserves."""
+    return 0.0 if rival is None or rival.difference is None else outward(rival.difference)[0]
 
 
 def _named(rival: RivalResult | None) -> str:

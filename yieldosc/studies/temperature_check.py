@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 from numpy.typing import NDArray
 
+from yieldosc.parts.laws import whole_interval
 from yieldosc.studies.between import Between, conditions_of, dense, halves
 from yieldosc.studies.distance import gaps, sides
 from yieldosc.studies.estimates import clopper_pearson
@@ -22,12 +25,18 @@ MOST_CHECKED = 1500  # units near a limit that are searched densely after the ru
 def with_between(setup: Setup) -> Setup:
     """The same setup, whose units near a limit are also judged between the temperatures; as it is at one temperature.
 
-    Cost: 1,024 units at eight times as many temperatures.
+    How near is found for the declared parts and for crystals over their whole angle, which other sets try. Cost: 1,024
+    units of each at eight times as many temperatures.
     """
     grid_c = tuple(sorted({c.temperature_c for c in setup.corners}))
     if len(grid_c) < 2 or not sides(setup.judge):
         return setup
+    declared = setup.population.parameters
+    wide = tuple(p if p.law is None else replace(p, law=whole_interval(p.law)) for p in declared)
     falls = excursions(setup, grid_c)
+    if wide != declared:
+        other = replace(setup, population=setup.population.with_parameters(wide))
+        falls = np.maximum(falls, excursions(other, grid_c))
     reach = tuple(float(f) for f in SAFETY * falls)
     return setup.with_between(Between(grid_c, halves(setup.population, grid_c), reach))
 
