@@ -9,6 +9,8 @@ import numpy as np
 import pytest
 
 from yieldosc.parts.laws import parse_law
+from yieldosc.parts.shapes import Measured
+from yieldosc.parts.table_law import TableLaw
 from yieldosc.reports.compare_words import compare_page
 from yieldosc.studies.compare.compare import compare
 from yieldosc.studies.compare.differences import differences
@@ -155,6 +157,49 @@ def test_a_role_of_one_study_only(make_study, make_part):
     b = make_study(extra=(make_part("GBW", 1e6, 0.4),))
     assert said(differences(a, b)) == [("part", "GBW", "—", "1 MHz, ±40 %")]
     assert said(differences(b, a)) == [("part", "GBW", "1 MHz, ±40 %", "—")]
+
+
+def test_tables_and_measured_lots_of_one_name_are_told_apart(make_study):
+    def table(end):
+        return TableLaw((-40.0, 25.0, 85.0), (0.0, 0.0, end), "table NTC")
+
+    a = changed(changed(make_study(), "R1", law=table(0.01)), "C1", shape=Measured((9.9e-9, 10.1e-9)))
+    b = changed(changed(make_study(), "R1", law=table(0.02)), "C1", shape=Measured((9.8e-9, 10.2e-9)))
+    assert said(differences(a, a)) == []
+    assert said(differences(a, b)) == [
+        ("part", "R1 temperature law", "table NTC", "table NTC, other values"),
+        ("assumption", "C1 shape", "measured", "measured, other values"),
+    ]
+
+
+def test_a_nominal_that_moves_by_a_few_ppm_is_seen(make_study):
+    a = make_study()
+    b = changed(a, "R1", typical=10e3 * (1 + 2e-6))
+    assert said(differences(a, b))[0] == ("part", "R1 value", "10 kΩ", "10.00002 kΩ")
+
+
+def test_what_the_factory_does_is_compared_too(make_study):
+    a = make_study(measurement_sd_hz=0.5, test_temperature_c=25.0, trim_role="R1", trim_low=9e3, trim_high=11e3)
+    b = make_study(
+        measurement_sd_hz=1.5, test_temperature_c=20.0, trim_role="R1", trim_low=9e3, trim_high=11e3, trim_step=50.0,
+        failed_unit_cost=12.5, build_quantity=1000.0,
+    )  # fmt: skip
+    assert said(differences(a, b)) == [
+        ("condition", "trim step", "—", "50"),
+        ("condition", "test temperature", "25 °C", "20 °C"),
+        ("condition", "measurement sd", "500 mHz", "1.5 Hz"),
+        ("condition", "build quantity", "—", "1000"),
+        ("condition", "cost of a failed unit", "—", "12.5"),
+    ]
+
+
+def test_digests_that_differ_in_what_moves_no_yield(make_study, run):
+    a = make_study()
+    r = run(a, replace(a, digest="1" * 64), units=1024)
+    assert [f.text for f in r.findings] == [
+        "the digests differ, but in nothing that moves a yield: prices, grades, alternates, pilot boards or which parts "
+        "share a reel"
+    ]
 
 
 def test_confidences_that_differ_are_said(make_study, run):

@@ -157,6 +157,14 @@ def _with(setup: Setup, after: Study, roles: Sequence[str]) -> Setup:
 
 
 def _findings(before: Study, after: Study, found: Sequence[Difference]) -> list[Finding]:
+    if not found and before.digest != after.digest:
+        return [
+            Finding(
+                "note", "no-listed-difference",
+                "the digests differ, but in nothing that moves a yield: prices, grades, alternates, pilot boards or "
+                "which parts share a reel",
+            )
+        ]  # fmt: skip
     if not found:
         return [Finding("note", "no-difference", "the two studies say the same in everything that a yield depends on")]
     if before.design.confidence != after.design.confidence:

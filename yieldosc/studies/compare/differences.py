@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 
+from yieldosc.circuits.own_circuit import NAME as OWN
 from yieldosc.parts.grades import tolerance_text
 from yieldosc.parts.parameter import Parameter
 from yieldosc.quantities import format_quantity
@@ -37,10 +38,18 @@ CONDITIONS = {
     "trim_role": ("trim role", ""),
     "trim_low": ("trim low", ""),
     "trim_high": ("trim high", ""),
+    "trim_step": ("trim step", ""),
+    "trim_step_tolerance": ("trim step tolerance", "1"),
+    "trim_series": ("trim series", ""),
+    "test_temperature_c": ("test temperature", "°C"),
+    "measurement_sd_hz": ("measurement sd", "Hz"),
+    "measurement_bias_hz": ("measurement bias", "Hz"),
+    "build_quantity": ("build quantity", "1"),
+    "failed_unit_cost": ("cost of a failed unit", "1"),
 }
-PART_FIELDS, ASSUMPTION_FIELDS = ("part", "value", "tolerance", "temperature law", "solder", "drift"), (
-    "shape", "reel share", "source",
-)  # fmt: skip
+PART_FIELDS = ("part", "value", "tolerance", "temperature law", "solder", "drift", "ageing")
+ASSUMPTION_FIELDS = ("shape", "reel share", "source")
+OTHER_VALUES = "{}, other values"  # of a table or of measured parts that has the same name in both
 
 
 def differences(before: Study, after: Study) -> tuple[Difference, ...]:
@@ -58,6 +67,11 @@ def differences(before: Study, after: Study) -> tuple[Difference, ...]:
 def _circuit(before: Study, after: Study) -> Iterator[Difference]:
     if before.circuit.name != after.circuit.name:
         yield Difference(group="circuit", name="circuit", before=before.circuit.name, after=after.circuit.name)
+    elif _rows(before) != _rows(after):
+        yield Difference(
+            group="circuit", name="branch table", before=f"{len(_rows(before))} branches",
+            after=OTHER_VALUES.format(f"{len(_rows(after))} branches"),
+        )  # fmt: skip
     a, b = before.circuit.options, after.circuit.options
     for name in dict.fromkeys((*a, *b)):
         if a.get(name) != b.get(name):
@@ -66,8 +80,14 @@ def _circuit(before: Study, after: Study) -> Iterator[Difference]:
             )
 
 
+def _rows(study: Study) -> list[tuple[object, ...]]:
+    """The branches that options do not decide: those of the user's own table."""
+    return [(b.kind, b.nodes, b.symbols, b.gain_element) for b in study.circuit.branches if study.circuit.name == OWN]
+
+
 def _parts(before: Study, after: Study, fields: tuple[str, ...], group: Group) -> Iterator[Difference]:
     a, b = ({p.role: _texts(p) for p in study.parameters} for study in (before, after))
+    b = {role: _told_apart(texts, before, after, role) if role in a else texts for role, texts in b.items()}
     for role in dict.fromkeys((*a, *b)):
         if role not in a or role not in b:
             if group == "part":
@@ -86,15 +106,27 @@ def _parts(before: Study, after: Study, fields: tuple[str, ...], group: Group) -
 def _texts(p: Parameter) -> Mapping[str, str]:
     return {
         "part": p.part,
-        "value": format_quantity(p.typical, p.unit, 6),
+        "value": format_quantity(p.typical, p.unit, 9),
         "tolerance": tolerance_text(p),
         "temperature law": ABSENT if p.law is None else p.law.text,
         "solder": _sides(p.solder),
         "drift": _sides(p.drift),
+        "ageing": ABSENT if p.ageing is None else f"{p.ageing.per_decade * 100:g} % per decade",
         "shape": p.shape.text,
         "reel share": f"{p.reel_share:g}" if p.reel is not None else ABSENT,
         "source": p.pedigree,
     }
+
+
+def _told_apart(texts: Mapping[str, str], before: Study, after: Study, role: str) -> Mapping[str, str]:
+    """The second study's texts, where a law or a shape of the same name is another one."""
+    p, q = before.parameter(role), after.parameter(role)
+    made = dict(texts)
+    if p.law is not None and q.law is not None and p.law.text == q.law.text and p.law != q.law:
+        made["temperature law"] = OTHER_VALUES.format(q.law.text)
+    if p.shape.text == q.shape.text and p.shape != q.shape:
+        made["shape"] = OTHER_VALUES.format(q.shape.text)
+    return made
 
 
 def _whole(texts: Mapping[str, str] | None) -> str:
