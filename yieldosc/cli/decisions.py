@@ -6,9 +6,7 @@ import argparse
 import hashlib
 from collections.abc import Callable, Mapping
 from pathlib import Path
-from typing import TypedDict
-
-from openpyxl import Workbook
+from typing import Protocol, TypedDict
 
 from yieldosc.cli import files
 from yieldosc.cli.streams import Streams
@@ -84,6 +82,12 @@ def _mapping(value: object) -> Mapping[str, object]:
     return value
 
 
+class _Book(Protocol):
+    """A workbook that can be written."""
+
+    def save(self, filename: Path) -> None: ...
+
+
 class _Settings(TypedDict):
     units: int | None
     seed: int
@@ -106,7 +110,7 @@ def _out(
     workbook: Path,
     *,
     page: Decision,
-    book: Callable[[], Workbook],
+    book: Callable[[], _Book],
     content: dict[str, object],
     findings: tuple[Finding, ...],
 ) -> None:
