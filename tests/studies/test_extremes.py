@@ -12,8 +12,9 @@ from yieldosc.parts.shapes import Normal
 from yieldosc.population import Bench, Population
 from yieldosc.solver.solution import Solution, Status
 from yieldosc.studies.box import Box, box_at, search
-from yieldosc.studies.extremes import bands, root_sum_square_ends
+from yieldosc.studies.extremes import bands
 from yieldosc.studies.gather import layouts
+from yieldosc.studies.root_sum_square import root_sum_square_ends
 from yieldosc.studies.run import Setup
 from yieldosc.studies.yields import corner_results, run_units
 from yieldosc.study import Corner
@@ -94,7 +95,8 @@ def test_more_roles_than_corners_can_try_are_searched():
     assert made.high[0] == pytest.approx(np.maximum(-weights, 2 * weights).sum())
     assert made.gap[0] == 0  # the finest step gained nothing
     assert made.method == (
-        "64 corners of the box of 20 roles and 64 points inside, the best refined by coordinate search to 1/256 of the box"
+        "64 corners and those that slopes point to of the box of 20 roles and 64 points inside, the best refined by "
+        "coordinate search to 1/256 of the box"
     )
 
 

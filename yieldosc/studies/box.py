@@ -21,6 +21,7 @@ Array = NDArray[np.float64]
 Outputs = Callable[[dict[str, Array]], Array]  # role → (n,) to outputs (k, n)
 MOST_CORNERS = 2**12
 STARTS = 64  # points inside; and corners tried in boxes with more of them
+SLOPE_STEP = 0.1
 INSIDE = 2  # of the points inside, so many climb for each end of each output
 
 
@@ -84,46 +85,78 @@ class Extremes:
     method: str
 
 
-def search(box: Box, outputs: Outputs, *, seeds: Array | None = None) -> Extremes:
-    """Extremes of each output over the box, and how they were found. seeds: further starting points (d, n).
+def search(box: Box, outputs: Outputs) -> Extremes:
+    """Extremes of each output over the box, and how they were found.
 
-    Starts from all 2^d corners while d ≤ 12, else from 64 of them and from 64 points inside; the best of each climb by
-    coordinates, at last in steps of 1/256 of the box.
+    Starts from all 2^d corners while d ≤ 12, else from those that the slopes at the middle point to and from 64 others;
+    and from 64 points inside. The best of each climb by coordinates, at last in steps of 1/256 of the box.
     """
+
+    def function(positions: Array) -> Array:
+        return outputs(box.at(positions))
+
     d = len(box.free)
     every = 2**d <= MOST_CORNERS
     generator = np.random.Generator(np.random.Philox(key=d))
-    corners = (
-        np.array(list(product((0.0, 1.0), repeat=d)), dtype=float).T
-        if every
-        else generator.integers(0, 2, size=(d, STARTS)).astype(float)
-    )
+    if every:
+        corners = np.array(list(product((0.0, 1.0), repeat=d)), dtype=float).T
+    else:
+        corners = np.concatenate([_pointed_to(function, d), generator.integers(0, 2, size=(d, STARTS))], axis=1)
     inside = generator.random((d, STARTS if d else 0))
-    starts = np.concatenate([corners, inside] if seeds is None else [corners, inside, seeds], axis=1)
-    count = corners.shape[1]
+    starts = np.concatenate([corners, inside], axis=1)
+    where = f"all {corners.shape[1]} corners" if every else f"{STARTS} corners and those that slopes point to"
     method = (
-        f"all {count} corners of the box of {d} roles" if every else f"{STARTS} corners of the box of {d} roles"
-    ) + f" and {STARTS} points inside, the best refined by coordinate search to 1/256 of the box"
+        f"{where} of the box of {d} roles and {STARTS} points inside, the best refined by coordinate search to 1/256 "
+        "of the box"
+    )
+    found = function(starts)
+    goals = [(k, sign) for k in range(len(found)) for sign in (-1.0, 1.0)]
+    climbers = [
+        Climber(k, sign, starts[:, i])
+        for k, sign in goals
+        for i in _chosen(sign * found[k], corners.shape[1], 1 if every else 2)
+    ]
+    return _reached(function, climbers, len(found), method)
+
+
+def search_from(box: Box, outputs: Outputs, starts: Array) -> Extremes:
+    """The same from given points (d, n) alone: one climber for each end of each output."""
 
     def function(positions: Array) -> Array:
         return outputs(box.at(positions))
 
     found = function(starts)
-    goals = [(k, sign) for k in range(len(found)) for sign in (-1.0, 1.0)]
     climbers = [
-        Climber(k, sign, starts[:, i]) for k, sign in goals for i in _chosen(sign * found[k], count, 1 if every else 4)
+        Climber(k, sign, starts[:, _chosen(sign * found[k], starts.shape[1], 1)[0]])
+        for k in range(len(found))
+        for sign in (-1.0, 1.0)
     ]
+    return _reached(function, climbers, len(found), "from the outermost simulated units")
+
+
+def _reached(function: Callable[[Array], Array], climbers: list[Climber], count: int, method: str) -> Extremes:
+    """The ends that the climbers of `count` outputs reach."""
     reached = climb(function, climbers)
     ends: dict[tuple[int, float], tuple[float, float]] = {}
     for value, last, c in zip(reached.values, reached.last, climbers, strict=True):
         ends[c.output, c.sign] = max(ends.get((c.output, c.sign), (-np.inf, 0.0)), (float(value), float(last)))
-    rows = range(len(found))
+    rows = range(count)
     return Extremes(
         low=np.array([-ends[k, -1.0][0] for k in rows]),
         high=np.array([ends[k, 1.0][0] for k in rows]),
         gap=np.array([max(ends[k, -1.0][1], ends[k, 1.0][1]) for k in rows]),
         method=method,
     )
+
+
+def _pointed_to(function: Callable[[Array], Array], d: int) -> Array:
+    """Corners (d, 2k) to which the slopes of each output at the middle of the box point, down and up."""
+    middle = np.full((d, 2 * d), 0.5)
+    middle[np.arange(d), np.arange(d)] += SLOPE_STEP
+    middle[np.arange(d), d + np.arange(d)] -= SLOPE_STEP
+    found = function(middle)
+    rising = np.nan_to_num(found[:, :d] - found[:, d:]) > 0  # (k, d)
+    return np.concatenate([~rising, rising]).T.astype(float)
 
 
 def _chosen(values: Array, corners: int, count: int) -> list[int]:

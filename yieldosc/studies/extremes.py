@@ -2,31 +2,22 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
-from dataclasses import dataclass
-from typing import Literal
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.errors import Finding
-from yieldosc.population import Bench, Block, Population, Streams, Variable
-from yieldosc.population.block import middle_draws
-from yieldosc.studies.box import Outputs, box_at, search
+from yieldosc.population import Bench, Population, Streams
+from yieldosc.studies.box import Outputs, box_at, search, search_from
 from yieldosc.studies.parallel import Workers
 from yieldosc.studies.results import Band, CornerResult, Distribution
+from yieldosc.studies.root_sum_square import RSS, Output, root_sum_square, root_sum_square_ends
 from yieldosc.study import Corner
 
 Array = NDArray[np.float64]
-Output = Literal["frequency_hz", "startup_margin"]
 OUTPUTS: tuple[Output, ...] = ("frequency_hz", "startup_margin")
-GRID = 1000  # midpoints of u over which a cause's standard deviation is taken
-SDS = 3.0  # half-width of the root-sum-square band in standard deviations
-RSS: dict[Output, str] = {
-    "frequency_hz": f"±{SDS:g} standard deviations",
-    "startup_margin": f"±{SDS:g} standard deviations of the logarithm",
-}
 PIECE = 8192  # units solved at a time when the search starts again from them
 ROUNDING = 1e-9  # relative; Monte Carlo further outside than this is reported
 
@@ -74,8 +65,8 @@ def bands(
     if streams is not None:
         for result in corners:
             if _passed(solved[result.corner], result):
-                seeds = _outermost(population, bench, result.corner, streams, units)
-                solved[result.corner] = _at_corner(population, bench, result.corner, seeds)
+                starts = _outermost(population, bench, result.corner, streams, units)
+                solved[result.corner] = _continued(population, bench, solved[result.corner], result.corner, starts)
     for temperature_c in dict.fromkeys(result.corner.temperature_c for result in corners):
         here = [result for result in corners if result.corner.temperature_c == temperature_c]
         for k, output in enumerate(OUTPUTS):
@@ -155,67 +146,33 @@ def outside_finding(band: Band, extreme: tuple[float, float]) -> Finding:
     )
 
 
-def root_sum_square_ends(centre: float, sd: float, output: Output) -> tuple[float, float]:
-    """Ends of the band. A margin is a ratio of two gains: three standard deviations of its logarithm, so that a skewed
-    one never passes zero; a frequency spreads little, three of its own."""
-    if output == "startup_margin" and centre > 0:
-        factor = math.exp(SDS * sd / centre)
-        return centre / factor, centre * factor
-    return centre - SDS * sd, centre + SDS * sd
-
-
-def _at_corner(population: Population, bench: Bench, corner: Corner, seeds: Array | None = None) -> _AtCorner:
+def _outputs_at(population: Population, bench: Bench, corner: Corner) -> Outputs:
     def outputs(values: dict[str, Array]) -> Array:
         solution = bench.solve_values(values, corner, population.own_law)
         return np.stack([solution.frequency_hz, solution.startup_margin])
 
-    centre, sd = _root_sum_square(population, corner, outputs)
+    return outputs
+
+
+def _at_corner(population: Population, bench: Bench, corner: Corner) -> _AtCorner:
+    outputs = _outputs_at(population, bench, corner)
+    centre, sd = root_sum_square(population, corner, outputs)
     if not population.bounded:
         return _AtCorner(centre, sd, None, None, None, "no extreme value: a shape is open")
-    found = search(box_at(population, corner), outputs, seeds=seeds)
-    again = "" if seeds is None else ", again from the outermost simulated units"
-    return _AtCorner(centre, sd, found.low, found.high, found.gap, f"{found.method}{again}")
+    found = search(box_at(population, corner), outputs)
+    return _AtCorner(centre, sd, found.low, found.high, found.gap, found.method)
 
 
-def _root_sum_square(population: Population, corner: Corner, outputs: Outputs) -> tuple[Array, Array]:
-    """Median unit's outputs (2,) and their standard deviations (2,) to first order, reels' correlation included."""
-    middle = {k: np.asarray(v) for k, v in median_values(population, corner).items()}
-    every = population.variables
-    sds = [cause_sd(population, v, corner) for v in every]
-    roles = list(dict.fromkeys(v.role for v in every))
-    spans = {role: max(sd for sd, v in zip(sds, every, strict=True) if v.role == role) for role in roles}
-    roles = [role for role in roles if spans[role] > 0]
-    columns = 1 + 2 * len(roles)
-    values = {k: np.full(columns, v) for k, v in middle.items()}
-    for i, role in enumerate(roles):
-        values[role][1 + 2 * i] += spans[role] / 10
-        values[role][2 + 2 * i] -= spans[role] / 10
-    found = outputs(values)
-    slopes = {role: (found[:, 1 + 2 * i] - found[:, 2 + 2 * i]) / (spans[role] / 5) for i, role in enumerate(roles)}
-    effects = [slopes.get(v.role, np.zeros(2)) * sd for v, sd in zip(every, sds, strict=True)]
-    variance = sum((e**2 for e in effects), np.zeros(2))
-    for i, first in enumerate(every):
-        for j in range(i):
-            variance = variance + 2 * _correlation(first, every[j]) * effects[i] * effects[j]
-    return found[:, 0], np.sqrt(np.maximum(variance, 0))
-
-
-def _correlation(first: Variable, second: Variable) -> float:
-    """Of two variables of one reel: (6/π)·asin(ρ/2), exact for uniform parts."""
-    if not (first.reel_counts and second.reel_counts) or first.reel_stream != second.reel_stream:
-        return 0.0
-    return float(6 / np.pi * np.arcsin(np.sqrt(first.share * second.share) / 2))
-
-
-def median_values(population: Population, corner: Corner) -> dict[str, float]:
-    """Role → value of the unit whose every variable is at its median."""
-    values = Block(population, middle_draws(population.variables, 1), 1).values(corner)
-    return {role: float(np.ravel(v)[0]) for role, v in values.items()}
-
-
-def cause_sd(population: Population, variable: Variable, corner: Corner) -> float:
-    """Standard deviation of a role's value from one of its causes alone, at a corner [SI unit of the role]."""
-    draws = middle_draws(population.variables, GRID)
-    draws[variable.role][variable.cause] = (np.arange(GRID) + 0.5) / GRID
-    alone = population.only(variable.role)
-    return float(np.std(Block(alone, draws, GRID).values(corner)[variable.role]))
+def _continued(
+    population: Population, bench: Bench, before: _AtCorner, corner: Corner, starts: Array
+) -> _AtCorner:
+    """The wider of what was found before and what is found from these points (d, m)."""
+    found = search_from(box_at(population, corner), _outputs_at(population, bench, corner), starts)
+    assert before.low is not None and before.high is not None and before.gap is not None
+    return replace(
+        before,
+        low=np.fmin(before.low, found.low),
+        high=np.fmax(before.high, found.high),
+        gap=np.fmax(before.gap, found.gap),
+        method=f"{before.method}, again {found.method}",
+    )
