@@ -15,7 +15,7 @@ from yieldosc.sheets.grid import Grid
 from yieldosc.sheets.opening import open_book
 
 OLE = b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1"
-LIMITS = "at most 20000 rows and 512 columns are read; delete what is not the BOM and save it again"
+LIMITS = "at most 10000 rows and 512 columns are read; delete what is not the BOM and save it again"
 
 
 def texts(grid: Grid) -> list[list[str]]:
@@ -213,7 +213,7 @@ def test_foreign_and_encrypted_files(tmp_path: Path) -> None:
         "file-broken",
         "the file is damaged or holds no spreadsheet; open it in a spreadsheet program and save it again",
     )
-    assert refused(tmp_path, b"R1\n" * 20_002) == ("file-limit", f"a sheet reaches row 20003 and column 1; {LIMITS}")
+    assert refused(tmp_path, b"R1\n" * 10_002) == ("file-limit", f"a sheet reaches row 10003 and column 1; {LIMITS}")
 
 
 def test_paths_that_are_no_files(tmp_path: Path) -> None:

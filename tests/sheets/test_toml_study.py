@@ -1,6 +1,7 @@
 """A study as text beside its BOM: the same digest as the workbook, and its own refusals whole."""
 
 import csv
+import os
 from dataclasses import replace
 
 import pytest
@@ -91,13 +92,13 @@ def test_roles_that_are_no_tables(tmp_path, roles):
 
 def test_a_study_that_is_no_file_or_too_large(tmp_path):
     path = tmp_path / "study.toml"
-    path.write_text("#" * 2_000_001)
+    path.write_text("#" * 1_000_001)
     with pytest.raises(InputError) as caught:
         load_study(path)
-    assert str(caught.value) == "study.toml: study.toml is larger than 2,000,000 bytes; a study is not"
+    assert str(caught.value) == "study.toml: the file has more than 1,000,000 bytes; a study has not"
     with pytest.raises(InputError) as caught:
         load_study(tmp_path / "gone.toml")
-    assert str(caught.value) == "gone.toml: gone.toml cannot be read: No such file or directory"
+    assert str(caught.value) == f"gone.toml: there is no file '{tmp_path}/gone.toml'; check the path"
 
 
 def test_a_file_that_is_no_toml(tmp_path):
@@ -105,7 +106,70 @@ def test_a_file_that_is_no_toml(tmp_path):
     path.write_text("[design\n")
     with pytest.raises(InputError) as caught:
         load_study(path)
-    assert str(caught.value).startswith("study.toml: study.toml is no valid TOML: ")
+    assert str(caught.value) == (
+        "study.toml: the file is no valid TOML: Expected ']' at the end of a table declaration (at line 1, column 8); "
+        "correct it there"
+    )
+
+
+@pytest.mark.parametrize(
+    ("content", "text"),
+    [
+        ("x = " + "[" * 300_000, "study.toml: the file nests its tables too deeply; a study has no such tables"),
+        ("x = " + "{a = " * 100_000, "study.toml: the file nests its tables too deeply; a study has no such tables"),
+        (
+            "\n" + ".".join("a" * 20_000) + " = 1",
+            "study.toml!2: this line holds more than 300 points outside plain decimals; break it into several lines",
+        ),
+        (
+            'x = {a = """\n""", ' + ".".join("b" * 20_000) + ' = "x"}',
+            "study.toml!2: this line holds more than 300 points outside plain decimals; break it into several lines",
+        ),
+        (
+            '["a"' + ".'b'" * 20_000 + "]",
+            "study.toml!1: this line holds more than 300 points outside plain decimals; break it into several lines",
+        ),
+        (
+            "x = " + "1" * 5000,
+            "study.toml: the file is no valid TOML: Exceeds the limit (4300 digits) for integer string conversion: value "
+            "has 5000 digits; use sys.set_int_max_str_digits() to increase the limit; correct it there",
+        ),
+        (
+            b"x = '\xff'",
+            "study.toml: the file is no valid TOML: 'utf-8' codec can't decode byte 0xff in position 5: invalid start "
+            "byte; correct it there",
+        ),
+    ],
+)
+def test_hostile_toml(tmp_path, content, text):
+    path = tmp_path / "study.toml"
+    path.write_bytes(content if isinstance(content, bytes) else content.encode())
+    with pytest.raises(InputError) as caught:
+        load_study(path)
+    assert str(caught.value) == text
+
+
+def test_points_and_decimals_are_no_deep_keys(tmp_path):
+    values = ", ".join(f"{15800 + i}.5" for i in range(400))
+    path = text_study(tmp_path, extra=f'[measured]\nR1 = [{values}]\n# {"." * 100}\n[tables]\nx = [[25, 0]] # {"a." * 99}\n')
+    content = path.read_text(encoding="utf-8").replace('role = "R1"', f'role = "R1"\nshape = "measured"\nnote = "{"." * 99}"')
+    path.write_text(content, encoding="utf-8")
+    assert len(load_study(path).parameter("R1").shape.values) == 400
+
+
+@pytest.mark.parametrize("what", ["directory", "pipe", "device"])
+def test_a_study_that_is_no_file(tmp_path, what):
+    path = tmp_path / "study.toml"
+    if what == "directory":
+        path.mkdir()
+    elif what == "pipe":
+        os.mkfifo(path)
+    else:
+        path.symlink_to("/dev/zero")
+    with pytest.raises(InputError) as caught:
+        load_study(path)
+    found = "a directory" if what == "directory" else "a device or a pipe"
+    assert str(caught.value) == f"study.toml: the path is {found}, not a file; give the spreadsheet itself"
 
 
 def test_a_wrong_column_and_a_wrong_role_at_once(tmp_path):

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator
 from dataclasses import dataclass
+from pathlib import PurePath
 
 from yieldosc.errors import Finding, InputError, Level, Place, refusal
 from yieldosc.quantities import format_quantity, shown
@@ -15,6 +16,7 @@ from yieldosc.sheets.headings import Meaning
 from yieldosc.sheets.kinds import SI_UNIT, letters_of
 from yieldosc.sheets.partfacts import VALUED, PartFacts, Source, make_source
 from yieldosc.sheets.plausibility import doubts
+from yieldosc.sheets.size_limits import BOM_CHARACTERS, BOM_PARTS, BOM_ROWS, few_alike
 from yieldosc.sheets.tables import Table, find_tables, is_heading
 from yieldosc.sheets.text_guard import printable
 from yieldosc.sheets.understanding import understand
@@ -42,13 +44,26 @@ def read_bom(book: Book, sheet: str | None = None) -> BomReading:
     tables = find_tables(book, sheet)
     if not tables:
         raise _no_table(book)
+    _check_size(book, tables)
     reader = _Reader(book)
     for table in tables:
         reader.read(table)
     reader.finish(tables)
     if not reader.lines:
         raise _no_table(book)
-    return BomReading(tuple(reader.lines), tuple(reader.findings), _text_table(tables))
+    return BomReading(tuple(reader.lines), tuple(few_alike(reader.findings)), _text_table(tables))
+
+
+def _check_size(book: Book, tables: tuple[Table, ...]) -> None:
+    rows = [table.grid.rows[r] for table in tables for r in range(table.first, table.last)]
+    characters = sum(len(cell.text) for row in rows for cell in row)
+    if len(rows) > BOM_ROWS or characters > BOM_CHARACTERS:
+        raise _too_large(book, f"{len(rows)} rows with {characters} characters", f"{BOM_ROWS} and {BOM_CHARACTERS}")
+
+
+def _too_large(book: Book, found: str, limit: str) -> InputError:
+    text = f"the BOM holds {found}; at most {limit} are read: give the BOM of one board"
+    return refusal("bom-limit", text, Place(printable(PurePath(book.path).name)))
 
 
 def reel_key(line: BomLine) -> str:
@@ -75,6 +90,7 @@ class _Reader:
     """Goes through the tables row by row."""
 
     def __init__(self, book: Book) -> None:
+        self.book = book
         self.lines: list[BomLine] = []
         self.findings: list[Finding] = list(book.findings)
         self.seen: dict[tuple[str, str], BomLine] = {}
@@ -356,6 +372,8 @@ class _Reader:
         for line in lines:
             self.seen.setdefault(_identity(line), line)
         self.lines += lines
+        if len(self.lines) > BOM_PARTS:
+            raise _too_large(self.book, f"more than {BOM_PARTS} parts", f"{BOM_PARTS} parts")
 
 
 def _identity(line: BomLine) -> tuple[str, str]:

@@ -8,9 +8,9 @@ OUTPUT_BYTES = 48 * 2**20
 UNPACKED_BYTES = 64 * 2**20
 ENTRIES = 2_000
 SHEETS = 100
-ROWS = 20_000
+ROWS = 10_000
 COLUMNS = 512
-CELLS = 200_000  # filled ones; a sheet may list twice as many with the empty ones that carry a format
+CELLS = 100_000  # filled ones; a sheet may list twice as many with the empty ones that carry a format
 CELL_LENGTH = 10_000
 SHARED_STRINGS = 200_000
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from functools import lru_cache
 from typing import Literal
 
 from yieldosc.quantities import normal
@@ -85,6 +86,7 @@ _TABLE: dict[str, Meaning] = {
 }
 
 
+@lru_cache(maxsize=4096)
 def column_meaning(heading: str) -> Meaning | None:
     """The meaning of a column with that heading; None for a heading that says nothing."""
     key = heading_key(heading)

@@ -56,7 +56,7 @@ main()
 def open_book(path: Path) -> Book:
     """All sheets of a spreadsheet or text file. Raises InputError when the file cannot be used."""
     place = Place(printable(path.name))
-    data = _read(path, place)
+    data = read_file(path, place)
     what = next((name for start, name in _FOREIGN if data.startswith(start)), None)
     if what is not None:
         raise refusal("file-type", f"the file is {what}; give a spreadsheet (xlsx, xls, xlsb, ods) or csv", place)
@@ -79,7 +79,7 @@ _NEXT = {
 }
 
 
-def _read(path: Path, place: Place) -> bytes:
+def read_file(path: Path, place: Place) -> bytes:
     """The bytes of a regular file that keeps still while it is read."""
     flags = os.O_RDONLY | getattr(os, "O_NONBLOCK", 0) | getattr(os, "O_BINARY", 0)
     try:

@@ -19,13 +19,16 @@ from yieldosc.sheets.extras import branch_rows, law_tables, measured_values, nam
 from yieldosc.sheets.factory import check_trim_items, make_design
 from yieldosc.sheets.grade_rows import GradeReader
 from yieldosc.sheets.grid import Book
-from yieldosc.sheets.opening import open_book
+from yieldosc.sheets.opening import open_book, read_file
 from yieldosc.sheets.parameters import ParameterMaker, Sources
+from yieldosc.sheets.peek import sheet_names
 from yieldosc.sheets.pilot import read_pilot
 from yieldosc.sheets.prices import PriceReader
 from yieldosc.sheets.remarks import remark
 from yieldosc.sheets.roles import COLUMNS, RoleRow, sort_rows
+from yieldosc.sheets.size_limits import check_study_sizes, few_alike
 from yieldosc.sheets.study_tables import StudyTables, workbook_tables
+from yieldosc.sheets.text_guard import printable
 from yieldosc.sheets.toml_study import toml_tables
 from yieldosc.study import Study
 
@@ -38,7 +41,12 @@ def is_study(path: Path) -> bool:
         return False
     if path.suffix.lower() == ".toml":
         return True
-    return path.suffix.lower() in WORKBOOKS and open_book(path).sheet("Design") is not None
+    if path.suffix.lower() not in WORKBOOKS:
+        return False
+    names = sheet_names(read_file(path, Place(printable(path.name))))
+    if names is None:
+        return open_book(path).sheet("Design") is not None
+    return any(folded(name) == "design" for name in names)
 
 
 def load_study(path: Path) -> Study:
@@ -59,7 +67,9 @@ def load_study(path: Path) -> Study:
                 f"yieldosc draft {path.name} --circuit NAME -o STUDY.xlsx",
                 Place(path.name),
             )
+        check_study_sizes(book)
         tables = workbook_tables(book, problems)
+    check_study_sizes(book)
     study = _understood(path, book, tables, problems)
     if study is None or problems.fatal:
         raise InputError(_in_order(problems))
@@ -68,9 +78,8 @@ def load_study(path: Path) -> Study:
 
 def _in_order(problems: Problems) -> list[Finding]:
     rank = {"Design": 0, "Roles": 1}
-    return sorted(
-        problems.findings, key=lambda f: (f.level != "error", rank.get(f.place.sheet or "", 2), f.place.row or 0)
-    )
+    findings = few_alike(problems.findings)
+    return sorted(findings, key=lambda f: (f.level != "error", rank.get(f.place.sheet or "", 2), f.place.row or 0))
 
 
 def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems) -> Study | None:
@@ -128,7 +137,7 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
         alternates=alternates,
         pilot=pilot,
         prices=bought,
-        findings=tuple(problems.findings),
+        findings=tuple(few_alike(problems.findings)),
     )
     return replace(study, digest=digest_of(study))
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import sys
 import tomllib
 from pathlib import Path
@@ -11,11 +12,14 @@ from yieldosc.errors import Place, refusal
 from yieldosc.sheets.design import Item
 from yieldosc.sheets.entries import Entry, Problems, folded
 from yieldosc.sheets.grid import Book, Cell, Grid
-from yieldosc.sheets.opening import open_book
+from yieldosc.sheets.opening import open_book, read_file
 from yieldosc.sheets.roles import COLUMNS, RoleRow
 from yieldosc.sheets.study_tables import StudyTables, sheet_texts
+from yieldosc.sheets.text_guard import printable
 
-MOST_BYTES = 2_000_000
+MOST_BYTES = 1_000_000
+MOST_DOTS = 300  # of one line, plain decimals aside; a key may stand in quotes, so that strings count too
+_DECIMAL = re.compile(r"(?<![\w.])\d+\.\d+(?![\w.])")
 MOST_TEXT = 32_767  # characters of a cell
 ROW_TABLES = {"circuit": "Circuit", "grades": "Grades", "alternates": "Alternates", "pilot": "Pilot"}  # key → sheet
 KEYS = ("bom", "design", "roles", "tables", "measured", *ROW_TABLES)
@@ -51,16 +55,27 @@ def _is_item(key: str, value: Any) -> bool:
 
 
 def _parsed(path: Path) -> dict[str, Any]:
+    place = Place(printable(path.name))
+    data = read_file(path, place)
+    if len(data) > MOST_BYTES:
+        raise refusal("file-limit", f"the file has more than {MOST_BYTES:,} bytes; a study has not", place)
     try:
-        data = path.read_bytes() if path.stat().st_size <= MOST_BYTES else None
-    except OSError as error:
-        raise refusal("unreadable-file", f"{path.name} cannot be read: {error.strerror}", Place(path.name)) from None
-    if data is None:
-        raise refusal("too-large", f"{path.name} is larger than {MOST_BYTES:,} bytes; a study is not", Place(path.name))
-    try:
-        return tomllib.loads(data.decode("utf-8-sig"))
-    except (tomllib.TOMLDecodeError, UnicodeDecodeError) as error:
-        raise refusal("not-toml", f"{path.name} is no valid TOML: {error}", Place(path.name)) from None
+        text = data.decode("utf-8-sig")
+        _check_keys(text, place)
+        return tomllib.loads(text)
+    except RecursionError:
+        raise refusal("not-toml", "the file nests its tables too deeply; a study has no such tables", place) from None
+    except ValueError as error:  # not TOML, not UTF-8, or a number of thousands of digits
+        reason = printable(" ".join(str(error).split()))[:200]
+        raise refusal("not-toml", f"the file is no valid TOML: {reason}; correct it there", place) from None
+
+
+def _check_keys(text: str, place: Place) -> None:
+    """Refuses keys of very many parts: reading them takes time and memory without bounds."""
+    for number, line in enumerate(text.splitlines(), start=1):
+        if _DECIMAL.sub("0", line).count(".") > MOST_DOTS:
+            text = f"this line holds more than {MOST_DOTS} points outside plain decimals; break it into several lines"
+            raise refusal("not-toml", text, Place(place.sheet, number))
 
 
 def _table(content: dict[str, Any], key: str, problems: Problems, file: Place) -> list[tuple[str, Any]]:
