@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import PurePath
 
@@ -17,6 +16,7 @@ from yieldosc.sheets.kinds import SI_UNIT, letters_of
 from yieldosc.sheets.partfacts import VALUED, PartFacts, Source, make_source
 from yieldosc.sheets.plausibility import doubts
 from yieldosc.sheets.size_limits import BOM_CHARACTERS, BOM_PARTS, BOM_ROWS, few_alike
+from yieldosc.sheets.table_text import text_table
 from yieldosc.sheets.tables import Table, find_tables, is_heading
 from yieldosc.sheets.text_guard import printable
 from yieldosc.sheets.understanding import understand
@@ -51,7 +51,7 @@ def read_bom(book: Book, sheet: str | None = None) -> BomReading:
     reader.finish(tables)
     if not reader.lines:
         raise _no_table(book)
-    return BomReading(tuple(reader.lines), tuple(few_alike(reader.findings)), _text_table(tables))
+    return BomReading(tuple(reader.lines), tuple(few_alike(reader.findings)), text_table(tables))
 
 
 def _check_size(book: Book, tables: tuple[Table, ...]) -> None:
@@ -386,27 +386,3 @@ def _content(line: BomLine) -> tuple[object, ...]:
 
 def _few(names: list[str]) -> str:
     return ", ".join(names[:4]) + (f" and {len(names) - 4} more" if len(names) > 4 else "")
-
-
-def _text_table(tables: tuple[Table, ...]) -> tuple[tuple[str, ...], ...]:
-    """Heading row and rows as text; tables with other headings follow with their own heading row."""
-    rows: list[tuple[str, ...]] = []
-    for table in tables:
-        width = max([len(table.headings), *(len(row) for row in table.grid.rows[table.first : table.last])], default=0)
-        titles = {c: meaning.replace("_", " ").capitalize() for c, meaning in table.columns.items()}
-        heading = tuple(
-            table.headings[c] if c < len(table.headings) and table.headings[c] else titles.get(c, "")
-            for c in range(width)
-        )
-        rows.append(_clean(heading))
-        rows += [_clean(row) for row in _texts(table, width) if any(row)]
-    return tuple(rows)
-
-
-def _texts(table: Table, width: int) -> Iterator[tuple[str, ...]]:
-    for row in range(table.first, table.last):
-        yield tuple(table.grid.cell(row, c).text.strip() for c in range(width))
-
-
-def _clean(row: tuple[str, ...]) -> tuple[str, ...]:
-    return tuple(printable(text) for text in row)
