@@ -149,8 +149,11 @@ def test_a_peak_that_the_search_misses_is_found_from_the_simulated_units(make_st
     results = corner_results(run_units(setup, bins, 0, 20_000), setup.corners, 0.95)
     missed, findings = bands(setup.population, setup.bench, results)
     assert [f.code for f in findings] == ["monte-carlo-outside-extremes"]  # without the units: a negative control
-    assert missed[0].note
-    again, findings = found(study, Spike())
+    assert missed[0].note == (
+        "simulated units lie beyond the searched extremes and widen them: the search missed an extreme"
+    )
+    assert missed[0].extreme[1] == missed[0].monte_carlo[1]
+    again, findings = found(study, Spike(), units=8192)  # all of them are among the first
     assert findings == () and again[0].note == ""
     assert again[0].extreme[1] >= again[0].monte_carlo[1]
     assert "again from the outermost simulated units" in again[0].method

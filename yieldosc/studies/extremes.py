@@ -18,7 +18,7 @@ from yieldosc.study import Corner
 
 Array = NDArray[np.float64]
 OUTPUTS: tuple[Output, ...] = ("frequency_hz", "startup_margin")
-PIECE = 8192  # units solved at a time when the search starts again from them
+PIECE = 8192  # units among which the search looks for its new starts
 ROUNDING = 1e-9  # relative; Monte Carlo further outside than this is reported
 
 
@@ -44,6 +44,22 @@ class _Job:
         return _at_corner(self.population, self.bench, self.corners[number])
 
 
+@dataclass(frozen=True)
+class _Again:
+    """The search at corners where simulated units passed it, from the outermost of the first units."""
+
+    population: Population
+    bench: Bench
+    before: tuple[tuple[Corner, _AtCorner], ...]
+    streams: Streams
+    units: int
+
+    def __call__(self, number: int) -> _AtCorner:
+        corner, before = self.before[number]
+        starts = _outermost(self.population, self.bench, corner, self.streams, self.units)
+        return _continued(self.population, self.bench, before, corner, starts)
+
+
 def bands(
     population: Population,
     bench: Bench,
@@ -56,25 +72,31 @@ def bands(
     """One band per output and temperature, over supplies and ages; findings where Monte Carlo lies outside.
 
     streams, units: of the run behind `corners`; where its range passes the searched extremes, the search starts again
-    from those units.
+    from the outermost of its first units. What still lies outside then is a finding, and widens the extremes: a
+    simulated unit is a point of the box.
     """
     made: list[Band] = []
+    outside: list[Finding] = []
     job = _Job(population, bench, tuple(result.corner for result in corners))
     with (workers or Workers()).in_order(job, len(corners)) as answers:
         solved = {result.corner: found for result, found in zip(corners, answers, strict=True)}
-    if streams is not None:
-        for result in corners:
-            if _passed(solved[result.corner], result):
-                starts = _outermost(population, bench, result.corner, streams, units)
-                solved[result.corner] = _continued(population, bench, solved[result.corner], result.corner, starts)
+    passed = [r.corner for r in corners if streams is not None and _passed(solved[r.corner], r)]
+    if passed and streams is not None:
+        again = _Again(population, bench, tuple((c, solved[c]) for c in passed), streams, min(units, PIECE))
+        with (workers or Workers()).in_order(again, len(passed)) as answers:
+            solved |= dict(zip(passed, answers, strict=True))
     for temperature_c in dict.fromkeys(result.corner.temperature_c for result in corners):
         here = [result for result in corners if result.corner.temperature_c == temperature_c]
         for k, output in enumerate(OUTPUTS):
             sampled = [d for d in (_sampled(result, output) for result in here) if d is not None]
-            if sampled:
-                made.append(_band(k, output, temperature_c, [solved[r.corner] for r in here], sampled))
-    outside = tuple(outside_finding(band, band.extreme) for band in made if band.note and band.extreme is not None)
-    return tuple(made), outside
+            if not sampled:
+                continue
+            band = _band(k, output, temperature_c, [solved[r.corner] for r in here], sampled)
+            if band.extreme is not None and _outside(band.extreme, band.monte_carlo):
+                outside.append(outside_finding(band, band.extreme))
+                band = _widened(band, band.extreme)
+            made.append(band)
+    return tuple(made), tuple(outside)
 
 
 def _sampled(result: CornerResult, output: Output) -> Distribution | None:
@@ -91,14 +113,20 @@ def _band(
     if all(f.low is not None and f.high is not None for f in found):
         extreme = (min(float(f.low[k]) for f in found if f.low is not None),
                    max(float(f.high[k]) for f in found if f.high is not None))  # fmt: skip
-    note = ""
-    if extreme is not None and _outside(extreme, monte_carlo):
-        note = "Monte Carlo lies outside the searched extremes: the output has an extreme that the search missed"
     methods = "; ".join(dict.fromkeys(f.method for f in found))
     gaps = [float(f.gap[k]) for f in found if f.gap is not None]
     return Band(output=output, temperature_c=temperature_c, extreme=extreme, rss=rss, monte_carlo=monte_carlo,
-                method=f"{methods}; root-sum-square: {RSS[output]}", note=note,
+                method=f"{methods}; root-sum-square: {RSS[output]}",
                 gap=max(gaps) if gaps else None)  # fmt: skip
+
+
+def _widened(band: Band, searched: tuple[float, float]) -> Band:
+    """With the simulated units inside."""
+    return replace(
+        band,
+        extreme=(min(searched[0], band.monte_carlo[0]), max(searched[1], band.monte_carlo[1])),
+        note="simulated units lie beyond the searched extremes and widen them: the search missed an extreme",
+    )
 
 
 def _outside(extreme: tuple[float, float], sampled: tuple[float, float]) -> bool:
@@ -118,20 +146,17 @@ def _passed(found: _AtCorner, result: CornerResult) -> bool:
 
 
 def _outermost(population: Population, bench: Bench, corner: Corner, streams: Streams, units: int) -> Array:
-    """Positions in the box (d, m) of the simulated units with the lowest and the highest outputs."""
+    """Positions in the box (d, m) of the units with the lowest and the highest outputs among the first."""
     box = box_at(population, corner)
+    block = population.block(streams, 0, units)
+    values, solution = block.values(corner), bench.solve(block, corner)
     kept: list[Array] = []
-    for first in range(0, units, PIECE):
-        block = population.block(streams, first, min(PIECE, units - first))
-        values = block.values(corner)
-        solution = bench.solve(block, corner)
-        for output in (solution.frequency_hz, solution.startup_margin):
-            if np.isnan(output).all():
-                continue
+    for output in (solution.frequency_hz, solution.startup_margin):
+        if not np.isnan(output).all():
             rows = np.array([np.nanargmin(output), np.nanargmax(output)])
             wanted = [np.broadcast_to(values[role], block.count)[rows] for role in box.free]
             kept.append(box.positions(np.array(wanted).reshape(len(box.free), 2)))
-    return np.concatenate(kept, axis=1) if kept else np.zeros((len(box.free), 0))
+    return np.concatenate(kept, axis=1) if kept else np.full((len(box.free), 1), 0.5)
 
 
 def outside_finding(band: Band, extreme: tuple[float, float]) -> Finding:

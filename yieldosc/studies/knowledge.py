@@ -48,9 +48,11 @@ def knowledge(
 ) -> tuple[Knowledge, ...]:
     """Largest span first. rivals: those of the assessment; declared_good (n,): units 0 … n − 1 of the declared set.
 
-    devices: parts whose values are tried one at a time (None: every active device). Cost: at most 4,096 units per set.
+    devices: parts whose values are tried one at a time (None: every active device). Cost: half of n, at most
+    4,096 units per set.
     """
-    declared, declared_good = setup.population.parameters, declared_good[:MOST_UNITS]
+    declared = setup.population.parameters
+    declared_good = declared_good[: min(MOST_UNITS, max(len(declared_good) // 2, 1))]
     singles = tuple(s for s in _singles(declared, devices) if s.rival.parameters != declared)
     sets = [s.rival.parameters for s in singles]
     flags = good_units(setup, sets, len(declared_good), workers=workers, meter=meter) if sets else []

@@ -17,7 +17,7 @@ from yieldosc.studies.scrutiny import TemperatureCheck
 from yieldosc.study import Corner
 
 Array = NDArray[np.float64]
-PILOT = 1024
+PILOT = 512
 SAFETY = 2.0  # a unit is looked at again within this many times the largest fall of the pilot's units
 MOST_CHECKED = 1500  # units near a limit that are searched densely after the run
 
@@ -25,7 +25,7 @@ MOST_CHECKED = 1500  # units near a limit that are searched densely after the ru
 def with_between(setup: Setup) -> Setup:
     """The same setup, whose units near a limit are also judged between the temperatures; as it is at one temperature.
 
-    How near is found for the declared parts and for crystals over their whole angle, which other sets try. Cost: 1,024
+    How near is found for the declared parts and for crystals over their whole angle, which other sets try. Cost: 512
     units of each at eight times as many temperatures.
     """
     grid_c = tuple(sorted({c.temperature_c for c in setup.corners}))
