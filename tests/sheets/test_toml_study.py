@@ -149,6 +149,33 @@ def test_hostile_toml(tmp_path, content, text):
     assert str(caught.value) == text
 
 
+@pytest.mark.parametrize(
+    ("line", "times", "text"),
+    [
+        ("x{} = 1", 499, "study.toml: the file has 509 items; at most 500 are read: delete what does not belong to the study"),
+        ("[[grades]]\nx{} = 1", 400, "study.toml: the file has 160000 cells; at most 100000 are read: delete what does not belong to the study"),
+        ("[[roles]]", 1000, "study.toml: the file has 1007 roles; at most 1000 are read: delete what does not belong to the study"),
+    ],
+)
+def test_more_than_a_study_needs(tmp_path, line, times, text):
+    """Seven items of design and seven roles stand there; bom, design and roles are keys of the file too."""
+    more = "\n".join(line.format(i) for i in range(times)) + "\n"
+    head = 'bom = "bom.csv"\n'
+    path = text_study(tmp_path, head=head + more) if line.startswith("x") else text_study(tmp_path, extra=more)
+    with pytest.raises(InputError) as caught:
+        load_study(path)
+    assert str(caught.value) == text
+
+
+def test_columns_of_very_different_length(tmp_path):
+    columns = "R1 = [" + "1," * 2000 + "]\n" + "".join(f"x{i} = 1\n" for i in range(99))
+    with pytest.raises(InputError) as caught:
+        load_study(text_study(tmp_path, extra="[measured]\n" + columns))
+    assert str(caught.value) == (
+        "study.toml: the file has 200000 cells; at most 100000 are read: delete what does not belong to the study"
+    )
+
+
 def test_points_and_decimals_are_no_deep_keys(tmp_path):
     values = ", ".join(f"{15800 + i}.5" for i in range(400))
     path = text_study(tmp_path, extra=f'[measured]\nR1 = [{values}]\n# {"." * 100}\n[tables]\nx = [[25, 0]] # {"a." * 99}\n')

@@ -9,11 +9,13 @@ from pathlib import Path
 from typing import Any
 
 from yieldosc.errors import Place, refusal
+from yieldosc.sheets.child_limits import CELLS
 from yieldosc.sheets.design import Item
 from yieldosc.sheets.entries import Entry, Problems, folded
 from yieldosc.sheets.grid import Book, Cell, Grid
 from yieldosc.sheets.opening import open_book, read_file
 from yieldosc.sheets.roles import COLUMNS, RoleRow
+from yieldosc.sheets.size_limits import STUDY_ROWS
 from yieldosc.sheets.study_tables import StudyTables, sheet_texts
 from yieldosc.sheets.text_guard import printable
 
@@ -33,9 +35,11 @@ def toml_tables(path: Path, problems: Problems) -> tuple[StudyTables, Book]:
     """
     content = _parsed(path)
     file = Place(path.name)
+    _check_sizes(content, file)
     above = [(key, value) for key, value in content.items() if _is_item(key, value)]
+    items_above = dict(above)
     for key in content:
-        if key not in KEYS and key not in dict(above):
+        if key not in KEYS and key not in items_above:
             problems.error("unknown-item", f"{key!r} is no table of a study; they are: {', '.join(KEYS)}", file)
     items = [
         Item(str(name).replace("_", " "), _entry(value, Place("Design")))
@@ -47,6 +51,29 @@ def toml_tables(path: Path, problems: Problems) -> tuple[StudyTables, Book]:
     extra += (*_row_sheets(content, problems, file), *_pilot(path, content.get("pilot"), problems, file))
     texts = {grid.name: sheet_texts(grid) for grid in extra}
     return StudyTables(items, rows, Place("Design"), extra_rows=texts), Book(book.path, "toml", (*book.sheets, *extra))
+
+
+def _check_sizes(content: dict[str, Any], file: Place) -> None:
+    """InputError for more items or roles than a study needs; the other tables are sheets and counted as such."""
+    design, roles = content.get("design"), content.get("roles")
+    items = len(content) + (len(design) if isinstance(design, dict) else 0)
+    for what, number, most in (
+        ("items", items, STUDY_ROWS["Design"]),
+        ("roles", len(roles) if isinstance(roles, list | dict) else 0, STUDY_ROWS["Roles"]),
+        ("cells", max((_cells(content.get(key)) for key in (*ROW_TABLES, "measured")), default=0), CELLS),
+    ):
+        if number > most:
+            text = f"the file has {number} {what}; at most {most} are read: delete what does not belong to the study"
+            raise refusal("sheet-limit", text, file)
+
+
+def _cells(table: Any) -> int:
+    """Cells of the sheet that a table becomes: rows as wide as the keys of all, columns as long as the longest."""
+    if isinstance(table, list):
+        return len(table) * len({key for row in table if isinstance(row, dict) for key in row})
+    if isinstance(table, dict):
+        return len(table) * max((len(column) for column in table.values() if isinstance(column, list)), default=1)
+    return 0
 
 
 def _is_item(key: str, value: Any) -> bool:
