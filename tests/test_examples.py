@@ -45,6 +45,7 @@ def test_lesson(found, tmp_path):
         "lamp_sine_1k5_timer": lambda: outcomes["distorted"] > 0 and result.corners[0].margin is None,
         "tide_tone_own_bridge": lambda: outcomes["good"] == 4096,
         "tide_tone_factory": lambda: "shifted" in result.pilot.verdict and len(result.second_sources) == 4,
+        "tide_tone_clipping": lambda: result.limiter.difference.high < 0 and result.corners[0].settled_hz is not None,
         "tide_tone_1khz_rev_b": lambda: result.verdict == "meets",
     }
     assert lessons[name]()
@@ -62,7 +63,7 @@ def test_a_crystal_that_may_not_start_because_of_its_coil():
 
 
 def test_every_study_is_one_and_the_bare_bom_is_none():
-    assert len(STUDIES) == 12
+    assert len(STUDIES) == 13
     assert all(is_study(path) for path in STUDIES)
     assert not is_study(EXAMPLES / "buoy_clock_bom.csv")
 

@@ -24,6 +24,15 @@ WIEN = {"R1": 1e4, "C1": 1e-8, "R2": 1e4, "C2": 1e-8, "RF": 21.5e3, "RG": 1e4, "
 SPREAD = {"R": 0.01, "C": 0.05, "G": 0.3, "V": 0.05}
 
 
+@pytest.fixture(autouse=True, scope="module")
+def every_call_checked():
+    """Calls of a few thousand units are checked now and then only; here all are."""
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(fast_module, "CHECKED_OF", 1)
+        yield
+
+
+
 def drawn(nominal, n, seed=2):
     rng = np.random.default_rng(seed)
     return {k: v * (1 + SPREAD[k[0]] * rng.uniform(-1, 1, n)) for k, v in nominal.items()}

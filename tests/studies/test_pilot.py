@@ -10,7 +10,7 @@ from scipy.stats import binom, norm
 
 from yieldosc.studies import pilot as module
 from yieldosc.studies.declared import declared_setup
-from yieldosc.studies.declared import testing_corner as corner_of_the_test
+from yieldosc.studies.declared import factory_corner as corner_of_the_test
 from yieldosc.studies.pilot import pilot_result
 from yieldosc.study import Pilot
 

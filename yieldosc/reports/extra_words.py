@@ -8,7 +8,9 @@ from collections.abc import Iterator
 from yieldosc.quantities import format_quantity
 from yieldosc.reports.amounts import Deviation, listed
 from yieldosc.reports.decision import Section, number_cell, points_cell, rate_cell, words, yield_cell
-from yieldosc.studies.results import Assessment, PilotResult
+from yieldosc.reports.start_words import crystal_section, limiter_section
+from yieldosc.studies.extra_results import PilotResult
+from yieldosc.studies.results import Assessment
 
 ONE_LOT = "A pilot build is one lot: it says nothing of the next one's parts."
 
@@ -16,6 +18,10 @@ ONE_LOT = "A pilot build is one lot: it says nothing of the next one's parts."
 def extra_sections(a: Assessment) -> tuple[Section, ...]:
     """In the order in which they are read; none for a study without them."""
     made = []
+    if a.limiter is not None:
+        made.append(limiter_section(a, a.limiter))
+    if a.crystal_start:
+        made.append(crystal_section(a))
     if a.second_sources:
         made.append(_second_sources(a))
     if a.pilot is not None:

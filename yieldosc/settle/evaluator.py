@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Circuit
+from yieldosc.settle.drive import drive_w
 from yieldosc.settle.fast import Checked, fast, in_full, unshifted
 from yieldosc.settle.prepared import Prepared, level_is_held, prepare
 from yieldosc.settle.settled import undisturbed, write_in_full
@@ -53,13 +54,15 @@ class SettlingEvaluator:
 
     def __getstate__(self) -> dict[str, object]:
         names = ("circuit", "nominal", "crossing", "limits_width_hz", "fitted")
-        return {name: getattr(self, name) for name in names}
+        return {name: getattr(self, name) for name in names} | {"fits": self._fit.made}
 
     def __setstate__(self, state: dict[str, object]) -> None:
         made = dict(state)
+        fits = made.pop("fits")
         self.__init__(  # type: ignore[misc]
             made.pop("circuit"), made.pop("nominal"), made.pop("crossing"), **made
         )
+        self._fit.made = fits  # type: ignore[assignment]
 
     def solve(
         self,
@@ -78,12 +81,19 @@ class SettlingEvaluator:
             live = prepare(self.circuit, values, temperature_c, solution, limiter=self.limiter, own_law=own_law)
             found = self._settled(live, solution)
         settled = found.settled
+        drive = drive_w(
+            self.circuit, values, temperature_c, settled.settled_hz, settled.amplitude_in_v, own_law=own_law
+        )
         lost = settled.not_converged & (solution.status == Status.STARTS)
         return replace(
             solution,
             status=np.where(lost, np.int8(Status.UNDEFINED), solution.status),
             settled_hz=settled.settled_hz,
             distortion=settled.distortion_out,
+            distortion_in=settled.distortion_in,
+            amplitude_v=settled.amplitude_out_v,
+            amplitude_in_v=settled.amplitude_in_v,
+            drive_w=drive,
             settling=found.account,
         )
 

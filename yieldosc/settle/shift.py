@@ -51,7 +51,7 @@ class FittedShift:
     def __init__(self, trainer: Trainer, *, tolerance: float = FAST_TOLERANCE) -> None:
         self._trainer = trainer
         self._tolerance = tolerance
-        self._fits: dict[tuple[int, int], Polynomial | None] = {}
+        self.made: dict[tuple[int, int], Polynomial | None] = {}
 
     def predict(self, live: Prepared) -> Prediction:
         """Figures of live units; unknown ones hold nan."""
@@ -73,9 +73,9 @@ class FittedShift:
 
     def _fit(self, cell: int, level: int, like: Prepared) -> Polynomial | None:
         key = (cell, level)
-        if key not in self._fits:
-            self._fits[key] = self._trained(cell, level, like)
-        return self._fits[key]
+        if key not in self.made:
+            self.made[key] = self._trained(cell, level, like)
+        return self.made[key]
 
     def _trained(self, cell: int, level: int, like: Prepared) -> Polynomial | None:
         rng = np.random.default_rng([SEED, cell, level])

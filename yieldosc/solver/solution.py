@@ -47,6 +47,26 @@ class Settling:
     fell_back: bool = False
 
 
+    def merged(self, other: Settling) -> Settling:
+        """The account of both calls together."""
+        return Settling(
+            limiter=self.limiter,
+            method=self.method if self.method == other.method else _joined(self.method, other.method),
+            tolerance=max(self.tolerance, other.tolerance),
+            checked=self.checked + other.checked,
+            residual=max(self.residual, other.residual),
+            largest_shift=max(self.largest_shift, other.largest_shift),
+            full=self.full + other.full,
+            capped=self.capped + other.capped,
+            not_converged=self.not_converged + other.not_converged,
+            fell_back=self.fell_back or other.fell_back,
+        )
+
+
+def _joined(first: str, second: str) -> str:
+    return ", ".join(dict.fromkeys((*first.split(", "), *second.split(", "))))
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Solution:
     """Arrays of length n. Frequencies are finite wherever a gain exists, margins too; see circuits and population.
@@ -65,7 +85,9 @@ class Solution:
     other_mode_hz: Array | None = None
     distortion: Array | None = None
     duty: Array | None = None  # share of a period at the high level
-    amplitude_v: Array | None = None  # peak of the fundamental
+    distortion_in: Array | None = None  # at the limiter's input
+    amplitude_v: Array | None = None  # peak of the fundamental at the output
+    amplitude_in_v: Array | None = None  # at the limiter's input
     phase_deg: Array | None = None  # of the fundamental, against its source's
     drive_w: Array | None = None
     resistance_ratio: Array | None = None  # −R/ESR at a crystal's terminals

@@ -15,11 +15,15 @@ from yieldosc.population import Adjustment, Population
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies import remarks
 from yieldosc.studies.cautions import cautions
-from yieldosc.studies.declared import testing_corner
+from yieldosc.studies.crystal_start import UNITS as CRYSTAL_UNITS
+from yieldosc.studies.crystal_start import crystal_start
+from yieldosc.studies.declared import factory_corner
 from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.extra_remarks import extra_findings
 from yieldosc.studies.extremes import bands
 from yieldosc.studies.failure_share import failure_share
+from yieldosc.studies.limiter_effect import UNITS as LIMITER_UNITS
+from yieldosc.studies.limiter_effect import limiter_effect
 from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_reels
 from yieldosc.studies.measured_remarks import measured_findings
 from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values, per_percent, reference_corner, slopes
@@ -56,6 +60,9 @@ FIRST_LOOK = 50_000
 LOOKS = 4
 USUAL_CORNERS = 9  # studies with more corners spend fewer units on what stands beside the declared yield
 LEAST_BASE = 128
+LEAST_PER_LOT = 64
+EXACT_COST = 40  # times the fast path's, about
+WORTH_SLOWING = 0.5  # of the usual effort; more is left as it is
 
 
 def assess(
@@ -96,16 +103,24 @@ def assess(
             setup = with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment))
         target = study.design.yield_target
         run = joint_yield(setup, plan, target, workers=crew, block=block, meter=meter)
+        effort = effort.slowed(run.gathered.exact / (run.gathered.units * len(setup.corners)))
         evidence = _evidence(study, setup, run, effort, crew, meter)
+        effect = limiter_effect(
+            setup, run.gathered.settling, confidence=study.design.confidence,
+            units=min(LIMITER_UNITS, run.gathered.units), workers=crew, meter=meter,
+        )  # fmt: skip
     tallies = run.gathered
     made = provenance(
         study, seed, started, clock, crew.count,
         audited=tallies.audited, disagreeing=tallies.disagreeing, exact=tallies.exact,
     )  # fmt: skip
-    measured = pilot_result(study, setup, testing_corner(study), study.pilot) if study.pilot is not None else None
+    measured = pilot_result(study, setup, factory_corner(study), study.pilot) if study.pilot is not None else None
     found = _assembled(study, setup, run, plan, evidence, ratio, made)
     findings = (*found.findings, *extra_findings(study, sources))
-    return replace(found, findings=findings, second_sources=sources, pilot=measured)
+    return replace(
+        found, findings=findings, second_sources=sources, pilot=measured, limiter=effect,
+        crystal_start=crystal_start(setup, min(CRYSTAL_UNITS, tallies.units)),
+    )  # fmt: skip
 
 
 def _plan(study: Study, units: int | None) -> LookPlan:
@@ -134,6 +149,19 @@ class _Effort:
             rival_units=min(rival_units or quanta * QUANTUM, units),
             base=base,
             units_per_lot=UNITS_PER_LOT if share == 1 else UNITS_PER_LOT // 2,
+        )
+
+    def slowed(self, exact_share: float) -> _Effort:
+        """Less where so large a share of the solutions takes the exact path; a count, so that it is the same again."""
+        share = 1 / (1 + EXACT_COST * exact_share)
+        if share > WORTH_SLOWING:
+            return self
+        quanta = max(1, int(self.rival_units * share / QUANTUM))
+        return replace(
+            self,
+            rival_units=min(quanta * QUANTUM, self.rival_units),
+            base=max(LEAST_BASE, 2 ** int(np.log2(self.base * share))),
+            units_per_lot=max(LEAST_PER_LOT, self.units_per_lot // 2),
         )
 
     def expected(self, setup: Setup) -> int:

@@ -27,7 +27,7 @@ def declared_setup(study: Study, *, seed: int, evaluator: Evaluator | None = Non
     return with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0))
 
 
-def testing_corner(study: Study) -> Corner:
+def factory_corner(study: Study) -> Corner:
     """Where boards are tested: the stated temperature, else the study's own nearest to 25 °C; nominal supply, new."""
     stated = study.design.test_temperature_c
     if stated is None:

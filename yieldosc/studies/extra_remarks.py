@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from yieldosc.errors import Finding
-from yieldosc.studies.results import Combination
+from yieldosc.studies.extra_results import Combination
 from yieldosc.study import Study
 
 

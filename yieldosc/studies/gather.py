@@ -7,14 +7,17 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from yieldosc.solver.solution import Solution, Status
+from yieldosc.solver.solution import Settling, Solution, Status
 from yieldosc.studies.judge import GOOD, Codes
 from yieldosc.studies.run import Setup, audit_mask, inner_pieces, not_starting
 from yieldosc.studies.tally import Histogram, Moments
 
 Array = NDArray[np.float64]
 Counts = NDArray[np.int64]
-ATTRIBUTES = ("frequency_hz", "settled_hz", "startup_margin", "distortion")
+ATTRIBUTES = (
+    "frequency_hz", "settled_hz", "startup_margin", "distortion",
+    "distortion_in", "amplitude_v", "amplitude_in_v", "drive_w", "resistance_ratio",
+)  # fmt: skip
 PILOT = 4096  # units that fix the histograms' bins
 BINS = 2048
 MOST_NUMBERS = 20_000  # failing units whose numbers are kept
@@ -50,6 +53,7 @@ class Gathered:
     audited: int = 0
     disagreeing: int = 0
     exact: int = 0
+    settling: Settling | None = None
     flips: int = 0  # units that are good at every corner and fail between their temperatures
     near: Counts = field(default_factory=lambda: np.zeros(0, dtype=np.int64))  # good units that were looked at there
 
@@ -142,10 +146,15 @@ def _notes(found: Gathered, solution: Solution) -> None:
     found.audited += solution.audited
     found.disagreeing += solution.disagreeing
     found.exact += solution.exact
+    found.settling = _account(found.settling, solution.settling)
     if solution.other_mode_hz is not None and len(found.wrong_modes_hz) < MOST_WRONG_MODES:
         wrong = solution.other_mode_hz[solution.status == Status.WRONG_MODE]
         kept = wrong[np.isfinite(wrong)][: MOST_WRONG_MODES - len(found.wrong_modes_hz)]
         found.wrong_modes_hz += [float(f) for f in kept]
+
+
+def _account(one: Settling | None, other: Settling | None) -> Settling | None:
+    return other if one is None else one if other is None else one.merged(other)
 
 
 def _histogram(layout: Layout) -> Histogram:
@@ -172,5 +181,6 @@ def append(whole: Gathered, part: Gathered) -> None:
     whole.audited += part.audited
     whole.disagreeing += part.disagreeing
     whole.exact += part.exact
+    whole.settling = _account(whole.settling, part.settling)
     whole.flips += part.flips
     whole.near = np.concatenate([whole.near, part.near])[:MOST_NUMBERS]

@@ -19,8 +19,9 @@ from scipy.special import ndtri
 from yieldosc.population import uniforms
 from yieldosc.solver.solution import Status
 from yieldosc.studies.estimates import clopper_pearson
+from yieldosc.studies.extra_results import Doubt, PilotResult, PilotTest
 from yieldosc.studies.nominal import nominal_points, slopes
-from yieldosc.studies.results import Doubt, Estimate, PilotResult, PilotTest
+from yieldosc.studies.results import Estimate
 from yieldosc.studies.rivals import rival_sets
 from yieldosc.studies.run import INNER, QUANTUM, Setup, inner_pieces
 from yieldosc.study import Corner, Pilot, Study

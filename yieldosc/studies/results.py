@@ -13,6 +13,7 @@ from yieldosc.errors import Finding
 from yieldosc.study import Corner, Study
 
 if TYPE_CHECKING:
+    from yieldosc.studies.extra_results import Combination, CrystalStart, LimiterEffect, PilotResult
     from yieldosc.studies.scrutiny import Scrutiny
 
 Verdict = Literal["meets", "does not meet", "not proven", "not assessable"]
@@ -66,6 +67,7 @@ class CornerResult:
     failing: Mapping[str, int] = field(default_factory=dict)  # outcome → units that show it at this corner
     first_failures: int = 0  # units that no earlier corner of the list failed
     distortion: Distribution | None = None  # of the output, fractions; None where nothing gives it
+    others: Mapping[str, Distribution] = field(default_factory=dict)  # amplitude_v, drive_w, … where they exist
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -202,60 +204,6 @@ class Provenance:
     exact: int
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Combination:
-    """One allowed fitting of second sources, on the draws of the declared parts."""
-
-    fitted: tuple[tuple[str, str], ...]  # (part, "as declared" or the alternate)
-    yield_: Estimate
-    difference: Estimate
-
-    @property
-    def text(self) -> str:
-        """"Y1: second source, C1: as declared"."""
-        return ", ".join(f"{part}: {name}" for part, name in self.fitted)
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class PilotTest:
-    """One named test of measured boards against the prediction."""
-
-    name: Literal["location", "spread", "shape", "no-starts"]
-    method: str
-    p_value: float
-    rejects: bool  # at the confidence of the study, all tests together
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Doubt:
-    """An assumption under which the measured readings are more likely than under the declared one."""
-
-    name: str
-    meaning: str
-    log_likelihood_ratio: float
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class PilotResult:
-    """Measured boards against the prediction at the test's corner."""
-
-    column: str
-    boards: int
-    no_starts: int
-    corner: Corner
-    measured_mean_hz: float
-    measured_sd_hz: float
-    predicted_mean_hz: float
-    predicted_sd_hz: float
-    predicted_no_start: Estimate
-    tests: tuple[PilotTest, ...]
-    detectable_shift_hz: float  # with power 0.8
-    detectable_spread_ratio: float
-    verdict: str  # "consistent", "shifted", "wider", …, "not enough data"
-    doubts: tuple[Doubt, ...]
-    bench_frequency_hz: Estimate | None  # what the study's bench frequency would be by these boards
-
-
 @dataclass(frozen=True, kw_only=True)
 class Assessment:
     """Everything that `assess` found."""
@@ -285,6 +233,8 @@ class Assessment:
     scrutiny: Scrutiny | None = None
     second_sources: tuple[Combination, ...] = ()  # as declared first; the verdict is the worst one's
     pilot: PilotResult | None = None
+    limiter: LimiterEffect | None = None
+    crystal_start: tuple[CrystalStart, ...] = ()
 
     @property
     def yield_range(self) -> tuple[float, float]:

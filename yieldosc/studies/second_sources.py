@@ -11,9 +11,9 @@ import numpy as np
 
 from yieldosc.errors import refusal
 from yieldosc.studies.estimates import yield_estimate
+from yieldosc.studies.extra_results import Combination
 from yieldosc.studies.parallel import Workers
 from yieldosc.studies.progress import Meter
-from yieldosc.studies.results import Combination
 from yieldosc.studies.rivals import good_units, paired_difference
 from yieldosc.studies.run import QUANTUM, Setup
 from yieldosc.study import Alternate, Study

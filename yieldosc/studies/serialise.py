@@ -16,7 +16,7 @@ from yieldosc.studies.results import (
     Ranking,
     RankLine,
 )
-from yieldosc.studies.serialise_decisions import pilot_dict
+from yieldosc.studies.serialise_decisions import limiter_dict, pilot_dict
 from yieldosc.studies.serialise_scrutiny import scrutiny_dict
 
 
@@ -65,6 +65,8 @@ def assessment_dict(assessment: Assessment) -> dict[str, object]:
             {"fitted": dict(c.fitted), "yield": _estimate(c.yield_), "difference": _estimate(c.difference)}
             for c in a.second_sources
         ],
+        "limiter": None if a.limiter is None else limiter_dict(a.limiter),
+        "crystal_start": [asdict(line) for line in a.crystal_start],
         "pilot": None if a.pilot is None else pilot_dict(a.pilot),
         "findings": [finding.to_dict() for finding in a.findings],
         "cautions": list(a.cautions),
@@ -121,6 +123,7 @@ def _corner(result: CornerResult) -> dict[str, object]:
         "frequency_hz": _distribution(result.frequency_hz),
         "settled_hz": _distribution(result.settled_hz),
         "distortion": _distribution(result.distortion),
+        **{name: _distribution(d) for name, d in result.others.items()},
         "startup": startup,
         "yield": _estimate(result.yield_),
         "failing": dict(result.failing),

@@ -8,9 +8,10 @@ from typing import Any
 
 from yieldosc.errors import Finding
 from yieldosc.studies.compare.results import CompareResult
+from yieldosc.studies.extra_results import LimiterEffect, PilotResult
 from yieldosc.studies.limits.acceptance import LimitRates
 from yieldosc.studies.limits.results import LimitsResult, ResistanceTest, TrimResult
-from yieldosc.studies.results import Estimate, PilotResult, Provenance
+from yieldosc.studies.results import Estimate, Provenance
 from yieldosc.studies.upgrade.results import UpgradeOption, UpgradeResult
 
 
@@ -154,6 +155,17 @@ def compare_dict(r: CompareResult) -> dict[str, object]:
             "provenance": _provenance(r.provenance),
         }
     )  # fmt: skip
+
+
+def limiter_dict(effect: LimiterEffect) -> dict[str, object]:
+    """What the declared limiter did to the yield, and the account of the settling."""
+    return {
+        "limiter": effect.limiter,
+        "yield_with": _estimate(effect.yield_with),
+        "yield_without": _estimate(effect.yield_without),
+        "difference": _estimate(effect.difference),
+        "account": asdict(effect.account),
+    }
 
 
 def pilot_dict(p: PilotResult) -> dict[str, object]:

@@ -19,6 +19,7 @@ from yieldosc.study import Corner
 PIECES_PER_WORKER = 8
 MOST_PIECE = 8 * INNER  # units; bounds what one message between processes carries
 CHART_BARS = 64
+MAIN = ("frequency_hz", "settled_hz", "startup_margin", "distortion")  # fields of their own in a corner's result
 
 
 @dataclass(frozen=True)
@@ -144,6 +145,7 @@ def corner_results(
                 frequency_hz=distributions.get("frequency_hz", _nothing()),
                 settled_hz=distributions.get("settled_hz"),
                 distortion=distributions.get("distortion"),
+                others={name: d for name, d in distributions.items() if name not in MAIN},
                 startup_failures=dead if asked else None,
                 startup_rate=clopper_pearson(dead, gathered.units, confidence) if asked else None,
                 margin=margin,

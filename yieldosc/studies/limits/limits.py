@@ -11,7 +11,7 @@ import numpy as np
 
 from yieldosc.errors import Finding
 from yieldosc.solver.evaluator import Evaluator
-from yieldosc.studies.declared import declared_setup, testing_corner
+from yieldosc.studies.declared import declared_setup, factory_corner
 from yieldosc.studies.estimates import clopper_pearson
 from yieldosc.studies.judge import outcome_name
 from yieldosc.studies.limits.acceptance import Instrument, LimitRates, limit_rates
@@ -55,7 +55,7 @@ def limits(
     meter = Meter(progress)
     crystal = has_crystal(setup)
     meter.expect(2 * n + (2 * TRIM_UNITS * len(trims) if trims else 0) + (RESISTANCE_UNITS if crystal else 0))
-    corner = testing_corner(study)
+    corner = factory_corner(study)
     instrument = Instrument(design.measurement_sd_hz or 0.0, design.measurement_bias_hz)
     with Workers(workers or default_workers()) as crew:
         choosing = factory_sample(setup, corner, 0, n, workers=crew, meter=meter)
@@ -157,7 +157,7 @@ def _findings(study: Study) -> list[Finding]:
     """What the test was taken to be where the study does not say."""
     design = study.design
     made = []
-    corner = testing_corner(study)
+    corner = factory_corner(study)
     if design.test_temperature_c is None:
         made.append(
             Finding(

@@ -112,12 +112,10 @@ class Search:
             return np.empty(0)
         reach = TAIL_SDS * self.instrument.sd_hz + abs(self.instrument.bias_hz)
         low, high = float(f.min()) - reach, float(f.max()) + reach
-        width = self.limits_hz[1] - self.limits_hz[0]
-        low, high = max(low, self.limits_hz[0] - width), min(high, self.limits_hz[1] + width)
+        low, high = max(low, self.limits_hz[0]), min(high, self.limits_hz[1])
         if high <= low:
             low, high = self.limits_hz
-        step = (high - low) / (POINTS - 3)
-        return np.unique([*np.linspace(low - step, high + step, POINTS), *self.limits_hz])
+        return np.unique([*np.linspace(low, high, POINTS), *self.limits_hz])
 
     def _finer(self, pair: Pair, step: float) -> Pairs:
         around = np.linspace(-step, step, FINE_POINTS)
@@ -125,31 +123,31 @@ class Search:
         return self._pairs(*ends)
 
     def _pairs(self, low_hz: Array, high_hz: Array) -> Pairs:
+        # a reading outside the specification is never accepted, however the trade would come out
+        inside_low = low_hz >= self.limits_hz[0] * (1 - EVEN)
+        inside_high = high_hz <= self.limits_hz[1] * (1 + EVEN)
+        valid = (low_hz[:, None] < high_hz[None, :]) & inside_low[:, None] & inside_high[None, :]
         bounds, goods = [], []
         for bias in self.instrument.biases_hz:
-            bound, good = self._at_bias(low_hz - bias, high_hz - bias)
+            bound, good = self._at_bias(low_hz - bias, high_hz - bias, valid)
             bounds.append(bound)
             goods.append(good)
-        bound = np.maximum.reduce(bounds)
-        bound[low_hz[:, None] >= high_hz[None, :]] = np.inf
-        # a reading outside the specification is never accepted, however the trade would come out
-        bound[low_hz < self.limits_hz[0] * (1 - EVEN), :] = np.inf
-        bound[:, high_hz > self.limits_hz[1] * (1 + EVEN)] = np.inf
-        return Pairs(low_hz, high_hz, bound, np.minimum.reduce(goods))
+        return Pairs(low_hz, high_hz, np.maximum.reduce(bounds), np.minimum.reduce(goods))
 
-    def _at_bias(self, low_hz: Array, high_hz: Array) -> tuple[Array, Array]:
+    def _at_bias(self, low_hz: Array, high_hz: Array, valid: NDArray[np.bool_]) -> tuple[Array, Array]:
+        """Bound, infinite for pairs that are not valid, and accepted good units as a share (both (p, q))."""
         centres, good, bad = self._bins()
         under_low, under_high = (_table(limits, centres, self.instrument.sd_hz) for limits in (low_hz, high_hz))
         y = under_high @ bad - (under_low @ bad)[:, None]
         passed = under_high @ good - (under_low @ good)[:, None]
         squares = under_high**2 @ bad + (under_low**2 @ bad)[:, None] - 2 * (under_low * bad) @ under_high.T
-        share = self.information
-        y, squares, whole = (np.maximum(a, 0.0) * share for a in (y, squares, y + passed))
+        escaping, spread, whole = (np.maximum(a[valid], 0.0) * self.information for a in (y, squares, y + passed))
         with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
             below_line = lower_sum(whole, whole, self.confidence)
-            bound = upper_sum(y, np.minimum(squares, y), self.confidence) / below_line
-        bound[~np.isfinite(bound)] = 1.0
-        return np.minimum(bound, 1.0), passed / self.tested.units
+            found = upper_sum(escaping, np.minimum(spread, escaping), self.confidence) / below_line
+        bound = np.full(valid.shape, np.inf)
+        bound[valid] = np.minimum(np.where(np.isfinite(found), found, 1.0), 1.0)
+        return bound, passed / self.tested.units
 
     def _bins(self) -> tuple[Array, Array, Array]:
         """Centres of bins of frequency, and the good and bad units in each."""

@@ -18,7 +18,7 @@ from yieldosc.parts.codes import series_between
 from yieldosc.parts.parameter import Parameter
 from yieldosc.population import Bench, Block
 from yieldosc.solver.solution import Status
-from yieldosc.studies.declared import testing_corner
+from yieldosc.studies.declared import factory_corner
 from yieldosc.studies.trim.wanted import Wanted, wanted_settings
 from yieldosc.study import Corner, Study
 
@@ -54,7 +54,7 @@ class Trim:
         )  # fmt: skip
         return cls(
             parameter=study.parameter(design.trim_role),
-            corner=testing_corner(study),
+            corner=factory_corner(study),
             target_hz=design.target_frequency_hz,
             low=design.trim_low,
             high=design.trim_high,
