@@ -12,6 +12,7 @@ from yieldosc.reports.amounts import outward
 from yieldosc.reports.findings import summarise
 from yieldosc.reports.workbook_evidence import assumptions, better_grades
 from yieldosc.studies.estimates import clopper_pearson, yield_estimate
+from yieldosc.studies.results import Lots
 
 
 def test_the_digits_of_a_known_interval():
@@ -40,3 +41,12 @@ def test_cells_hold_no_digit_more(made):
                     assert cell.value == round(cell.value, 6)
                     assert 0 < cell.value < 100
                     assert len(f"{cell.value:.10g}".partition(".")[2]) <= 5
+
+
+def test_lots_never_read_all_or_nothing():
+    lots = Lots(lots=1024, units_per_lot=256, q05=0.0, q50=0.9, q95=1.0, share_below_target=None, by_chance=(0.85, 1.0))
+    book = Workbook()
+    better_grades(book, tone_assessment(lots=lots))
+    rows = [[c.value for c in row] for row in book["Better grades"].iter_rows()]
+    (row,) = [r for r in rows if r[0] == 1024]
+    assert row[:8] == [1024, 256, "none good", 0.9, "none failed", 0.85, "none failed", "no target"]

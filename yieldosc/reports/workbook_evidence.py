@@ -135,7 +135,9 @@ def better_grades(book: Workbook, a: Assessment) -> None:
     if lots is not None:
         page.text("Lots whose units share their reels", size=12, bold=True)
         page.sentence(lots_sentence(a))
-        rows = [[lots.lots, lots.units_per_lot, lots.q05, lots.q50, lots.q95, *_chance(lots), _below(lots)]]
+        points = [_lot_yield(q) for q in (lots.q05, lots.q50, lots.q95, *(lots.by_chance or ()))]
+        points += [""] * (5 - len(points))
+        rows = [[lots.lots, lots.units_per_lot, *points, _below(lots)]]
         page.table(LOT_HEADINGS, rows, ("#,##0", "#,##0", *("0.0%",) * 5, None), freeze=False)
     page.text(f"Looks at the joint yield: {len(a.looks)} of {a.looks_planned} planned", size=12, bold=True)
     looks: list[list[Value]] = [
@@ -155,8 +157,11 @@ LOT_HEADINGS = ("Lots", "Units each", "5 % point", "Median", "95 % point", "By c
                 "By chance alone, 95 %", "Lots below the target")  # fmt: skip
 
 
-def _chance(lots: Lots) -> list[Value]:
-    return ["", ""] if lots.by_chance is None else list(lots.by_chance)
+def _lot_yield(share: float) -> Value:
+    """A lot in which nothing failed, or nothing was good, is called that."""
+    if 0 < share < 1:
+        return share
+    return "none failed" if share >= 1 else "none good"
 
 
 def _below(lots: Lots) -> str:
