@@ -142,4 +142,5 @@ def test_an_assessment_says_all_of_it(make_study, ideal_wien):
     study = make_study(gain=4.0, change=measured_c1(LOT))
     a = assess(study, units=8192, rival_units=4096, workers=1, evaluator=ideal_wien())
     assert [f.code for f in a.findings if f.code.startswith("measured")] == ["measured-lot", "measured-uncertainty"]
+    assert a.conditions == ("if further lots are like the one measured: C1",)
     assert a.scrutiny.measured_uncertainty.low <= a.yield_.estimate <= a.scrutiny.measured_uncertainty.high

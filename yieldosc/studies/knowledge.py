@@ -1,5 +1,5 @@
 """Which piece of knowledge the yield hangs on: rivals grouped by what they differ in, and the sets that single out
-temperature laws and each value of an active device."""
+temperature laws and single values: of active devices, and those that are assumed."""
 
 from __future__ import annotations
 
@@ -20,6 +20,7 @@ from yieldosc.studies.run import QUANTUM, Setup
 from yieldosc.studies.scrutiny import Knowledge
 
 DEVICES = ("transistor", "ic", "diode")
+UNSURE = ("assumed", "typical", "simulated")
 MOST_UNITS = QUANTUM  # per set that singles out laws or one value of a device
 LOT_SIDE = "lot side"
 BY_NAME = {  # rival sets that differ in one piece of knowledge alone; the others mix several
@@ -48,7 +49,7 @@ def knowledge(
 ) -> tuple[Knowledge, ...]:
     """Largest span first. rivals: those of the assessment; declared_good (n,): units 0 … n − 1 of the declared set.
 
-    devices: parts whose values are tried one at a time (None: every active device). Cost: half of n, at most
+    devices: parts whose single values are tried (None: all that have some). Cost: half of n, at most
     4,096 units per set.
     """
     declared = setup.population.parameters
@@ -79,9 +80,9 @@ def device_name(parameter: Parameter) -> str:
     return parameter.role if parameter.part == parameter.role else f"{parameter.part} {parameter.role}"
 
 
-def is_device_value(parameter: Parameter) -> bool:
-    """A value of an active device that differs between units."""
-    return parameter.kind in DEVICES and bounded_spread(parameter)
+def is_single_value(parameter: Parameter) -> bool:
+    """A value worth a question of its own: an active device's, or one that nobody guarantees or measured."""
+    return bounded_spread(parameter) and (parameter.kind in DEVICES or parameter.pedigree in UNSURE)
 
 
 def _singles(declared: Sequence[Parameter], devices: Collection[str] | None) -> Iterator[_Single]:
@@ -90,7 +91,7 @@ def _singles(declared: Sequence[Parameter], devices: Collection[str] | None) -> 
         meaning = f"every temperature coefficient in the {'lower' if side < 0 else 'upper'} half of its spread"
         yield _Single("temperature laws", Rival(f"temperature laws {word}", meaning, changed))
     for parameter in declared:
-        if not is_device_value(parameter) or (devices is not None and parameter.part not in devices):
+        if not is_single_value(parameter) or (devices is not None and parameter.part not in devices):
             continue
         name = device_name(parameter)
         for side, word in SIDES:

@@ -7,6 +7,7 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 
 from yieldosc.errors import Finding
+from yieldosc.parts.shapes import Measured
 from yieldosc.population import Block
 from yieldosc.population.block import middle_draws
 from yieldosc.solver.solution import Solution
@@ -48,6 +49,9 @@ def conditions(study: Study, ratio: float | None) -> tuple[str, ...]:
         roles = [p.role for p in study.parameters if p.pedigree == pedigree]
         if roles:
             made.append(f"if the {pedigree} values hold: {', '.join(roles)}")
+    measured = [p.role for p in study.parameters if isinstance(p.shape, Measured)]
+    if measured:
+        made.append(f"if further lots are like the one measured: {', '.join(measured)}")
     one_sided = [f for f in study.findings if f.code == ONE_BOUND]
     made += [f"if the missing bound is no worse than the one given: {str(f.place) or f.text}" for f in one_sided]
     if ratio is not None:

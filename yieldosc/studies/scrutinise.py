@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from yieldosc.studies.bench_list import bench_list
 from yieldosc.studies.capability import capability, demonstrations, pilots
-from yieldosc.studies.knowledge import is_device_value, knowledge
+from yieldosc.studies.knowledge import is_single_value, knowledge
 from yieldosc.studies.measured_lots import measured_lots, measured_uncertainty
 from yieldosc.studies.parallel import Workers
 from yieldosc.studies.progress import Meter
@@ -39,7 +39,7 @@ def scrutinise(
     """tried: the assessment's sets; declared_good (n,): which of units 0 … n − 1 the declared set calls good."""
     declared = setup.population.parameters
     found = knowledge(
-        setup, tried, declared_good, devices=moving_devices(setup, rankings), confidence=confidence, workers=workers,
+        setup, tried, declared_good, devices=moving_parts(setup, rankings), confidence=confidence, workers=workers,
         meter=meter,
     )  # fmt: skip
     gathered, estimate = run.gathered, run.estimate
@@ -58,10 +58,10 @@ def scrutinise(
     )
 
 
-def moving_devices(setup: Setup, rankings: Mapping[str, Ranking]) -> tuple[str, ...]:
-    """Active devices that hold at least 1 % of some variance, their reel's share included; all where nothing is
-    ranked."""
-    devices = {p.part: p.reel for p in setup.population.parameters if is_device_value(p)}
+def moving_parts(setup: Setup, rankings: Mapping[str, Ranking]) -> tuple[str, ...]:
+    """Parts with single values that hold at least 1 % of some variance, their reel's share included; all where nothing
+    is ranked."""
+    devices = {p.part: p.reel for p in setup.population.parameters if is_single_value(p)}
     lines = [line for ranking in rankings.values() for line in ranking.parts]
     if not lines:
         return tuple(devices)
