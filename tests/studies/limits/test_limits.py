@@ -59,6 +59,12 @@ def linear_study(make_study):
     return made
 
 
+@pytest.fixture
+def few_levels(monkeypatch):
+    """Only the study's own level is searched for: the other lines of the trade cost time and prove nothing here."""
+    monkeypatch.setattr("yieldosc.studies.limits.limits.LEVELS", ())
+
+
 def escapes(low_ppm, high_ppm, correlation=0.8):
     """P(accepted and bad) and P(accepted), the unit bad where room or cold lies outside ±50 ppm, by quadrature."""
 
@@ -76,7 +82,7 @@ def escapes(low_ppm, high_ppm, correlation=0.8):
     return integral(lambda x: accept(x) * (1 - good(x))), integral(accept), integral(lambda x: (1 - accept(x)) * good(x))
 
 
-def test_rates_of_the_chosen_limits_are_the_integrals(linear_study):
+def test_rates_of_the_chosen_limits_are_the_integrals(linear_study, few_levels):
     study, evaluator = linear_study(escape_limit=5e-3)
     r = limits(study, units=60_000, workers=1, evaluator=evaluator)
     target = study.design.target_frequency_hz
@@ -92,7 +98,7 @@ def test_rates_of_the_chosen_limits_are_the_integrals(linear_study):
     assert (target - r.chosen.low_hz) / (r.chosen.high_hz - target) == pytest.approx(1, abs=0.15)
 
 
-def test_no_limits_at_this_temperature_reach_the_level_and_the_floor_says_so(linear_study):
+def test_no_limits_at_this_temperature_reach_the_level_and_the_floor_says_so(linear_study, few_levels):
     study, evaluator = linear_study(escape_limit=1e-5)
     r = limits(study, units=20_000, workers=1, evaluator=evaluator)
     assert (r.chosen_by_level, r.confirmed) == (False, False)
@@ -102,7 +108,7 @@ def test_no_limits_at_this_temperature_reach_the_level_and_the_floor_says_so(lin
     assert next(line for line in r.trade if line.level == 1e-5).rates is None
 
 
-def test_an_unrelated_reading_has_the_share_of_bad_units_as_its_floor(linear_study):
+def test_an_unrelated_reading_has_the_share_of_bad_units_as_its_floor(linear_study, few_levels):
     study, evaluator = linear_study(escape_limit=1e-3)
     r = limits(study, units=20_000, workers=1, evaluator=replace(evaluator, correlation=0.0))
     cold = 2 * norm.sf(2.5)
@@ -121,7 +127,7 @@ def test_a_strict_level_costs_more_good_units(linear_study):
     assert shipped == sorted(shipped, reverse=True)
 
 
-def test_without_a_level_the_limits_are_the_specification(linear_study):
+def test_without_a_level_the_limits_are_the_specification(linear_study, few_levels):
     study, evaluator = linear_study()
     r = limits(study, units=20_000, workers=1, evaluator=evaluator)
     assert (r.chosen.low_hz, r.chosen.high_hz) == (study.design.frequency_low_hz, study.design.frequency_high_hz)
@@ -132,7 +138,7 @@ def test_without_a_level_the_limits_are_the_specification(linear_study):
     ]
 
 
-def test_what_the_study_does_not_say_is_said(linear_study):
+def test_what_the_study_does_not_say_is_said(linear_study, few_levels):
     study, evaluator = linear_study(escape_limit=5e-3, test_temperature_c=None, measurement_sd_hz=None)
     found = {f.code: (f.level, f.text) for f in limits(study, units=20_000, workers=1, evaluator=evaluator).findings}
     assert found == {
@@ -144,14 +150,14 @@ def test_what_the_study_does_not_say_is_said(linear_study):
     }
 
 
-def test_bias_costs_more_good_units_than_none(linear_study):
+def test_bias_costs_more_good_units_than_none(linear_study, few_levels):
     study, evaluator = linear_study(escape_limit=5e-3)
     biased = replace(study, design=replace(study.design, measurement_bias_hz=4 * PPM * study.design.target_frequency_hz))
     calm, off = (limits(s, units=20_000, workers=1, evaluator=evaluator) for s in (study, biased))
     assert off.chosen.false_rejects.estimate > 1.1 * calm.chosen.false_rejects.estimate
 
 
-def test_no_number_of_workers_changes_a_digit(linear_study):
+def test_no_number_of_workers_changes_a_digit(linear_study, few_levels):
     study, evaluator = linear_study(escape_limit=5e-3)
     one, two = (limits(study, units=20_000, workers=w, evaluator=evaluator) for w in (1, 2))
     assert replace(one, provenance=two.provenance) == two
@@ -159,7 +165,7 @@ def test_no_number_of_workers_changes_a_digit(linear_study):
     assert other.chosen != one.chosen
 
 
-def test_the_study_is_left_as_it_was(linear_study):
+def test_the_study_is_left_as_it_was(linear_study, few_levels):
     study, evaluator = linear_study(escape_limit=5e-3)
     copy = replace(study)
     limits(study, units=10_000, workers=1, evaluator=evaluator)
