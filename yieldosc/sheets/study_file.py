@@ -70,7 +70,7 @@ def load_study(path: Path) -> Study:
         check_study_sizes(book)
         tables = workbook_tables(book, problems)
     check_study_sizes(book)
-    study = _understood(path, book, tables, problems)
+    study = understood(_name(path), book, tables, problems)
     if study is None or problems.fatal:
         raise InputError(_in_order(problems))
     return study
@@ -82,7 +82,8 @@ def _in_order(problems: Problems) -> list[Finding]:
     return sorted(findings, key=lambda f: (f.level != "error", rank.get(f.place.sheet or "", 2), f.place.row or 0))
 
 
-def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems) -> Study | None:
+def understood(name: str, book: Book, tables: StudyTables, problems: Problems) -> Study | None:
+    """The study that the sheets hold; None with errors in `problems`."""
     sheet = read_design(tables.items, tables.design_place, problems)
     limits = frequency_limits(sheet, problems)
     check_design(sheet, problems)
@@ -121,7 +122,7 @@ def _understood(path: Path, book: Book, tables: StudyTables, problems: Problems)
     if design is None:
         return None
     study = Study(
-        name=_name(path),
+        name=name,
         circuit=circuit,
         parameters=parameters,
         conditions=conditions,
