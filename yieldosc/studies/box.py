@@ -40,7 +40,7 @@ class Box:
         """Positions (d, n) in [0, 1] of values (d, n) along `free`."""
         low = np.array([self.low[role] for role in self.free])[:, None]
         high = np.array([self.high[role] for role in self.free])[:, None]
-        return np.clip((values - low) / (high - low), 0.0, 1.0)
+        return np.asarray(np.clip((values - low) / (high - low), 0.0, 1.0))
 
     def at(self, positions: Array) -> dict[str, Array]:
         """Values of n points; positions (d, n) in [0, 1] along `free`."""

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -43,11 +44,15 @@ def climb(function: Function, climbers: Sequence[Climber]) -> Reached:
     before = team.values
     for step in FINE:
         before = team.values
-        reach = np.array([-step, step])[None, :, None]
-        team.rounds(lambda points, reach=reach: np.clip(points[:, None, :] + reach, 0.0, 1.0))
+        team.rounds(partial(_both_sides, step))
     last = np.zeros(len(climbers))
     np.subtract(team.values, before, out=last, where=np.isfinite(before))
     return Reached(team.values, last)
+
+
+def _both_sides(step: float, points: Array) -> Array:
+    """Positions (d, 2, m) a step below and above each coordinate, inside the box."""
+    return np.asarray(np.clip(points[:, None, :] + np.array([-step, step])[None, :, None], 0.0, 1.0))
 
 
 class _Team:
