@@ -10,7 +10,7 @@ Row = tuple[str, str, str]
 
 def method_rows(a: Assessment) -> tuple[Row, ...]:
     """(step, what is done, source)."""
-    return (*_circuit(a), *_population(), *_rates(a), *_evidence(a))
+    return (*_circuit(a), *_population(), *_rates(a), *_evidence(a), *_scrutiny())
 
 
 def _circuit(a: Assessment) -> tuple[Row, ...]:
@@ -93,8 +93,8 @@ def _evidence(a: Assessment) -> tuple[Row, ...]:
             "Leading parts",
             "First-order and total Sobol indices of ln frequency and ln max(margin, 0.001), one group per part or "
             "reel, then per cause inside the leading parts; 16 scramblings give the interval, cut to 0 … 1, where a "
-            "share of a variance lies. Two looks fixed beforehand, each at 1 − α/2; parts lead together whose intervals of "
-            "the total overlap.",
+            "share of a variance lies. Two looks fixed beforehand, each at 1 − α/2; parts lead together whose "
+            "intervals of the total overlap.",
             "Saltelli et al., Comput. Phys. Commun. 181 (2010) 259",
         ),
         (
@@ -105,7 +105,7 @@ def _evidence(a: Assessment) -> tuple[Row, ...]:
         (
             "Extremes",
             "Three bands: extreme value searched over the box of all part limits, root-sum-square from sensitivities "
-            "(± 3 standard deviations), and the simulated range.",
+            "(± 3 standard deviations; of a margin's logarithm), and the simulated range.",
             "sheet 'Extremes' names each search",
         ),
         (
@@ -113,5 +113,39 @@ def _evidence(a: Assessment) -> tuple[Row, ...]:
             "Two significant digits of the interval's half-width, bounds rounded outward, more where rounding would "
             "tie with the target; the verdict uses unrounded values.",
             "JCGM 101 for the principle",
+        ),
+    )
+
+
+def _scrutiny() -> tuple[Row, ...]:
+    return (
+        (
+            "Between temperatures",
+            "Units nearer to a limit than twice the largest fall that 512 units show between two temperatures are also "
+            "judged halfway and at the turning point of a parabola through three temperatures; what fails there fails. "
+            "Enough is an upper bound on flips below a tenth of the half-width of the yield's interval.",
+            "sheet 'Import findings' says what was found",
+        ),
+        (
+            "Spread by assumption",
+            "Sets that differ in one piece of knowledge, on the same draws; its span is from the lowest to the highest "
+            "of them. Samples: distribution-free tolerance intervals, or Student's interval of a mean.",
+            "Wilks, Ann. Math. Statist. 12 (1941) 91",
+        ),
+        (
+            "Measured lots",
+            "Values are drawn as measured; lots drawn from them with replacement show what so few leave open.",
+            "bootstrap: Efron, Ann. Statist. 7 (1979) 1",
+        ),
+        (
+            "Capability",
+            "Percentile method: Ppk = min((U − x50)/(x99.865 − x50), (x50 − L)/(x50 − x0.135)), quantiles with "
+            "order-statistic intervals from 2,731 units on; pilots by the non-central t distribution.",
+            "common practice; Kotz & Johnson, Process Capability Indices, 1993, from memory",
+        ),
+        (
+            "Demonstration",
+            "Boards without a failure: n ≥ ln(1 − C)/ln(1 − p).",
+            "binomial, no failure",
         ),
     )
