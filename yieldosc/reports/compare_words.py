@@ -105,10 +105,10 @@ def _meaning(r: CompareResult) -> Iterator[str]:
         yield f"The second study {reached} its target of {percent(target)} on these units; assess gives the verdict."
     if _leads(r):
         yield f"{r.steps[0].name} does most of it: {points_text(r.steps[0].difference)} alone."
-    together = r.rates[0].difference.estimate
+    together = r.together.estimate
     alone = sum(s.difference.estimate for s in r.steps)
     if r.steps and abs(together - alone) > 0.005:
         yield (
-            f"The changes do not add up: {alone * 100:+.2f} points one by one, {together * 100:+.2f} together; they "
-            "act on each other."
+            f"The changes do not add up: {alone * 100:+.2f} points one by one, {together * 100:+.2f} together on the "
+            "same units; they act on each other."
         )

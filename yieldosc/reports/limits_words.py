@@ -68,6 +68,8 @@ def rate(estimate: Estimate) -> str:
 def _limits_text(r: LimitsResult, rates: LimitRates) -> str:
     scale = Deviation.of(r.study.design)
     low, high = (format_quantity(f, "Hz", HZ_DIGITS) for f in (rates.low_hz, rates.high_hz))
+    if low.split()[-1] != high.split()[-1]:  # "970 Hz to 1.03 kHz" is easily misread
+        low, high = (f"{f:.{HZ_DIGITS}g} Hz" for f in (rates.low_hz, rates.high_hz))
     return f"{low} to {high} ({scale.text(rates.low_hz)} to {scale.text(rates.high_hz)})"
 
 
@@ -221,7 +223,7 @@ def _distinct(trade: tuple[TradeLine, ...]) -> list[TradeLine]:
 def _floor(r: LimitsResult) -> str:
     rates = r.floor.rates
     text = f"the lowest upper bound found is {ppm(rates.escapes_shipped.high)}, with {_limits_text(r, rates)}"
-    if r.floor.closing is not None and r.floor.closing_hz is not None:
+    if r.floor.closing:  # an estimate of 0 would say more than the bound before it
         text += f"; as the limits close around one reading, the estimate of escapes goes to {ppm(r.floor.closing)}"
     return f"{text}."
 

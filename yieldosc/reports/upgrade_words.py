@@ -14,6 +14,7 @@ from yieldosc.studies.digits import percent_text
 from yieldosc.studies.upgrade.results import Recentre, UpgradeOption, UpgradeResult
 
 NOTHING = 0.001  # a change of yield that is not worth a purchase
+ALMOST = 0.01  # a good unit that costs so little more is worth a simpler change
 MOST_ROWS, FEW_ROWS = 14, 3
 MONEY = "#,##0.0000"
 PLACEHOLDER = (
@@ -118,6 +119,7 @@ def _next_steps(r: UpgradeResult) -> Iterator[str]:
         yield "Keep the declared grades: the target needs no better part."
     elif r.target is not None and not _recentre_reaches(r):
         yield "Change the limit, the circuit or its nominal values, or trim each board: no purchase reaches the target."
+    yield from _simpler(r)
     best = _best_recentre(r)
     if best and (r.chosen is None or r.chosen.changes):
         reaches = " and reaches the target" if _recentre_reaches(r) else ""
@@ -147,6 +149,21 @@ def _why(r: UpgradeResult) -> str:
     if r.target is not None and r.current.low >= r.target:
         return " The declared parts reach the target too, but a good unit costs less with this."
     return ""
+
+
+def _simpler(r: UpgradeResult) -> Iterator[str]:
+    """A set with fewer changes whose good unit costs almost the same."""
+    if r.chosen is None or not r.chosen.cost_per_good_unit:
+        return
+    for other in r.sets:
+        cost = other.cost_per_good_unit
+        held = r.target is not None and other.confirmed is not None and other.confirmed.low >= r.target
+        if cost and held and 0 < len(other.changes) < len(r.chosen.changes):
+            dearer = cost / r.chosen.cost_per_good_unit - 1
+            if dearer < ALMOST:
+                orders = listed([change.order for change in other.changes])
+                yield f"With fewer changes, {orders}: a good unit costs {cost:.4f}, {dearer * 100:.2g} % more."
+                return
 
 
 def _pair(r: UpgradeResult) -> bool:
@@ -244,7 +261,8 @@ def _singles(r: UpgradeResult) -> Section:
     ordered = sorted(r.singles, key=lambda o: (-round(o.difference.estimate, 4), o.relative_price))
     moving = sum(o.difference.low > 0 or o.difference.high < 0 for o in r.singles)
     return Section(
-        title="Every grade alone", note=SAME_DRAWS, columns=_columns(r, "purchase"),
+        title="Every grade alone", note=f"{SAME_DRAWS} Points: on the first {r.units:,} units.",
+        columns=_columns(r, "purchase"),
         rows=tuple(_row(r, option) for option in ordered), key="singles",
         most=max(FEW_ROWS, min(moving, MOST_ROWS)),
     )  # fmt: skip
@@ -257,9 +275,8 @@ def _search(r: UpgradeResult) -> Iterator[str]:
     combined = listed([f"({name})" if "," in name else name for name in s.purchases])
     yield (
         f"Of the grades of {combined or 'no purchase'} {s.dominated} were set aside, because another, no dearer one "
-        f"fails only where they do; the rest make {s.possible:,} sets, of which {s.tried:,} were tried in the order of "
-        f"their price, on up to {r.confirm_units:,} units each. Yield is not monotone in tolerance, so sets are "
-        "enumerated."
+        f"fails only where they do. Sets left: {s.possible:,}; tried, in the order of their price, on up to "
+        f"{r.confirm_units:,} units each: {s.tried:,}. Yield is not monotone in tolerance, so sets are enumerated."
     )
     if s.left_out:
         yield f"Not combined, because frequency and margin lean less on them: {'; '.join(s.left_out)}."

@@ -108,8 +108,8 @@ def _spread(z: Array, alpha: float) -> PilotTest:
     if n < 2:
         return PilotTest(name="spread", method="χ² test of the variance", p_value=1.0, rejects=False)
     statistic = (n - 1) * float(z.var(ddof=1))
-    p = 2 * min(stats.chi2.cdf(statistic, n - 1), stats.chi2.sf(statistic, n - 1))
-    return PilotTest(name="spread", method="χ² test of the variance", p_value=float(min(p, 1.0)), rejects=bool(p < alpha))
+    p = float(min(2 * min(stats.chi2.cdf(statistic, n - 1), stats.chi2.sf(statistic, n - 1)), 1.0))
+    return PilotTest(name="spread", method="χ² test of the variance", p_value=p, rejects=p < alpha)
 
 
 def _shape(z: Array, alpha: float) -> PilotTest:

@@ -81,8 +81,34 @@ def test_a_change_that_does_everything_is_the_whole_of_it(make_study, run):
     assert steps["C1"] == r.rates[0].difference
     assert steps["RF"].estimate == 0
     assert list(steps) == ["C1", "RF"]  # largest first
-    meaning = next(s.sentences for s in compare_page(r).sections if s.key == "meaning")
-    assert meaning[-1].startswith("C1 does most of it: +")
+    assert meaning_of(r)[-1].startswith("C1 does most of it: +")
+
+
+def meaning_of(r):
+    return next(s.sentences for s in compare_page(r).sections if s.key == "meaning")
+
+
+def test_changes_that_act_on_each_other_are_said_to(make_study, run):
+    """Both rows tight pass every board; each alone leaves the other's spread: the whole is more than the sum."""
+    before = make_study(r=0.05, c=0.05, gain=5.0)
+    after = make_study(r=0.01, c=0.01, gain=5.0)
+    r = run(before, after)
+    alone = sum(s.difference.estimate for s in r.steps)
+    assert r.together == r.rates[0].difference  # as many units for the steps as for the whole here
+    assert meaning_of(r)[-1] == (
+        f"The changes do not add up: {alone * 100:+.2f} points one by one, {r.together.estimate * 100:+.2f} together on "
+        "the same units; they act on each other."
+    )
+
+
+def test_steps_on_fewer_units_than_the_whole_are_not_called_interplay(make_study, run):
+    """The first 16,384 units and all 32,768 do not fail equally often: that is chance, not one change on another."""
+    before = make_study(r=0.01, c=0.05, gain=5.0)
+    after = tightened(tightened(before, "C1", 0.01), "RF", 0.01)
+    r = run(before, after, units=2 * UNITS)
+    assert r.step_units == UNITS
+    assert r.together.estimate == pytest.approx(sum(s.difference.estimate for s in r.steps), abs=1e-12)
+    assert not any("add up" in sentence for sentence in meaning_of(r))
 
 
 def test_a_single_change_needs_no_steps(make_study, run):

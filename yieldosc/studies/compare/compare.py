@@ -71,6 +71,7 @@ def compare(
         differences=found,
         rates=_rates(first, second, confidence),
         steps=tuple(sorted(effects, key=lambda s: -abs(s.difference.estimate))),
+        together=paired_difference(second[:step_units] == GOOD, base, confidence),
         units=n,
         step_units=step_units,
         findings=tuple(_findings(before, after, found)),

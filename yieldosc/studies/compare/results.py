@@ -51,6 +51,7 @@ class CompareResult:
     differences: tuple[Difference, ...]
     rates: tuple[RateChange, ...]  # the yield first
     steps: tuple[Step, ...]  # largest effect first; empty where the circuits differ
+    together: Estimate  # difference of the yields on the units of the steps
     units: int
     step_units: int
     findings: tuple[Finding, ...]

@@ -120,9 +120,9 @@ class _Choice:
         pairs, _ = search.chosen(levels)
         found = dict(zip(levels, pairs, strict=True))
         for share in LESS_CAUTIOUS:
-            (other,), lowest = replace(search, information=share).chosen([level or 1.0])
-            if level is not None and found[level] is None:
-                found[level] = other
+            left = [at for at in levels if found[at] is None] or levels[-1:]
+            others, lowest = replace(search, information=share).chosen(left)
+            found |= {at: pair for at, pair in zip(left, others, strict=True) if found[at] is None}
         unguarded = self.rates_of(Pair(*own, np.nan))
         self.trade = (
             TradeLine(level=None, rates=unguarded, chosen_bound=None),
