@@ -51,7 +51,11 @@ class Unit:
     outcome: Outcome | NDArray[np.object_]
     other_modes_hz: tuple[float, ...] | tuple[tuple[float, ...], ...]
     resistance_ratio: FloatOrArray = None
-    distortion: FloatOrArray = None
+    distortion: FloatOrArray = None  # at the output
+    distortion_in: FloatOrArray = None  # at the limiter's input
+    amplitude_v: FloatOrArray = None  # peak fundamental at the output
+    amplitude_in_v: FloatOrArray = None
+    drive_w: FloatOrArray = None  # of the crystal
     overdriven: bool | NDArray[np.bool_] = False
 
     def to_dict(self) -> dict[str, object]:
@@ -72,6 +76,10 @@ class Unit:
             "other_modes_hz": list(self.other_modes_hz),
             "resistance_ratio": number(self.resistance_ratio),
             "distortion": number(self.distortion),
+            "distortion_in": number(self.distortion_in),
+            "amplitude_v": number(self.amplitude_v),
+            "amplitude_in_v": number(self.amplitude_in_v),
+            "drive_w": number(self.drive_w),
             "overdriven": self.overdriven.tolist() if isinstance(self.overdriven, np.ndarray) else self.overdriven,
         }
 
@@ -166,6 +174,10 @@ def _unit(
         other_modes_hz=others[0] if scalar else tuple(others),
         resistance_ratio=pick(solution.resistance_ratio),
         distortion=pick(solution.distortion),
+        distortion_in=pick(solution.distortion_in),
+        amplitude_v=pick(solution.amplitude_v),
+        amplitude_in_v=pick(solution.amplitude_in_v),
+        drive_w=pick(solution.drive_w),
         overdriven=bool(overdriven[0]) if scalar else overdriven,
     )
 

@@ -11,7 +11,7 @@ from yieldosc.errors import Finding, Place
 from yieldosc.reports.amounts import Deviation, listed, margin_text, per_percent_text, signed, upper_text
 from yieldosc.reports.findings import summarise
 from yieldosc.studies.estimates import clopper_pearson, yield_estimate
-from yieldosc.studies.results import Estimate, Lots
+from yieldosc.studies.results import Estimate, Lots, FailureShare
 
 
 def test_a_failing_study_says_so_with_its_reason_and_its_way_out():
@@ -199,8 +199,20 @@ def test_an_off_centre_population_is_told_to_move_first():
 
 
 def test_units_on_another_mode_are_located():
-    s = summarise(tone_assessment(wrong_modes_hz=(2.4e7, 2.41e7)))
-    assert "Units that start on another mode run between 24 MHz and 24.1 MHz." in s.deciding
+    where = "Units that start on another mode run between 24 MHz and 24.1 MHz; "
+    few = summarise(tone_assessment(wrong_modes_hz=(2.4e7, 2.41e7)))
+    assert f"{where}too few of them are known to say which parts push a unit there." in few.deciding
+    pushed = FailureShare(part="Q1 hFE", cause="initial", ks_distance=0.4, p_value=1e-9, mean_shift_sd=0.91)
+    many = summarise(tone_assessment(wrong_modes_hz=(2.4e7, 2.41e7), wrong_mode_share=(pushed,)))
+    assert (
+        f"{where}their draws differ from those of all units most in Q1 hFE (initial, 0.91 standard deviations high)."
+        in many.deciding
+    )
+    level = replace(pushed, p_value=0.5)
+    none = summarise(tone_assessment(wrong_modes_hz=(2.4e7,), wrong_mode_share=(level,)))
+    assert (
+        "Units that start on another mode run at 24 MHz; no part's draws set them apart from all units." in none.deciding
+    )
 
 
 def test_small_words():

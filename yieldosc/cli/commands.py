@@ -20,6 +20,7 @@ from yieldosc.sheets.draft import write_draft
 from yieldosc.sheets.opening import open_book
 from yieldosc.sheets.study_file import is_study, load_study
 from yieldosc.studies.assess import assess as run_assessment
+from yieldosc.studies.refusals import refuse_without_crossing
 from yieldosc.studies.serialise import assessment_dict
 from yieldosc.unit import NamedCircuit, Unit, evaluate_nominal
 
@@ -62,6 +63,7 @@ def unit(arguments: argparse.Namespace, streams: Streams) -> int:
                 "command", "a study brings its own values and options; leave out ROLE=VALUE and --option"
             )
         study = load_study(Path(arguments.target))
+        refuse_without_crossing(study)
         streams.show_findings(study.findings)
         result: Unit = evaluate_nominal(study, temperature_c)
     else:
@@ -111,6 +113,7 @@ def check(arguments: argparse.Namespace, streams: Streams) -> int:
     book = open_book(path)
     if is_study(path):
         study = load_study(path)
+        refuse_without_crossing(study)
         lines, findings = study.bom, study.findings
         if not streams.silent:
             pages.print_study(study, streams.results)

@@ -51,6 +51,7 @@ def _rows(unit: Unit) -> list[tuple[str, str, str]]:
     if unit.distortion is not None:
         meaning = "at the filter's output" if switches else "once settled"
         rows.append(("distortion", f"{_number(unit.distortion) * 100:.3g} %", meaning))
+    rows += _limiter_rows(unit)
     if np.any(unit.overdriven):
         rows.append(("overdriven", "yes", "the pair has become two real roots; growth is the smaller"))
     if switches:
@@ -58,6 +59,20 @@ def _rows(unit: Unit) -> list[tuple[str, str, str]]:
     found = [f for f in unit.other_modes_hz if isinstance(f, float)]
     modes = [format_quantity(f, "Hz", 6) if f else "latches (0 Hz)" for f in found]
     rows.append(("other modes", ", ".join(modes) or "none", "grow too" if modes else "no other mode grows"))
+    return rows
+
+
+def _limiter_rows(unit: Unit) -> list[tuple[str, str, str]]:
+    """What a limiter's model says of the waves."""
+    rows = []
+    if unit.distortion_in is not None:
+        rows.append(("", f"{_number(unit.distortion_in) * 100:.3g} %", "at the limiter's input"))
+    if unit.amplitude_v is not None:
+        rows.append(("amplitude", _figure(unit.amplitude_v, "V", 4), "peak of the fundamental, at the output"))
+    if unit.amplitude_in_v is not None:
+        rows.append(("", _figure(unit.amplitude_in_v, "V", 4), "at the limiter's input"))
+    if unit.drive_w is not None:
+        rows.append(("drive level", _figure(unit.drive_w, "W", 3), "of the crystal: Î²·ESR/2"))
     return rows
 
 

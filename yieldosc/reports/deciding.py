@@ -26,6 +26,7 @@ SHOWS = {
 }
 NAMES = {"frequency": "Frequency", "margin": "Start-up margin"}
 MOST_NAMED = 4
+MOST_PUSHING = 3
 
 
 def how_units_fail(a: Assessment) -> str:
@@ -109,7 +110,22 @@ def wrong_modes_sentence(a: Assessment) -> str:
         return ""
     low, high = (format_quantity(f, "Hz", 4) for f in (min(a.wrong_modes_hz), max(a.wrong_modes_hz)))
     where = f"at {low}" if low == high else f"between {low} and {high}"
-    return f"Units that start on another mode run {where}."
+    return f"Units that start on another mode run {where}{_pushed_there(a)}."
+
+
+def _pushed_there(a: Assessment) -> str:
+    """Which draws set them apart from all units, while enough of them are known."""
+    if not a.wrong_mode_share:
+        return "; too few of them are known to say which parts push a unit there"
+    clear = [f for f in a.wrong_mode_share if f.p_value < 0.05 / len(a.wrong_mode_share)][:MOST_PUSHING]
+    if not clear:
+        return "; no part's draws set them apart from all units"
+    told = [
+        f"{one_line(f.part)} ({f.cause}, {abs(f.mean_shift_sd):.2g} standard deviations "
+        f"{'low' if f.mean_shift_sd < 0 else 'high'})"
+        for f in clear
+    ]
+    return f"; their draws differ from those of all units most in {listed(told)}"
 
 
 def leading(a: Assessment) -> tuple[str, ...]:

@@ -33,7 +33,9 @@ from yieldosc.studies.progress import Callback, Meter
 from yieldosc.studies.provenance import provenance
 from yieldosc.studies.ranking import BASE, rankings
 from yieldosc.studies.reach import reach_findings
+from yieldosc.studies.refusals import refuse_without_crossing
 from yieldosc.studies.results import (
+    OUTCOMES,
     Assessment,
     Band,
     CornerResult,
@@ -62,6 +64,7 @@ USUAL_CORNERS = 9  # studies with more corners spend fewer units on what stands 
 LEAST_BASE = 128
 LEAST_PER_LOT = 64
 EXACT_COST = 40  # times the fast path's, about
+WRONG_MODE = OUTCOMES.index("wrong_mode")
 WORTH_SLOWING = 0.5  # of the usual effort; more is left as it is
 
 
@@ -85,6 +88,7 @@ def assess(
     board before it is judged.
     """
     started, clock = datetime.now(UTC), time.perf_counter()
+    refuse_without_crossing(study)
     population = Population.of(study)
     design = study.design
     solver = evaluator or make_evaluator(
@@ -257,6 +261,7 @@ def _assembled(
         lots=evidence.lots,
         tighter=evidence.tighter,
         failure_share=failure_share(setup, gathered.failing),
+        wrong_mode_share=failure_share(setup, gathered.failing[gathered.failing_codes == WRONG_MODE]),
         worst_units=worst_units(setup, gathered.failing, gathered.failing_codes, gathered.units),
         wrong_modes_hz=tuple(gathered.wrong_modes_hz),
         bench_ratio=ratio,

@@ -6,6 +6,7 @@ from yieldosc.evaluators import make_evaluator
 from yieldosc.population import Population
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies.nominal import bench_ratio, nominal_values, reference_corner
+from yieldosc.studies.refusals import refuse_without_crossing
 from yieldosc.studies.run import Setup
 from yieldosc.studies.temperature_check import with_between
 from yieldosc.study import Corner, Study
@@ -16,6 +17,7 @@ def declared_setup(study: Study, *, seed: int, evaluator: Evaluator | None = Non
 
     evaluator: in place of the circuit's own solver.
     """
+    refuse_without_crossing(study)
     population = Population.of(study)
     design = study.design
     solver = evaluator or make_evaluator(

@@ -225,6 +225,7 @@ class Assessment:
     tighter: tuple[Tighter, ...]
     failure_share: tuple[FailureShare, ...]  # empty with fewer than 30 failing units
     worst_units: tuple[WorstUnit, ...]
+    wrong_mode_share: tuple[FailureShare, ...] = ()  # the same of units on another mode alone
     wrong_modes_hz: tuple[float, ...]  # where wrong-mode units run (sample)
     bench_ratio: float | None
     findings: tuple[Finding, ...]

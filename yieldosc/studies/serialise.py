@@ -57,6 +57,7 @@ def assessment_dict(assessment: Assessment) -> dict[str, object]:
             }
             for t in a.tighter
         ],
+        "wrong_mode_share": [asdict(line) for line in a.wrong_mode_share],
         "failure_share": [asdict(line) for line in a.failure_share],
         "worst_units": [asdict(unit) for unit in a.worst_units],
         "wrong_modes_hz": list(a.wrong_modes_hz),
