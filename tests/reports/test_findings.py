@@ -11,7 +11,7 @@ from yieldosc.errors import Finding, Place
 from yieldosc.reports.amounts import Deviation, listed, margin_text, per_percent_text, signed, upper_text
 from yieldosc.reports.findings import summarise
 from yieldosc.studies.estimates import clopper_pearson, yield_estimate
-from yieldosc.studies.results import Estimate, Lots, FailureShare
+from yieldosc.studies.results import Estimate, FailureShare, Lots
 
 
 def test_a_failing_study_says_so_with_its_reason_and_its_way_out():
