@@ -122,11 +122,16 @@ def main() -> int:
     parser = argparse.ArgumentParser(description=__doc__)
     parser.add_argument("--cases", type=int, default=3000)
     parser.add_argument("--seed", type=int, default=1)
+    parser.add_argument("--minutes", type=float, default=60.0, help="stop after so long, with what was done")
     options = parser.parse_args()
     dice, originals, outcomes, slowest, failures = random.Random(options.seed), samples(), collections.Counter(), 0.0, 0
+    began = time.monotonic()
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder) / "case"
         for case in range(options.cases):
+            if time.monotonic() - began > 60 * options.minutes:
+                options.cases = case
+                break
             data = dice.choice(originals)
             packed = data[:2] == b"PK" and dice.random() < 0.7
             path.write_bytes(parts_mutated(data, dice) if packed else bytes_mutated(data, dice))

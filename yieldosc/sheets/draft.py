@@ -55,12 +55,13 @@ def write_draft(book: Book, *, circuit: str, options: Mapping[str, str], path: P
     open_cells += _roles(workbook.create_sheet("Roles"), roles, proposals, reading)
     workbook.active = 2
     workbook.save(path)
+    by_name = {role.name: role for role in roles}
     doubts = [
         Finding(
             "warning", "draft-doubt", f"{p.role}: {p.part or 'no part'} proposed, {p.reason}; {p.doubt}", Place("Roles")
         )
         for p in proposals
-        if p.doubt
+        if p.doubt and not _left_out(by_name[p.role], p)
     ]
     return Draft(tuple(_worth_telling(roles, proposals)), tuple(open_cells), (*reading.findings, *doubts))
 
