@@ -41,6 +41,13 @@ class PriceReader:
         self._met(currency, entry.place)
         return price
 
+    def note(self, text: str, place: Place) -> None:
+        """Remembers the currency of a price that was read elsewhere."""
+        try:
+            self._met(parse_price(text)[1], place)
+        except QuantityError:
+            return  # said where it was read
+
     def of_bom(self, parts: Sequence[str], lines: Mapping[str, BomLine]) -> dict[str, float]:
         """Designator → price of one part, where the BOM has a column of such prices. What is no price is left out."""
         found = {}

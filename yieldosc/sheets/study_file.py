@@ -32,6 +32,7 @@ from yieldosc.sheets.text_guard import printable
 from yieldosc.sheets.toml_study import toml_tables
 from yieldosc.study import Study
 
+COST = "cost of a failed unit"
 WORKBOOKS = (".xlsx", ".xlsm", ".xls", ".xlsb", ".ods")
 
 
@@ -113,6 +114,8 @@ def understood(name: str, book: Book, tables: StudyTables, problems: Problems) -
     grades = GradeReader(circuit, parameters, maker, prices, problems).read(book)
     alternates = AlternateReader(circuit, rows, maker, prices, problems).read(book)
     bought = prices.of_bom(tuple(dict.fromkeys(maker.parts.values())), lines)
+    if COST in sheet.items:
+        prices.note(sheet.items[COST].text, sheet.place_of(COST))
     prices.compare()
     pilot = read_pilot(book, sheet, problems)
     trimmed = _trimmed(sheet, circuit, problems)
