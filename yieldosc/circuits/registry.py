@@ -1,44 +1,31 @@
-"""The circuits that can be named. A new circuit is a new file with a FAMILY, and one line here."""
+"""The circuits that can be named: every file of this folder that holds a FAMILY. A new circuit is a new file."""
 
 from __future__ import annotations
 
+import pkgutil
 from collections.abc import Iterable, Mapping
+from importlib import import_module
 from typing import Any
 
-from yieldosc.circuits import (
-    colpitts,
-    crystal_colpitts,
-    crystal_common_base,
-    hartley,
-    own_circuit,
-    phase_shift,
-    pierce,
-    quadrature,
-    schmitt_rc,
-    square_to_sine,
-    timer_astable,
-    twin_t,
-    wien_bridge,
-)
+from yieldosc.circuits import own_circuit
 from yieldosc.circuits.circuit import Circuit, CircuitError, Family
 
-FAMILIES: dict[str, Family] = {
-    module.FAMILY.name: module.FAMILY
-    for module in (
-        wien_bridge,
-        phase_shift,
-        twin_t,
-        quadrature,
-        colpitts,
-        hartley,
-        pierce,
-        crystal_colpitts,
-        crystal_common_base,
-        timer_astable,
-        schmitt_rc,
-        square_to_sine,
-    )
-}
+READING_ORDER = (
+    "wien_bridge", "phase_shift", "twin_t", "quadrature", "colpitts", "hartley", "pierce", "crystal_colpitts",
+    "crystal_common_base", "timer_astable", "schmitt_rc", "square_to_sine",
+)  # fmt: skip
+
+
+def _found() -> dict[str, Family]:
+    """Name → family, in reading order; those that it does not name come after, by name."""
+    folder, own = __name__.rpartition(".")[0], __name__.rpartition(".")[2]
+    files = sorted(m.name for m in pkgutil.iter_modules(import_module(folder).__path__) if m.name != own)
+    families = [getattr(import_module(f"{folder}.{file}"), "FAMILY", None) for file in files]
+    made = {family.name: family for family in families if isinstance(family, Family)}
+    return {name: made[name] for name in (*READING_ORDER, *sorted(set(made) - set(READING_ORDER)))}
+
+
+FAMILIES: dict[str, Family] = _found()
 
 
 def names() -> tuple[str, ...]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from tests.samples import BJT, COIL, FEED, JFET, QUARTZ, SECTIONS, TANK
+from tests.samples import BJT, COIL, FEED, JFET, QUARTZ, SAMPLES, SECTIONS, TANK
 
 Case = tuple[str, dict[str, str], dict[str, float]]
 
@@ -97,4 +97,11 @@ CRYSTAL: list[Case] = [
         {**QUARTZ, **BJT, **OVERTONE, "L": 4.7e-6, "C1": 100e-12, "C2": 470e-12, "CB": 10e-9, "RL": 5e3},
     ),
 ]
-ALL = PHASE_SHIFT + OTHERS + LC + CRYSTAL
+_LISTED = PHASE_SHIFT + OTHERS + LC + CRYSTAL
+_NAMED = {name for name, _, _ in _LISTED}
+_MORE: list[Case] = [  # a circuit with no cases of its own here: its sample row
+    (name, sample.options, sample.values)
+    for name, sample in SAMPLES.items()
+    if name not in _NAMED and name not in ("wien_bridge", "timer_astable", "schmitt_rc", "square_to_sine")
+]
+ALL = _LISTED + _MORE
