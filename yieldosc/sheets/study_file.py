@@ -85,10 +85,7 @@ def _in_order(problems: Problems) -> list[Finding]:
 
 def understood(name: str, book: Book, tables: StudyTables, problems: Problems) -> Study | None:
     """The study that the sheets hold; None with errors in `problems`."""
-    sheet = read_design(tables.items, tables.design_place, problems)
-    limits = frequency_limits(sheet, problems)
-    check_design(sheet, problems)
-    check_trim_items(sheet, problems)
+    sheet, limits = _design_sheet(tables, problems)
     rows = sort_rows(tables.rows, problems)
     reading = _bom(book, problems)
     if not rows and not problems.fatal:
@@ -113,37 +110,52 @@ def understood(name: str, book: Book, tables: StudyTables, problems: Problems) -
     prices = PriceReader(problems)
     grades = GradeReader(circuit, parameters, maker, prices, problems).read(book)
     alternates = AlternateReader(circuit, rows, maker, prices, problems).read(book)
+    bought = _bought(sheet, maker, lines, prices)
+    pilot = read_pilot(book, sheet, problems)
+    trimmed = _trimmed(sheet, circuit, problems)
+    design = None if limits is None or problems.fatal else make_design(sheet, limits, trimmed, problems)
+    if design is None:
+        return None
+    study = Study(
+        name=name, circuit=circuit, parameters=parameters, conditions=conditions, design=design,
+        requirements=requirements(design, sheet.items),
+        grades=grades, alternates=alternates, pilot=pilot, prices=bought,
+        findings=tuple(few_alike(problems.findings)),
+    )  # fmt: skip
+    return replace(_with_echo(study, sheet, tables, reading), digest=digest_of(study))
+
+
+def _design_sheet(tables: StudyTables, problems: Problems) -> tuple[DesignSheet, tuple[float, float] | None]:
+    """The items of Design and the frequency limits [Hz]."""
+    sheet = read_design(tables.items, tables.design_place, problems)
+    limits = frequency_limits(sheet, problems)
+    check_design(sheet, problems)
+    check_trim_items(sheet, problems)
+    return sheet, limits
+
+
+def _bought(
+    sheet: DesignSheet, maker: ParameterMaker, lines: Mapping[str, BomLine], prices: PriceReader
+) -> dict[str, float]:
+    """Prices of the parts that roles name; every price of the study in one currency."""
     bought = prices.of_bom(tuple(dict.fromkeys(maker.parts.values())), lines)
     if COST in sheet.items:
         prices.note(sheet.items[COST].text, sheet.place_of(COST))
     prices.compare()
-    pilot = read_pilot(book, sheet, problems)
-    trimmed = _trimmed(sheet, circuit, problems)
-    if limits is None or problems.fatal:
-        return None
-    design = make_design(sheet, limits, trimmed, problems)
-    if design is None:
-        return None
-    study = Study(
-        name=name,
-        circuit=circuit,
-        parameters=parameters,
-        conditions=conditions,
-        design=design,
-        requirements=requirements(design, sheet.items),
+    return bought
+
+
+def _with_echo(study: Study, sheet: DesignSheet, tables: StudyTables, reading: BomReading) -> Study:
+    """With the sheets as text, for reports and for the result workbook."""
+    return replace(
+        study,
         design_given={name: item.value.given for name, item in sheet.items.items()},
         bom=tuple(reading.lines),
         bom_rows=reading.table_rows,
         design_rows=tuple((i.name, i.value.written, i.unit, i.note) for i in tables.items),
         role_rows=tuple(tuple(_role_texts(row)) for row in tables.rows),
         extra_rows=tables.extra_rows,
-        grades=grades,
-        alternates=alternates,
-        pilot=pilot,
-        prices=bought,
-        findings=tuple(few_alike(problems.findings)),
     )
-    return replace(study, digest=digest_of(study))
 
 
 def _bom(book: Book, problems: Problems) -> BomReading:
