@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from yieldosc.quantities import format_quantity
-from yieldosc.reports.amounts import Deviation, bare_percent, margin_text, points_text
+from yieldosc.reports.amounts import Deviation, bare_percent, listed, margin_text, points_text
 from yieldosc.reports.cautions import APPROVAL, REVISIONS, SAFETY
 from yieldosc.reports.decision import Cell, Decision, Section, none_seen, number_cell, rate_cell, words
 from yieldosc.reports.requirements import percent
@@ -175,8 +175,16 @@ def _rates(r: LimitsResult) -> Section:
         title="What these limits do",
         note=f"bad: fails at any corner or end of life; accepted: starts and reads {scale.text(r.chosen.low_hz)} to "
         f"{scale.text(r.chosen.high_hz)}; {r.units:,} fresh units",
-        columns=(("rate", ""), ("meaning", ""), ("estimate", "right")), rows=rows, key="rates",
+        columns=(("rate", ""), ("meaning", ""), ("estimate", "right")), rows=rows, sentences=tuple(_bad_by(r)),
+        key="rates",
     )  # fmt: skip
+
+
+def _bad_by(r: LimitsResult) -> Iterator[str]:
+    """How the bad units fail, by the first outcome that any corner shows."""
+    if r.bad_by:
+        told = listed([f"{count:,} {name.replace('_', ' ')}" for name, count in r.bad_by.items()])
+        yield f"Bad units of {r.units:,}, by what they show first: {told}."
 
 
 def _trade(r: LimitsResult) -> Section:

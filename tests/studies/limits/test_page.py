@@ -91,6 +91,12 @@ def test_confirmed_limits(result):
     )
 
 
+def test_how_bad_units_fail(result):
+    r = result(bad_by={"out_of_limits": 2000, "no_start": 1000})
+    assert said(r, "rates") == ("Bad units of 100,000, by what they show first: 2,000 out of limits and 1,000 no start.",)
+    assert said(result(bad_by={}), "rates") == ()
+
+
 def test_a_population_that_keeps_to_the_level_untested(result):
     assert said(result(bad=1))[1] == (
         "The predicted population keeps to this level untested; the test finds wrong and defective parts."

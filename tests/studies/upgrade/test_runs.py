@@ -86,6 +86,16 @@ def test_no_part_with_a_tolerance_has_no_other_grade(linear):
     ]
 
 
+def test_a_declared_trim_is_said_to_be_left_out(linear):
+    study, evaluator = linear(
+        tolerances=TOLERANCES, weights=WEIGHTS, yield_target=0.9, trim_role="R1", trim_low=9e3, trim_high=11e3
+    )  # fmt: skip
+    r = upgrade(study, units=2048, workers=1, evaluator=evaluator)
+    assert [f.text for f in r.findings if f.code == "trim-not-applied"] == [
+        "boards are judged as they are assembled, without the trim of R1: `limits` shows what the trim does"
+    ]
+
+
 def test_the_choice_is_confirmed_on_units_that_did_not_choose_it(plain):
     study, evaluator = plain
     r = upgrade(study, units=8192, workers=1, evaluator=evaluator)

@@ -25,7 +25,7 @@ Judged = Sequence[tuple[Choice, Flags]]
 
 @dataclass(frozen=True)
 class Company:
-    """One purchase: good units (2 n,) of its declared grade and of its others, one company after the other."""
+    """One purchase: good units of its declared grade and of its others, one company after the other (n + m,)."""
 
     declared: Flags
     offered: Judged
@@ -58,7 +58,8 @@ def companies(
     workers: Workers,
     meter: Meter | None = None,
 ) -> dict[str, Company]:
-    """alone: of each purchase its other grades and their good units (n,) while all else is as declared."""
+    """alone: of each purchase its other grades and their good units (n,) while all else is as declared. trial: of the
+    other company (m units)."""
     top = {name: _top(judged, prices) for name, judged in alone.items() if judged}
     sets: list[tuple[Choice, ...]] = []
     for name, judged in alone.items():

@@ -65,7 +65,7 @@ def upgrade(
     nominals = candidates(study, setup, leaning)
     meter = Meter(progress)
     grades = sum(len(p.choices) for p in offered)
-    meter.expect(single * (1 + 2 * grades) + SCREEN * len(nominals) + 4 * proof)
+    meter.expect(single * (1 + grades) + single * grades // 2 + SCREEN * len(nominals) + 4 * proof)
     run = _Run(study, setup, Prices.of(study, offered), offered, leaning, single, proof, meter)
     with Workers(workers or default_workers()) as crew:
         current = run.declared(crew)
@@ -167,7 +167,7 @@ class _Run:
             p.name: [(c, f) for c, f in self._flags[p.name] if self.prices.money or not c.looser] for p in ranked
         }
         together = companies(
-            self._trial(self.single), self.good, alone, self.prices, workers=crew, meter=self.meter
+            self._trial(max(self.single // 2, 1)), self.good, alone, self.prices, workers=crew, meter=self.meter
         )
         self._kept = [(p, together[p.name].kept(self.prices)) for p in ranked]
         budget = int(MOST_UNITS * min(1.0, USUAL_CORNERS / len(self.setup.corners)))
@@ -249,6 +249,14 @@ def _findings(study: Study, offered: Sequence[Purchase], prices: Prices) -> list
             Finding(
                 "warning", "no-yield-target",
                 "no yield target in Design: grades are compared, but no set can be chosen; give the yield wanted",
+            )
+        )  # fmt: skip
+    if study.design.trim_role is not None:
+        made.append(
+            Finding(
+                "warning", "trim-not-applied",
+                f"boards are judged as they are assembled, without the trim of {study.design.trim_role}: `limits` "
+                "shows what the trim does",
             )
         )  # fmt: skip
     if not offered:
