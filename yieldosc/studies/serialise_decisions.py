@@ -149,6 +149,7 @@ def compare_dict(r: CompareResult) -> dict[str, object]:
             "steps": [
                 {"name": s.name, "yield": _estimate(s.yield_), "difference": _estimate(s.difference)} for s in r.steps
             ],
+            "together": _estimate(r.together),
             "units": r.units,
             "step_units": r.step_units,
             "findings": _findings(r.findings),
