@@ -125,13 +125,13 @@ def test_the_floor_as_the_limits_close(cold):
 
 
 def test_fresh_units_confirm_the_choice_in_nine_of_ten_cases():
-    """16 seeds; fewer than 12 of 16 has a probability of 2 % where nine of ten hold."""
+    """12 seeds; fewer than 9 of 12 has a probability of 3 % where nine of ten hold."""
     level, held = 4e-3, 0
-    for seed in range(16):
+    for seed in range(12):
         (pair,), _ = Search(drawn(30_000, 100 + seed), Instrument(SD), SPEC, CONFIDENCE).chosen([level])
         fresh = limit_rates(drawn(30_000, 900 + seed), Instrument(SD), pair.low_hz, pair.high_hz, CONFIDENCE)
         held += fresh.escapes_shipped.high <= level
-    assert held >= 12
+    assert held >= 9
 
 
 def test_units_of_one_frequency_and_units_that_never_start():

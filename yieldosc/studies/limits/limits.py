@@ -120,7 +120,9 @@ class _Choice:
         pairs, _ = search.chosen(levels)
         found = dict(zip(levels, pairs, strict=True))
         for share in LESS_CAUTIOUS:
-            left = [at for at in levels if found[at] is None] or levels[-1:]
+            left = [at for at in levels if found[at] is None]
+            if not left and share != LESS_CAUTIOUS[-1]:
+                continue
             others, lowest = replace(search, information=share).chosen(left)
             found |= {at: pair for at, pair in zip(left, others, strict=True) if found[at] is None}
         unguarded = self.rates_of(Pair(*own, np.nan))

@@ -136,7 +136,7 @@ class Search:
 
     def _at_bias(self, low_hz: Array, high_hz: Array, valid: NDArray[np.bool_]) -> tuple[Array, Array]:
         """Bound, infinite for pairs that are not valid, and accepted good units as a share (both (p, q))."""
-        centres, good, bad = self._bins()
+        centres, good, bad = _bins(self.tested, self.instrument.sd_hz)
         under_low, under_high = (_table(limits, centres, self.instrument.sd_hz) for limits in (low_hz, high_hz))
         y = under_high @ bad - (under_low @ bad)[:, None]
         passed = under_high @ good - (under_low @ good)[:, None]
@@ -149,17 +149,18 @@ class Search:
         bound[valid] = np.minimum(np.where(np.isfinite(found), found, 1.0), 1.0)
         return bound, passed / self.tested.units
 
-    def _bins(self) -> tuple[Array, Array, Array]:
-        """Centres of bins of frequency, and the good and bad units in each."""
-        kept = self.tested.starting
-        f, bad = self.tested.frequency_hz[kept], self.tested.bad[kept]
-        span = float(f.max() - f.min())
-        if span == 0:
-            return f[:1], np.array([float((1 - bad).sum())]), np.array([float(bad.sum())])
-        wanted = span / self.instrument.sd_hz * BINS_PER_SD if self.instrument.sd_hz else MOST_BINS
-        edges = np.linspace(f.min(), f.max(), int(min(max(wanted, 200), MOST_BINS)) + 1)
-        good_counts, bad_counts = (np.histogram(f, edges, weights=w)[0] for w in (1 - bad, bad))
-        return (edges[1:] + edges[:-1]) / 2, good_counts, bad_counts
+
+def _bins(tested: Tested, sd_hz: float) -> tuple[Array, Array, Array]:
+    """Centres of bins of frequency, and the good and bad units in each."""
+    kept = tested.starting
+    f, bad = tested.frequency_hz[kept], tested.bad[kept]
+    span = float(f.max() - f.min())
+    if span == 0:
+        return f[:1], np.array([float((1 - bad).sum())]), np.array([float(bad.sum())])
+    wanted = span / sd_hz * BINS_PER_SD if sd_hz else MOST_BINS
+    edges = np.linspace(f.min(), f.max(), int(min(max(wanted, 200), MOST_BINS)) + 1)
+    good_counts, bad_counts = (np.histogram(f, edges, weights=w)[0] for w in (1 - bad, bad))
+    return (edges[1:] + edges[:-1]) / 2, good_counts, bad_counts
 
 
 def _table(limits_hz: Array, frequency_hz: Array, sd_hz: float) -> Array:
@@ -173,14 +174,15 @@ def closing_floor(tested: Tested, instrument: Instrument, confidence: float) -> 
     Of the readings between the 5 % and 95 % points: outside, too few units stand behind a figure.
     """
     f = tested.frequency_hz[tested.starting]
-    bad = tested.bad[tested.starting]
     if not len(f) or instrument.sd_hz == 0:
         return 0.0, float("nan")
     first, last = (float(q) for q in np.quantile(f, [0.05, 0.95]))
     readings = np.linspace(first, last, POINTS + 1)
-    shares = []
-    for reading in readings:
-        weight = np.exp(-0.5 * ((reading - f) / instrument.sd_hz) ** 2)
-        shares.append(float(np.dot(weight, bad) / weight.sum()))
-    best = int(np.argmin(shares))
-    return shares[best], float(readings[best])
+    centres, good, bad = _bins(tested, instrument.sd_hz)
+    weight = np.exp(-0.5 * ((readings[:, None] - centres) / instrument.sd_hz) ** 2)
+    with np.errstate(invalid="ignore"):
+        shares = (weight @ bad) / (weight @ (good + bad))  # nan where no unit can read so
+    if np.isnan(shares).all():
+        return 0.0, float("nan")
+    best = int(np.nanargmin(shares))
+    return float(shares[best]), float(readings[best])
