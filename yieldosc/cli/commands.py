@@ -110,7 +110,6 @@ def draft(arguments: argparse.Namespace, streams: Streams) -> int:
 def check(arguments: argparse.Namespace, streams: Streams) -> int:
     """`check INPUT`."""
     path = Path(arguments.input)
-    book = open_book(path)
     if is_study(path):
         study = load_study(path)
         refuse_without_crossing(study)
@@ -118,7 +117,7 @@ def check(arguments: argparse.Namespace, streams: Streams) -> int:
         if not streams.silent:
             pages.print_study(study, streams.results)
     else:
-        reading = read_bom(book)
+        reading = read_bom(open_book(path))
         lines, findings = reading.lines, reading.findings
         if not streams.silent:
             pages.print_check(reading.lines, reading.findings, streams.results)

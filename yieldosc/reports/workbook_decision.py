@@ -109,7 +109,7 @@ def _spread(section: Section) -> tuple[list[str], list[list[Value]], list[str | 
 
 
 def _values(cell: Cell, both: bool) -> list[Value]:
-    bound = cell.text.startswith(("above", "below"))  # a bound alone is no number
+    bound = cell.text.startswith(("above", "below")) and "(" not in cell.text  # a bound alone is no number
     first: Value = cell.text if cell.number is None or bound else cell.number
     if bound:
         return [first, ""] if both else [first]
