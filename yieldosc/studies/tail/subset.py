@@ -95,7 +95,7 @@ def _square_cv(failed: NDArray[np.bool_]) -> float:
     gamma = sum(
         2 * (1 - k / length) * float((x[:-k] * x[k:]).mean()) / (p * (1 - p)) for k in range(1, length)
     )
-    return float(1 - p) / (p * length * chains) * (1.0 + max(float(gamma), 0.0))
+    return float((1 - p) / (p * length * chains) * (1 + max(gamma, 0.0)))
 
 
 def _checked(g: Array) -> Array:
