@@ -12,8 +12,10 @@ from numpy.typing import ArrayLike, NDArray
 from yieldosc.circuits import registry
 from yieldosc.circuits.circuit import Circuit, CircuitError, Family, Option, Role
 from yieldosc.errors import Finding, InputError
-from yieldosc.evaluators import make_evaluator
+from yieldosc.evaluators import UNDECLARED, make_evaluator
 from yieldosc.parts.values import nominal_value
+from yieldosc.settle import settled
+from yieldosc.solver import make_evaluator as make_crossing_evaluator
 from yieldosc.solver.solution import Solution, Status
 from yieldosc.study import Study
 
@@ -85,6 +87,15 @@ class Unit:
 
 
 @dataclass(frozen=True, slots=True)
+class Harmonics:
+    """settled_hz (n,); harmonics (n, 52): the mean first, then the fundamental (1), then the others over it."""
+
+    settled_hz: NDArray[np.float64]
+    at_limiter: NDArray[np.complex128]
+    at_output: NDArray[np.complex128]
+
+
+@dataclass(frozen=True, slots=True)
 class NamedCircuit:
     """A circuit by name: its roles, options and closed form, and `evaluate`."""
 
@@ -124,6 +135,26 @@ class NamedCircuit:
         solution = evaluator.solve(arrays, temperature_c, growth=True)
         others = evaluator.other_modes(arrays, temperature_c)
         return _unit(circuit.name, temperature_c, solution, others, scalar)
+
+    def harmonics(
+        self,
+        values: Mapping[str, ArrayLike],
+        options: Mapping[str, str],
+        temperature_c: float = 25.0,
+    ) -> Harmonics:
+        """The waves of settled units: harmonics 0 … 51 at the limiter's input and at the output, complex peak values
+        over their own fundamental (n, 52). options name a limiter; InputError where they do not."""
+        circuit = self.build(options, frozenset(values))
+        limiter = circuit.options.get("limiter", UNDECLARED)
+        if limiter == UNDECLARED:
+            raise InputError([Finding("error", "no-limiter", "harmonics need a limiter: give the option limiter")])
+        arrays, _ = _arrays(circuit, values)
+        crossing = make_crossing_evaluator(circuit, {name: float(np.median(array)) for name, array in arrays.items()})
+        found = settled.solve(
+            circuit, arrays, temperature_c, crossing.solve(arrays, temperature_c), limiter=limiter, harmonics=True
+        )
+        assert found.harmonics_in is not None and found.harmonics_out is not None
+        return Harmonics(found.settled_hz, found.harmonics_in, found.harmonics_out)
 
 
 def _arrays(circuit: Circuit, values: Mapping[str, ArrayLike]) -> tuple[dict[str, NDArray[np.float64]], bool]:
