@@ -25,7 +25,7 @@ def test_reference_is_the_help_of_every_command():
     text = README.read_text(encoding="utf-8")
     help_text = run("yieldosc --help", README.parent)
     commands = re.findall(r"^    (\w+) ", help_text, flags=re.M)
-    assert commands == ["circuits", "unit", "draft", "check", "assess"]
+    assert commands == ["circuits", "unit", "draft", "check", "assess", "upgrade", "limits", "compare"]
     for command in commands:
         assert run(f"yieldosc {command} --help", README.parent).strip() in text, f"the reference of {command} is stale"
 

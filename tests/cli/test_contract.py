@@ -107,7 +107,7 @@ def test_status_2_has_findings_in_json_and_writes_nothing(run, tmp_path):
     ("words", "text"),
     [
         ([], "a command is needed; see yieldosc --help"),
-        (["wobble"], "argument COMMAND: invalid choice: 'wobble' (choose from 'circuits', 'unit', 'draft', 'check', 'assess'); see yieldosc --help"),
+        (["wobble"], "argument COMMAND: invalid choice: 'wobble' (choose from 'circuits', 'unit', 'draft', 'check', 'assess', 'upgrade', 'limits', 'compare'); see yieldosc --help"),
         (["assess"], "the following arguments are required: STUDY; see yieldosc assess --help"),
         (["assess", "x.xlsx", "--wobble"], "unrecognized arguments: --wobble; see yieldosc --help"),
         (["assess", "tone.xlsx", "--units", "0"], "--units 0: write a whole number from 1 to 10000000000"),
