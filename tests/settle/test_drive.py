@@ -1,5 +1,7 @@
 """Drive level of a crystal against nodal equations solved as numbers, which share no code with the branch tables."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -94,3 +96,40 @@ def test_no_crystal_or_no_amplitude_gives_no_power(settled):
     wien = registry.build("wien_bridge", registry.complete_options("wien_bridge", {"limiter": "clip"}),
                           {"R1", "C1", "R2", "C2", "RF", "RG", "VSAT"})  # fmt: skip
     assert drive_w(wien, {}, 25.0, np.array([1e3]), np.array([1.0])) is None
+
+
+def inverter(**changes):
+    options = registry.complete_options("pierce", {"limiter": "tanh"})
+    values = {"FL": 8e6, "CL": 12e-12, "Cm": 5.5e-15, "C0": 1.8e-12, "ESR": 40.0, "C1": 15e-12, "C2": 15e-12,
+              "RF": 1e6, "gm": 6e-3, **changes}  # fmt: skip
+    circuit = registry.build("pierce", options, set(values))
+    for role in circuit.roles:
+        if role.default is not None:
+            values.setdefault(role.name, role.default)
+    arrays = {name: np.array([value]) for name, value in values.items()}
+    return circuit, arrays, make_evaluator(circuit, values).solve(arrays, 25.0)
+
+
+def test_an_inverter_that_swings_rail_to_rail_bounds_the_drive():
+    """Fundamental of a square wave between ± VSAT: 4 VSAT/π (Fourier); the rest by nodal equations as numbers."""
+    circuit, values, solution = inverter(VSAT=1.65)
+    symbols = {k: np.ravel(v)[0] for k, v in circuit.derive(values, 25.0, frozenset()).symbols.items()}
+    elements = from_branches(circuit.branches, symbols, circuit.gain_symbol)
+    s = 2j * np.pi * solution.settled_hz[0]
+    control, current = across(elements, s)
+    gain = next(e for e in elements if e.gain)
+    arm = next(e for e in elements if e.kind == "arm")
+    # the same voltages once more with the output node watched in place of the control nodes
+    watched = [replace(e, nodes=(*e.nodes[:2], e.nodes[0], "gnd")) if e is gain else e for e in elements]
+    out, _ = across(watched, s)
+    assert solution.amplitude_v[0] == pytest.approx(4 * 1.65 / np.pi, rel=1e-12)
+    assert solution.amplitude_in_v[0] == pytest.approx(abs(control / out) * 4 * 1.65 / np.pi, rel=1e-6)
+    motional = abs(current / out) * 4 * 1.65 / np.pi
+    assert solution.drive_w[0] == pytest.approx(0.5 * motional**2 * arm.values[2], rel=1e-6)
+    assert "amplitude and drive level are bounds" in " ".join(circuit.assumptions)
+
+
+def test_an_inverter_without_a_swing_has_no_drive_level():
+    circuit, _, solution = inverter()
+    assert solution.drive_w is None
+    assert "bounds" not in " ".join(circuit.assumptions)

@@ -22,11 +22,18 @@ _ASSUMED = {
     "tanh": "the level is limited as by a differential pair, i = I·tanh(gm·v/I); output clipping left out",
     "exp": "the level is limited by a bipolar junction whose mean current the bias holds; saturation left out",
 }
+_SWING = (
+    "amplitude and drive level are bounds: an output that swings rail to rail as a square wave, fundamental 4·VSAT/π"
+)
 RAIL_ROLES = (
     device("VSAT", "V", "largest output voltage, both ways from the mid-supply", optional=True, kind="ic"),
     device("VSAT_high", "V", "largest output voltage upwards, where the two differ", optional=True, kind="ic"),
     device("VSAT_low", "V", "largest output voltage downwards, as a positive number", optional=True, kind="ic"),
 )
+SWING_ROLES = (
+    device("VSAT", "V", "largest output voltage, both ways from the mid-supply: bounds the drive level", optional=True,
+           kind="ic"),
+)  # fmt: skip
 VOLTAGE, BIPOLAR, CURRENT = ("agc", "clip"), ("agc", "tanh", "exp"), ("agc", "tanh")
 
 
@@ -38,7 +45,7 @@ def with_limiter(family: Family, *choices: str) -> Family:
     def roles(options: Mapping[str, str]) -> tuple[Role, ...]:
         may_clip = options.get("limiter") in ("agc", "clip") and options.get("stage", "opamp") == "opamp"
         rails = RAIL_ROLES if "clip" in choices and may_clip else ()
-        return (*family.roles(options), *rails)
+        return (*family.roles(options), *rails, *(SWING_ROLES if swings(options) else ()))
 
     def build(options: Mapping[str, str], present: frozenset[str]) -> Circuit:
         circuit = family.build(options, present)
@@ -49,7 +56,7 @@ def with_limiter(family: Family, *choices: str) -> Family:
         given = tuple(role for role in roles(options) if role.name in present)
         name, chosen, _ = circuit.recipe
         recipe = (name, chosen, tuple(sorted(present)))
-        return replace(circuit, roles=given, recipe=recipe, assumptions=_assumptions(circuit, limiter))
+        return replace(circuit, roles=given, recipe=recipe, assumptions=_assumptions(circuit, limiter, present))
 
     def option_problems(options: Mapping[str, str]) -> list[str]:
         return family.option_problems(options) + _unsuited(options, choices)
@@ -61,6 +68,11 @@ def with_limiter(family: Family, *choices: str) -> Family:
         build=build,
         option_problems=option_problems,
     )
+
+
+def swings(options: Mapping[str, str]) -> bool:
+    """An inverter whose limiter is declared: how far its output can swing bounds what it does to a crystal."""
+    return options.get("stage") == "inverter" and options.get("limiter") == "tanh"
 
 
 def _problems(circuit: Circuit, limiter: str, present: frozenset[str]) -> list[str]:
@@ -85,8 +97,9 @@ def _unsuited(options: Mapping[str, str], choices: tuple[str, ...]) -> list[str]
     return [f"limiter = {limiter} does not suit this stage; choose one of {listed}"]
 
 
-def _assumptions(circuit: Circuit, limiter: str) -> tuple[str, ...]:
+def _assumptions(circuit: Circuit, limiter: str, present: frozenset[str]) -> tuple[str, ...]:
     if limiter == UNDECLARED:
         return circuit.assumptions
     kept = tuple(text for text in circuit.assumptions if not text.startswith("no stabiliser"))
-    return (*kept, _ASSUMED[limiter])
+    bound = "VSAT" in present and swings({**circuit.options, "limiter": limiter})
+    return (*kept, _ASSUMED[limiter], *((_SWING,) if bound else ()))

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from yieldosc.circuits.circuit import Circuit
-from yieldosc.settle.drive import drive_w
+from yieldosc.settle.drive import drive_w, swing_amplitudes
 from yieldosc.settle.fast import Checked, fast, in_full, unshifted
 from yieldosc.settle.prepared import Prepared, level_is_held, prepare
 from yieldosc.settle.settled import undisturbed, write_in_full
@@ -81,9 +81,10 @@ class SettlingEvaluator:
             live = prepare(self.circuit, values, temperature_c, solution, limiter=self.limiter, own_law=own_law)
             found = self._settled(live, solution)
         settled = found.settled
-        drive = drive_w(
-            self.circuit, values, temperature_c, settled.settled_hz, settled.amplitude_in_v, own_law=own_law
-        )
+        amplitudes = swing_amplitudes(
+            self.circuit, values, temperature_c, settled.settled_hz, own_law=own_law
+        ) or (settled.amplitude_in_v, settled.amplitude_out_v)
+        drive = drive_w(self.circuit, values, temperature_c, settled.settled_hz, amplitudes[0], own_law=own_law)
         lost = settled.not_converged & (solution.status == Status.STARTS)
         return replace(
             solution,
@@ -91,8 +92,8 @@ class SettlingEvaluator:
             settled_hz=settled.settled_hz,
             distortion=settled.distortion_out,
             distortion_in=settled.distortion_in,
-            amplitude_v=settled.amplitude_out_v,
-            amplitude_in_v=settled.amplitude_in_v,
+            amplitude_v=amplitudes[1],
+            amplitude_in_v=amplitudes[0],
             drive_w=drive,
             settling=found.account,
         )
