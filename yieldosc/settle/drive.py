@@ -40,7 +40,7 @@ def drive_w(
     known = np.isfinite(amplitude_in_v) & np.isfinite(settled_hz)
     if circuit.crystal_arm is None or limited_loop(circuit).voltage or not known.any():
         return None
-    near, across, _ = _probes(circuit.branches, circuit.gain_symbol, circuit.crystal_arm)
+    near, across = _probes(circuit.branches, circuit.gain_symbol, circuit.crystal_arm)
     hz = settled_hz[known]
     ratio = _ratio(circuit, values, temperature_c, own_law, settled_hz, known, (near, across))
     symbols = _symbols(circuit, values, temperature_c, own_law, known)
@@ -71,8 +71,8 @@ def swing_amplitudes(
     known = np.isfinite(settled_hz)
     in_v = np.full(n, np.nan)
     if known.any():
-        near, _, out = _probes(circuit.branches, circuit.gain_symbol, circuit.crystal_arm)
-        ratio = _ratio(circuit, values, temperature_c, own_law, settled_hz, known, (near, out))
+        nets = _swing_probes(circuit.branches, circuit.gain_symbol)
+        ratio = _ratio(circuit, values, temperature_c, own_law, settled_hz, known, nets)
         in_v[known] = out_v[known] / ratio
     out_v[~known] = np.nan
     return in_v, out_v
@@ -105,15 +105,21 @@ def _symbols(
 
 
 @lru_cache(maxsize=32)
-def _probes(
-    branches: tuple[Branch, ...], gain_symbol: str, arm: tuple[str, ...]
-) -> tuple[Network, Network, Network]:
-    """The network seen from the limiter's input, from the crystal's terminals, and from the output."""
-    source = next(row for row in branches if row.gain_element)
+def _probes(branches: tuple[Branch, ...], gain_symbol: str, arm: tuple[str, ...]) -> tuple[Network, Network]:
+    """The network seen from the limiter's input, and from the crystal's terminals."""
     crystal = next(row for row in branches if row.symbols == tuple(arm))
+    return network(branches, gain_symbol), _seen_from(branches, gain_symbol, crystal.nodes[:2])
 
-    def seen_from(nodes: tuple[str, ...]) -> Network:
-        probe = replace(source, nodes=(*source.nodes[:2], *nodes))
-        return network(tuple(probe if row is source else row for row in branches), gain_symbol)
 
-    return network(branches, gain_symbol), seen_from(crystal.nodes[:2]), seen_from((source.nodes[0], GROUND))
+@lru_cache(maxsize=32)
+def _swing_probes(branches: tuple[Branch, ...], gain_symbol: str) -> tuple[Network, Network]:
+    """The network seen from the limiter's input, and from the output of the gain element."""
+    source = next(row for row in branches if row.gain_element)
+    return network(branches, gain_symbol), _seen_from(branches, gain_symbol, (source.nodes[0], GROUND))
+
+
+def _seen_from(branches: tuple[Branch, ...], gain_symbol: str, nodes: tuple[str, ...]) -> Network:
+    """The same table with the gain element controlled from other nodes."""
+    return network(
+        tuple(replace(row, nodes=(*row.nodes[:2], *nodes)) if row.gain_element else row for row in branches), gain_symbol
+    )
