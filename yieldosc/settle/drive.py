@@ -120,6 +120,5 @@ def _swing_probes(branches: tuple[Branch, ...], gain_symbol: str) -> tuple[Netwo
 
 def _seen_from(branches: tuple[Branch, ...], gain_symbol: str, nodes: tuple[str, ...]) -> Network:
     """The same table with the gain element controlled from other nodes."""
-    return network(
-        tuple(replace(row, nodes=(*row.nodes[:2], *nodes)) if row.gain_element else row for row in branches), gain_symbol
-    )
+    seen = (replace(row, nodes=(*row.nodes[:2], *nodes)) if row.gain_element else row for row in branches)
+    return network(tuple(seen), gain_symbol)
