@@ -121,6 +121,16 @@ def test_a13_wien_bridge():
         assert transfer(WIEN_NETWORK, symbols, x / (R * C)) == pytest.approx(1 / (3 + 1j * (x - 1 / x)), rel=1e-12)
 
 
+@pytest.mark.parametrize("ratio", [1.999, 2.001])
+def test_a_fixed_gain_pair_cannot_hold_a_wien_bridge(ratio):
+    """Common practice, no source: the network passes 1/3, and no pair of resistors is exactly 2 to 1. A little below the
+    bridge does not start, a little above its amplitude grows without end until something else limits it."""
+    values = {**WIEN, "RF": ratio * WIEN["RG"]}
+    s = solve("wien_bridge", {}, {k: np.array([v]) for k, v in values.items()}, values, 25.0)
+    assert (Status(int(s.status[0])) is Status.STARTS) == (ratio > 2)
+    assert (s.growth_per_s[0] > 0) == (ratio > 2)
+
+
 def test_a13_unequal_arms():
     """1/(2π√(R1C1R2C2)) and 1 + R1/R2 + C2/C1: the bridge's balance, R1 and R2 not exchangeable (negative control)."""
     changes = {"R1": 12e3, "C1": 8e-9, "R2": 9e3, "C2": 11e-9}
