@@ -10,14 +10,13 @@ from datetime import UTC, datetime
 import numpy as np
 
 from yieldosc.errors import Finding
-from yieldosc.evaluators import make_evaluator
-from yieldosc.population import Adjustment, Population
+from yieldosc.population import Adjustment
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies import remarks
 from yieldosc.studies.cautions import cautions
 from yieldosc.studies.crystal_start import UNITS as CRYSTAL_UNITS
 from yieldosc.studies.crystal_start import crystal_start
-from yieldosc.studies.declared import factory_corner
+from yieldosc.studies.declared import declared, factory_corner
 from yieldosc.studies.estimates import LookPlan
 from yieldosc.studies.extra_remarks import extra_findings
 from yieldosc.studies.extremes import bands
@@ -26,14 +25,13 @@ from yieldosc.studies.limiter_effect import UNITS as LIMITER_UNITS
 from yieldosc.studies.limiter_effect import limiter_effect
 from yieldosc.studies.lots import LOTS, UNITS_PER_LOT, lot_yields, lots, shares_reels
 from yieldosc.studies.measured_remarks import measured_findings
-from yieldosc.studies.nominal import bench_ratio, nominal_points, nominal_values, per_percent, reference_corner, slopes
+from yieldosc.studies.nominal import nominal_points, per_percent, reference_corner, slopes
 from yieldosc.studies.parallel import Workers, default_workers
 from yieldosc.studies.pilot import pilot_result
 from yieldosc.studies.progress import Callback, Meter
 from yieldosc.studies.provenance import provenance
 from yieldosc.studies.ranking import BASE, rankings
 from yieldosc.studies.reach import reach_findings
-from yieldosc.studies.refusals import refuse_without_crossing
 from yieldosc.studies.results import (
     OUTCOMES,
     Assessment,
@@ -88,23 +86,14 @@ def assess(
     board before it is judged.
     """
     started, clock = datetime.now(UTC), time.perf_counter()
-    refuse_without_crossing(study)
-    population = Population.of(study)
-    design = study.design
-    solver = evaluator or make_evaluator(
-        study.circuit,
-        nominal_values(population, reference_corner(study)),
-        limits_width_hz=design.frequency_high_hz - design.frequency_low_hz,
-    )
-    ratio = bench_ratio(study, population, solver)
-    setup = with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment))
+    setup, ratio = declared(study, seed=seed, evaluator=evaluator, adjustment=adjustment)
     plan, meter = _plan(study, units), Meter(progress)
     effort = _Effort.of(setup, plan.counts[0], rival_units)
     meter.expect(plan.counts[0] + effort.expected(setup))
     with Workers(workers or default_workers()) as crew:
         study, sources = worst_fitting(study, setup, workers=crew, meter=meter)
         if sources:
-            setup = with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment))
+            setup = with_between(setup.with_parameters(study.parameters))
         target = study.design.yield_target
         run = joint_yield(setup, plan, target, workers=crew, block=block, meter=meter)
         effort = effort.slowed(run.gathered.exact / (run.gathered.units * len(setup.corners)))

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from yieldosc.evaluators import make_evaluator
-from yieldosc.population import Population
+from yieldosc.population import Adjustment, Population
 from yieldosc.solver.evaluator import Evaluator
 from yieldosc.studies.nominal import bench_ratio, nominal_values, reference_corner
 from yieldosc.studies.refusals import refuse_without_crossing
@@ -17,6 +17,13 @@ def declared_setup(study: Study, *, seed: int, evaluator: Evaluator | None = Non
 
     evaluator: in place of the circuit's own solver.
     """
+    return declared(study, seed=seed, evaluator=evaluator)[0]
+
+
+def declared(
+    study: Study, *, seed: int, evaluator: Evaluator | None = None, adjustment: Adjustment | None = None
+) -> tuple[Setup, float | None]:
+    """The same with what is done to each board, and the reference board's ratio (None where none was measured)."""
     refuse_without_crossing(study)
     population = Population.of(study)
     design = study.design
@@ -26,7 +33,7 @@ def declared_setup(study: Study, *, seed: int, evaluator: Evaluator | None = Non
         limits_width_hz=design.frequency_high_hz - design.frequency_low_hz,
     )
     ratio = bench_ratio(study, population, solver)
-    return with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0))
+    return with_between(Setup.of(study, solver, seed=seed, bench_ratio=ratio or 1.0, adjustment=adjustment)), ratio
 
 
 def factory_corner(study: Study) -> Corner:
