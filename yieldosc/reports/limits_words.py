@@ -124,7 +124,7 @@ def _resistance_step(r: LimitsResult) -> Iterator[str]:
         line = test.lines[test.chosen]
         yield (
             f"Require a start with {format_quantity(line.added_ohm, 'Ω', 3)} added in series with the crystal unit: it "
-            f"keeps start failures among the boards that pass to the escape limit and rejects "
+            f"keeps boards that pass and fail to start elsewhere to the escape limit and rejects "
             f"{rate(line.false_rejects)} of good ones."
         )
     elif r.escape_limit is not None and test.start_failures.high <= r.escape_limit:

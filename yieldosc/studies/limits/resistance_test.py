@@ -1,20 +1,21 @@
 """A series-resistance test: a resistor in series with the crystal unit, with which a board must still start.
 
-It sees what a reading cannot: how far the negative resistance of a board is from its crystal's. An added resistor R
-acts on the motional arm as r = R/(1 + C0/C)², C the load that the circuit presents at the unit's own frequency
-(1 + C0/C = (C0 + C)/C with C0 + C = Cm/((f/fs)² − 1)); first order in R over the reactance of the crystal.
+It sees what a reading cannot: how far the negative resistance of a board is from its crystal's. The resistor is a
+branch of the circuit's own table, in series with the motional arms and C0 together: near the threshold it is no small
+change, and its effect on the arm alone (R/(1 + C0/C)², first order) is off by a factor of two and more.
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from yieldosc.circuits.crystal import series_frequency_hz
+from yieldosc.circuits.circuit import Branch, Circuit, Derived, Values
 from yieldosc.population import Block
+from yieldosc.solver import make_evaluator
 from yieldosc.solver.solution import Status
 from yieldosc.studies.estimates import clopper_pearson
 from yieldosc.studies.judge import GOOD, Codes
@@ -27,8 +28,9 @@ from yieldosc.study import Corner
 
 Array = NDArray[np.float64]
 ROLE = "ESR"
+ADDED, NODE = "added resistance", "added node"  # blanks keep them apart from every symbol and node
 HALVINGS = 12  # of the logarithmic range: the threshold is known to 0.3 %
-LEAST, MOST = 0.02, 200.0  # the range, in multiples of the unit's own series resistance
+LEAST, MOST = 0.02, 500.0  # the range, in multiples of the unit's own series resistance
 LINES = 9
 
 
@@ -50,38 +52,52 @@ class _Job:
 
 def thresholds_ohm(setup: Setup, block: Block, corner: Corner) -> Array:
     """The largest added series resistance [Ω] with which each unit still starts (n,); 0 where it does not start at all,
-    inf where it starts beyond every resistance tried."""
+    the largest tried where it starts beyond."""
     values = dict(block.values(corner))
     esr = np.broadcast_to(values[ROLE], block.count)
     own_law = block.population.own_law
+    circuit = with_series_resistance(setup.bench.evaluator.circuit)  # type: ignore[attr-defined]
+    nominal = {name: float(np.median(v)) for name, v in values.items()} | {ADDED: float(np.median(esr))}
+    solver = make_evaluator(circuit, nominal)
 
     def starts(added: Array) -> NDArray[np.bool_]:
-        solution = setup.bench.solve_values(values | {ROLE: esr + added}, corner, own_law)
+        solution = solver.solve(values | {ADDED: added}, corner.temperature_c, own_law=own_law)
         return np.asarray(solution.status == Status.STARTS)
 
-    plain = setup.bench.solve_values(values | {ROLE: esr + 0.0}, corner, own_law)
+    plain = setup.bench.solve_values(values, corner, own_law).status == Status.STARTS
     low, high = np.log(LEAST * esr), np.log(MOST * esr)
     least, most = starts(np.exp(low)), starts(np.exp(high))
     for _ in range(HALVINGS):
         middle = (low + high) / 2
         still = starts(np.exp(middle))
         low, high = np.where(still, middle, low), np.where(still, high, middle)
-    motional = np.where(most, np.inf, np.where(least, np.exp(low), 0.0))
-    return np.where(plain.status == Status.STARTS, motional * _to_the_terminals(values, plain.frequency_hz), 0.0)
+    return np.where(plain & least, np.exp(np.where(most, np.log(MOST * esr), low)), 0.0)
 
 
-def _to_the_terminals(values: dict[str, Array], frequency_hz: Array) -> Array:
-    """(1 + C0/C)² (n,): what a motional resistance is at the crystal's terminals."""
-    pull = (frequency_hz / series_frequency_hz(values)) ** 2 - 1
-    with np.errstate(divide="ignore", invalid="ignore"):
-        both = values["Cm"] / pull  # C0 + C
-        factor = (both / (both - values["C0"])) ** 2
-    return np.where((pull > 0) & (both > values["C0"]), factor, 1.0)
+def with_series_resistance(circuit: Circuit) -> Circuit:
+    """The circuit with a resistor between its crystal unit (motional arms and C0) and the node that it stood at."""
+    arm = next(row for row in circuit.branches if row.symbols == circuit.crystal_arm)
+    plus, minus = arm.nodes
+
+    def moved(row: Branch) -> Branch:
+        unit = row.kind == "crystal" or (row.kind == "C" and row.name.endswith("C0"))
+        if not unit or set(row.nodes) != {plus, minus}:
+            return row
+        return replace(row, nodes=tuple(NODE if node == minus else node for node in row.nodes))
+
+    def derive(values: Values, temperature_c: float, own_law: frozenset[str]) -> Derived:
+        found = circuit.derive(values, temperature_c, own_law)
+        return replace(found, symbols={**found.symbols, ADDED: np.asarray(values[ADDED], dtype=float)})
+
+    rows = (*(moved(row) for row in circuit.branches), Branch("added", "R", (NODE, minus), (ADDED,)))
+    return replace(circuit, branches=rows, derive=derive)
 
 
 def has_crystal(setup: Setup) -> bool:
     """True where the circuit runs on a crystal's motional arm."""
-    return any(p.role == ROLE and p.kind == "crystal" for p in setup.population.parameters)
+    circuit = getattr(setup.bench.evaluator, "circuit", None)
+    named = any(p.role == ROLE and p.kind == "crystal" for p in setup.population.parameters)
+    return named and circuit is not None and circuit.crystal_arm is not None
 
 
 def resistance_test(
