@@ -149,7 +149,7 @@ def resistance(*lines, chosen=None, failing=40):
 def test_a_series_resistance_test(result):
     test = resistance((100.0, 20, 0), (220.0, 0, 15), chosen=1)
     assert said(result(resistance_test=test))[-1] == (
-        "Require a start with 220 Ω added in series with the crystal unit: it keeps start failures among the boards that pass "
+        "Require a start with 220 Ω added in series with the crystal unit: it keeps boards that pass and fail to start elsewhere "
         f"to the escape limit and rejects {rate(test.lines[1].false_rejects)} of good ones."
     )
     section = next(s for s in limits_page(result(resistance_test=test)).sections if s.key == "resistance")
